@@ -1,0 +1,1 @@
+"""The exact search: the declared space, proved bounds, the shortlist."""

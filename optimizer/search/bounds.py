@@ -1,0 +1,276 @@
+"""Proved bounds on boxes of settings: narrower Rf and Cf, and an upper bound on every margin.
+
+Each inequality holds for every eligible setting of the box whose smallest margin is at least `level`.
+Notation: W = 2 pi times the bandwidth that the level asks for, D = 1 + e1 s + e2 s^2 + e3 s^3,
+M^2 = 2 / ((1 + (W tau_diode)^2)(1 + (W tau_low_pass)^2)), a and b the op-amp's time constants,
+c = ab/(a + b) >= e3/e2. Where |D(jw)| <= M at w = W:
+
+  real part:       e2 W^2 <= 1 + M
+  imaginary part:  e1 <= M/W + c (1 + M)      (from e1 W <= M + e3 W^3 and e3 <= c e2)
+  noise:           the integral of |1/D|^2 is 1/(4 (e1 - e3/e2)) without a low-pass; with one, of
+                   |1/(D Plp)|^2 at least 1/(4 (E1 - E3/E2)) and of |s/(D Plp)|^2 at least
+                   1/(4 (E1 E2 - E3)), E the coefficients of the product (continued fractions of a
+                   stable polynomial have positive terms)
+  peaking <= p:    e1^2 >= 10^(-p/10) e2 (|D|^2 at w^2 = 1/e2 is at most e1^2/e2)
+
+The tests hold these to random settings: none may be excluded at its own margin.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer.figures import Bench
+from optimizer.physics.constants import BOLTZMANN, ELEMENTARY_CHARGE
+from optimizer.search.view import View
+
+Floats = NDArray[np.float64]
+Bools = NDArray[np.bool_]
+
+SLACK = 1e-7
+"""How far margins are loosened against rounding: figures carry 9 digits, margins 1e-9."""
+
+ROOT2 = float(np.sqrt(2.0))
+
+
+@dataclass(frozen=True, slots=True)
+class Goals:
+    """What the request asks: the bench, the limits of graded targets, and comfort."""
+
+    bench: Bench
+    limits: Mapping[str, float]
+    comfort: float
+
+
+@dataclass(frozen=True, slots=True)
+class Narrow:
+    """What is left of Rf [ohm] and Cf [F], the largest swing [V], and where anything is left."""
+
+    rf_low: Floats
+    rf_high: Floats
+    cf_low: Floats
+    cf_high: Floats
+    swing: Floats
+    possible: Bools
+
+
+@dataclass(frozen=True, slots=True)
+class Coefficients:
+    """Intervals of the denominator's coefficients over what is left, and g = 1 + Rf/Rsh."""
+
+    e1_low: Floats
+    e1_high: Floats
+    e2_low: Floats
+    e2_high: Floats
+    e3_low: Floats
+    e3_high: Floats
+    g_low: Floats
+    g_high: Floats
+
+
+@dataclass(frozen=True, slots=True)
+class Roof:
+    """Upper bounds on e1 [s] and e2 [s^2] that the bandwidth at the level sets (inf: none)."""
+
+    e1: Floats
+    e2: Floats
+    w: Floats
+    m: Floats
+
+
+def error_offset(v: View) -> Floats:
+    """The part of the dc error [V] that does not grow with Rf, at least."""
+    reference = np.where(v.divided, v.bias * v.source_low, 0.0) + np.where(v.buffered, v.vos, 0.0)
+    return v.vos + reference
+
+
+def error_slope(v: View) -> Floats:
+    """The part of the dc error that grows with Rf, per ohm [A], at least."""
+    return v.vos * v.shunt_low + v.bias
+
+
+def swing(v: View, bench: Bench, rf_low: Floats) -> Floats:
+    """The largest swing [V] that any context of the box leaves for light, at the worse tolerance end."""
+    error = (error_offset(v) + error_slope(v) * rf_low) * (1.0 - 1e-9)
+    top, bottom = bench.ends[1], bench.ends[0]
+    floor = np.maximum(v.vref_floor, np.where(v.on_rail, -np.inf, v.dark_floor + error / top))
+    ceiling = np.minimum(v.vref_ceiling, np.where(v.on_rail, np.inf, v.dark_ceiling - error / top))
+    start = np.maximum(v.rise_from, floor)
+    stop = np.minimum(v.fall_from, ceiling)
+    up = np.minimum(v.upper[0] - start * bottom, v.upper[1] - start * top)
+    down = np.minimum(stop * bottom - v.lower[0], stop * top - v.lower[1])
+    up = np.where(v.rises & (start <= ceiling * (1.0 + 1e-12) + 1e-12), up, -np.inf)
+    down = np.where(v.falls & (stop >= floor * (1.0 - 1e-12) - 1e-12), down, -np.inf)
+    return np.maximum(up, down)
+
+
+def rf_for_gain(v: View, transresistance: Floats) -> Floats:
+    """The largest Rf [ohm] whose H0 does not exceed `transresistance` anywhere in the box."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        rf = transresistance * (v.gain + 1.0) / (v.gain - transresistance * v.shunt_high)
+    return np.where(v.gain > transresistance * v.shunt_high, rf, np.inf)
+
+
+def steady_limits(v: View, goals: Goals, level: Floats) -> tuple[Floats, Floats]:
+    """Upper bound on Rf [ohm] from all that depends on Rf alone, and the largest swing [V]."""
+    bench, limits = goals.bench, goals.limits
+    room = swing(v, bench, v.rf_low)
+    fixed, slope = error_offset(v), error_slope(v)
+    factor = np.maximum(1.0 + level, 0.0)
+    light = v.responsivity * (bench.strongest * factor + bench.background) + v.dark_low
+    with np.errstate(divide="ignore", invalid="ignore"):
+        gain = np.where(factor > 0.0, (room - fixed) / (light + slope), np.inf)
+        if "slew" in limits and bench.bandwidth_target is not None:
+            rate = limits["slew"] * factor * np.pi * bench.bandwidth_target * bench.strongest
+            gain = np.minimum(gain, np.where(factor > 0.0, v.slew_rate / (rate * v.responsivity), np.inf))
+        if "offset" in limits:
+            allowed = np.where(factor > 0.0, limits["offset"] / factor - fixed, np.inf)
+            gain = np.minimum(gain, allowed / (v.dark_low + slope))
+        bound = np.where(gain > 0.0, rf_for_gain(v, np.maximum(gain, 0.0)), -1.0)
+        return np.minimum(bound, (v.gain - 1.0) / v.shunt_low), room
+
+
+def roof(v: View, goals: Goals, level: Floats) -> Roof:
+    """What the bandwidth target at `level` asks of the coefficients."""
+    target = goals.limits.get("bandwidth")
+    if target is None:
+        none = np.full(v.gain.shape, np.inf)
+        return Roof(none, none, np.zeros_like(none), np.full_like(none, ROOT2))
+    w = 2.0 * np.pi * target * np.maximum(1.0 + level, 0.0)
+    m = ROOT2 / np.sqrt((1.0 + (w * v.pole) ** 2) * (1.0 + (w * v.lag_low) ** 2))
+    with np.errstate(divide="ignore"):
+        return Roof(m / w + v.both * (1.0 + m), (1.0 + m) / w**2, w, m)
+
+
+def narrow(v: View, goals: Goals, level: Floats) -> Narrow:
+    """What is left of Rf and Cf where every margin is at least `level` (already loosened by SLACK)."""
+    rf_high, room = steady_limits(v, goals, level)
+    rf_high = np.minimum(rf_high, v.rf_high)
+    ceiling = roof(v, goals, level)
+    cf_low, cf_high = v.cf_low, v.cf_high
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
+        rf_high = np.minimum(rf_high, _rf_from_e2(v, ceiling, cf_low))
+        rf_high = np.minimum(rf_high, _rf_from_e1(v, ceiling, cf_low))
+        cf_high = np.minimum(cf_high, _cf_from_e1(v, ceiling))
+        decompensated = v.min_gain > 1.0
+        cf_high = np.where(decompensated, np.minimum(cf_high, v.cin_high / (v.min_gain - 1.0)), cf_high)
+    possible = v.possible & ~(v.buffered & ~v.buffers) & ((room >= 0.0) | v.on_rail)
+    loose = 1.0 + 1e-9
+    rf_high, cf_high = rf_high * loose, cf_high * loose
+    possible = possible & (rf_high >= v.rf_low) & (cf_high >= cf_low)
+    return Narrow(v.rf_low, rf_high, cf_low, cf_high, room, possible)
+
+
+def _linear(slope: Floats, right: Floats) -> Floats:
+    """The largest Rf >= 0 with slope Rf <= right; -1 where even 0 is too much, inf where none is."""
+    bound = np.where(slope > 0.0, right / slope, np.inf)
+    return np.where(right < 0.0, np.where(slope >= 0.0, -1.0, np.inf), bound)
+
+
+def _rf_from_e2(v: View, ceiling: Roof, cf_low: Floats) -> Floats:
+    a, b, k = v.dominant, v.second, ceiling.e2
+    free = a * b - k
+    shunt = np.where(free > 0.0, v.shunt_low, v.shunt_high)
+    bound = _linear((a + b) * (v.cin_low + cf_low) + free * shunt, k * (v.gain + 1.0) - a * b)
+    return np.where(np.isfinite(k), bound, np.inf)
+
+
+def _rf_from_e1(v: View, ceiling: Roof, cf_low: Floats) -> Floats:
+    free = v.dominant + v.second - ceiling.e1
+    shunt = np.where(free > 0.0, v.shunt_low, v.shunt_high)
+    slope = v.gain * cf_low + v.cin_low + cf_low + free * shunt
+    right = ceiling.e1 * (v.gain + 1.0) - v.dominant - v.second
+    return np.where(np.isfinite(ceiling.e1), _linear(slope, right), np.inf)
+
+
+def _cf_from_e1(v: View, ceiling: Roof) -> Floats:
+    free = v.dominant + v.second - ceiling.e1
+    shunt = np.where(free > 0.0, v.shunt_low, v.shunt_high)
+    right = (ceiling.e1 * (v.gain + 1.0) - v.dominant - v.second) / v.rf_low - v.cin_low - free * shunt
+    return np.where(np.isfinite(ceiling.e1), right / (v.gain + 1.0), np.inf)
+
+
+def coefficients(v: View, left: Narrow, ceiling: Roof) -> Coefficients:
+    """Intervals of e1, e2, e3 over what is left, cut by the roof."""
+    a, b = v.dominant, v.second
+    g_low, g_high = 1.0 + left.rf_low * v.shunt_low, 1.0 + left.rf_high * v.shunt_high
+    feedback = (left.rf_low * left.cf_low, left.rf_high * left.cf_high)
+    total = (left.rf_low * (v.cin_low + left.cf_low), left.rf_high * (v.cin_high + left.cf_high))
+
+    def e1(end: int, g: Floats) -> Floats:
+        return (v.gain * feedback[end] + total[end] + g * (a + b)) / (v.gain + g)
+
+    def e2(end: int, g: Floats) -> Floats:
+        return ((a + b) * total[end] + g * a * b) / (v.gain + g)
+
+    return Coefficients(
+        e1_low=np.minimum(e1(0, g_low), e1(0, g_high)),
+        e1_high=np.minimum(np.maximum(e1(1, g_low), e1(1, g_high)), ceiling.e1),
+        e2_low=np.minimum(e2(0, g_low), e2(0, g_high)),
+        e2_high=np.minimum(np.maximum(e2(1, g_low), e2(1, g_high)), ceiling.e2),
+        e3_low=a * b * total[0] / (v.gain + g_high),
+        e3_high=a * b * total[1] / (v.gain + g_low),
+        g_low=g_low,
+        g_high=g_high,
+    )
+
+
+@dataclass(frozen=True, slots=True)
+class Floor:
+    """Lower bounds on noise referred to the input, as current squared [A^2].
+
+    `flat`, `rising`: of the integrals of |1/D|^2 and |s/D|^2; `dark` without light at the signal
+    wavelength, `weak` with the weakest; `per_conductance` what 1/Rf multiplies.
+    """
+
+    flat: Floats
+    rising: Floats
+    dark: Floats
+    weak: Floats
+    per_conductance: Floats
+
+
+def noise_floor(v: View, left: Narrow, c: Coefficients, bench: Bench) -> Floor:
+    """Lower bounds on the noise over what is left."""
+    t_low, t_high = v.lag_low, v.lag_high
+    first, second = c.e1_high + t_high, c.e2_high + t_high * c.e1_high
+    third = c.e3_low + t_low * c.e2_low
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
+        flat = _reciprocal(4.0 * (first - third / second))
+        rising = _reciprocal(4.0 * (first * second - third))
+        flicker = _flicker_floor(first, second, bench.noise_from) * v.noise_corner
+        per_volt = v.voltage_noise / left.rf_high**2
+        node = v.voltage_noise * (v.cin_low + left.cf_low) ** 2
+        amplifier = per_volt * c.g_low**2 * (flat + flicker) + node * rising
+        buffer = per_volt * (flat + flicker) + v.voltage_noise * (left.cf_low + v.reference_node) ** 2 * rising
+        amplifier = amplifier + np.where(v.buffered, buffer, 0.0)
+        charge = 2.0 * ELEMENTARY_CHARGE
+        steady = charge * (v.responsivity * bench.background + v.dark_low) + v.current_noise
+        thermal = 4.0 * BOLTZMANN * bench.kelvin
+        rest = (steady + thermal * v.shunt_low) * flat + amplifier
+        if bench.converter is not None:
+            floor, ceiling, bits = bench.converter
+            rest = rest + ((ceiling - floor) / 2.0**bits) ** 2 / 12.0 / left.rf_high**2
+        dark = rest + thermal / left.rf_high * flat
+    shot = charge * v.responsivity * bench.weakest * flat
+    return Floor(flat, rising, dark, dark + shot, thermal * flat)
+
+
+def _reciprocal(value: Floats) -> Floats:
+    """1/value where that is a positive finite number, else 0 (no bound)."""
+    return np.where((value > 0.0) & np.isfinite(value), 1.0 / value, 0.0)
+
+
+def _flicker_floor(first: Floats, second: Floats, start: float) -> Floats:
+    """Lower bound on the integral of |1/(D Plp)|^2 / f: its part below w1, where D is still near 1.
+
+    Up to w1 = min(0.5/E1, 0.5/sqrt(E2)): E1 w <= 1/2, E2 w^2 <= 1/4, and by stability E3 < E1 E2 and
+    E4 < E2^2, so the real part is within [3/4, 17/16], the imaginary part at most 1/2: |D|^2 <= 1.4.
+    """
+    w1 = np.minimum(0.5 / first, 0.5 / np.sqrt(second))
+    ratio = np.where(np.isfinite(w1) & (w1 > 0.0), w1 / (2.0 * np.pi * start), 1.0)
+    return np.maximum(np.log(ratio), 0.0) / 1.4

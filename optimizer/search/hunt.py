@@ -1,0 +1,299 @@
+"""Branch and bound over boxes: the best setting of every pair that can reach the last row shown.
+
+A hunt keeps the best setting found of each pair (its incumbent) and the last row that the shortlist
+would show (the bar). A box is dropped when it holds no setting that meets, or none that comes before
+its pair's incumbent, or none that reaches the bar; what is left is split, down to single settings,
+which are evaluated exactly. So the result does not depend on the order of the work.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer.search import keys
+from optimizer.search.bounds import Goals
+from optimizer.search.boxes import Boxes, settings_of, single, whole
+from optimizer.search.plain import Judged, judge
+from optimizer.search.roles import PASSES
+from optimizer.search.split import filled, halves, narrowed
+from optimizer.search.upper import Bound, bound
+from optimizer.search.view import Index, view
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+Bools = NDArray[np.bool_]
+
+BATCH = 4096
+
+
+@dataclass(frozen=True, slots=True)
+class Rules:
+    """What is hunted: the ranking, how many pairs, and the smallest margin that counts (0, or -1)."""
+
+    by: str
+    show: int
+    least: float
+
+
+@dataclass(slots=True)
+class Pool:
+    """Boxes still to be split, with the keys that bound them; one row each."""
+
+    boxes: Boxes
+    key: Floats
+    priority: Floats
+
+    @staticmethod
+    def empty(width: int) -> Pool:
+        """A pool without boxes."""
+        return Pool(Boxes(np.zeros((0, 10), dtype=np.int64)), np.zeros((0, width)), np.zeros(0))
+
+    def take(self, rows: NDArray[np.int64] | Bools) -> Pool:
+        """The boxes at `rows`."""
+        return Pool(self.boxes.take(rows), self.key[rows], self.priority[rows])
+
+    def join(self, other: Pool) -> Pool:
+        """Both pools in one."""
+        return Pool(
+            Boxes(np.concatenate([self.boxes.rows, other.boxes.rows])),
+            np.concatenate([self.key, other.key]),
+            np.concatenate([self.priority, other.priority]),
+        )
+
+
+@dataclass(slots=True)
+class Incumbents:
+    """The best setting found of each pair, in slots; `slot_of` is by pair, -1 where none was found."""
+
+    slot_of: NDArray[np.int32]
+    judged: Judged | None = None
+    key: Floats = field(default_factory=lambda: np.zeros((0, 0)))
+    shown: Ints = field(default_factory=lambda: np.zeros(0, dtype=np.int64))
+    bar: Floats | None = None
+
+
+@dataclass(slots=True)
+class Hunt:
+    """One search in progress."""
+
+    index: Index
+    goals: Goals
+    rules: Rules
+    incumbents: Incumbents
+    pool: Pool
+    evaluated: int = 0
+    bounded: int = 0
+
+
+def start(index: Index, goals: Goals, rules: Rules) -> Hunt:
+    """A hunt that has seen nothing yet."""
+    space = index.space
+    pairs = space.opamps.gbw.size * space.diodes.price.size
+    width = 2 + len(goals.limits) + 6
+    return Hunt(index, goals, rules, Incumbents(np.full(pairs, -1, dtype=np.int32)), Pool.empty(width))
+
+
+def add(hunt: Hunt, opamp: Ints, diode: Ints) -> None:
+    """Take pairs into the hunt."""
+    for begin in range(0, opamp.size, BATCH):
+        part = slice(begin, begin + BATCH)
+        _admit(hunt, whole(hunt.index.space, opamp[part], diode[part]), None)
+
+
+def drain(hunt: Hunt, stop_at: float, tick: Callable[[], None]) -> None:
+    """Split boxes, the most promising first, until none is left before primary figure `stop_at`."""
+    while hunt.pool.priority.size:
+        hunt.pool = hunt.pool.take(_alive(hunt, hunt.pool))
+        size = hunt.pool.priority.size
+        if not size or hunt.pool.key[:, 0].min() > stop_at:
+            return
+        count = min(BATCH // 2, size)
+        first = np.argpartition(hunt.pool.priority, count - 1)[:count]
+        rest = np.ones(size, dtype=bool)
+        rest[first] = False
+        chosen = hunt.pool.take(first)
+        hunt.pool = hunt.pool.take(rest)
+        _admit(hunt, halves(hunt.index, chosen.boxes), np.tile(chosen.key[:, 0], 2))
+        tick()
+
+
+def _pairs(hunt: Hunt, boxes: Boxes) -> Ints:
+    return boxes.column(Boxes.OPAMP) * hunt.index.space.diodes.price.size + boxes.column(Boxes.DIODE)
+
+
+def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats | None) -> None:
+    """Bound `boxes`, evaluate the single ones that are left, and pool the others."""
+    hunt.bounded += len(boxes)
+    v = view(hunt.index, boxes)
+    level = _level(hunt, boxes, (v.cost, v.supply_current), inherited)
+    limits = bound(v, hunt.goals, level)
+    boxes = narrowed(hunt.index, boxes, limits.left, v)
+    keep = limits.possible & filled(boxes)
+    key = _key(hunt, boxes.take(keep), limits, keep)
+    pool = Pool(boxes.take(keep), key, _priority(hunt, key))
+    pool = pool.take(_alive(hunt, pool))
+    lone = single(pool.boxes)
+    if lone.any():
+        _evaluate(hunt, pool.take(lone))
+    hunt.pool = hunt.pool.join(pool.take(~lone))
+
+
+def _level(hunt: Hunt, boxes: Boxes, known: tuple[Floats, Floats], inherited: Floats | None) -> Floats:
+    """The smallest margin that a setting of each box needs to be of any use."""
+    rules, incumbents = hunt.rules, hunt.incumbents
+    cost, current = known
+    level = np.full(len(boxes), rules.least)
+    first = {"cost": cost, "supply_current": current}.get(rules.by)
+    if first is None:
+        first = np.full(len(boxes), -np.inf) if inherited is None else inherited
+    slots = incumbents.slot_of[_pairs(hunt, boxes)]
+    has = slots >= 0
+    if has.any():
+        best = incumbents.key[slots]
+        tied = _not_before(rules.by, (first, cost), best)
+        level = np.where(has & tied, np.maximum(level, -best[:, 2]), level)
+    if incumbents.bar is not None:
+        tied = _not_before(rules.by, (first, cost), incumbents.bar[None, :])
+        level = np.where(tied, np.maximum(level, -incumbents.bar[2]), level)
+    return level
+
+
+def _not_before(by: str, known: tuple[Floats, Floats], best: Floats) -> Bools:
+    """Where primary and cost cannot come before those of `best`, so that the margin must be as large.
+
+    A margin hunt needs the margin first of all.
+    """
+    first, cost = known
+    if by == "margin":
+        return np.ones(first.size, dtype=bool)
+    near = 1.0 + 1e-8
+    primary = first * np.where(first > 0, near, 1.0 / near)
+    return np.asarray((primary > best[:, 0]) | ((primary >= best[:, 0]) & (cost * near >= best[:, 1])))
+
+
+def _key(hunt: Hunt, boxes: Boxes, limits: Bound, keep: Bools) -> Floats:
+    """The key that no setting of a box can come before."""
+    vector = np.sort(limits.margin_columns[keep], axis=1)
+    cost = limits.cost[keep]
+    first = {
+        "cost": cost,
+        "supply_current": limits.supply_current[keep],
+        "margin": -vector[:, 0],
+        "snr": -limits.snr[keep],
+    }[hunt.rules.by]
+    first = np.where(np.isnan(first), np.inf, first)
+    column, index = boxes.column, hunt.index
+    ties = [
+        index.resistors.value[column(Boxes.R0)],
+        index.capacitors.value[column(Boxes.C0)],
+        column(Boxes.X0),
+        column(Boxes.L0),
+        index.resistors.family.least(column(Boxes.R0), column(Boxes.R1)),
+        index.capacitors.family.least(column(Boxes.C0), column(Boxes.C1)),
+    ]
+    return np.column_stack([first, cost, -vector, *ties])
+
+
+def _priority(hunt: Hunt, key: Floats) -> Floats:
+    """One number that sorts boxes roughly as their keys do."""
+    comfort = hunt.goals.comfort
+    shortfall = comfort + key[:, 2]
+    size = np.abs(key[:, 1]) + 1e-12
+    if hunt.rules.by == "margin":
+        return np.asarray(key[:, 0] + 1e-6 * key[:, 1] / (1.0 + size))
+    return np.asarray(key[:, 0] + np.abs(key[:, 0]) * (1e-7 * shortfall) + 1e-12 * size)
+
+
+def _alive(hunt: Hunt, pool: Pool) -> Bools:
+    """Where a box can still come before its pair's incumbent and reach the bar."""
+    incumbents, space = hunt.incumbents, hunt.index.space
+    slots = incumbents.slot_of[_pairs(hunt, pool.boxes)]
+    alive = np.ones(slots.size, dtype=bool)
+    has = slots >= 0
+    if has.any():
+        alive[has] = keys.less(pool.key[has], incumbents.key[slots[has]])
+    if incumbents.bar is not None:
+        names = (
+            space.order_diodes[pool.boxes.column(Boxes.DIODE)],
+            space.order_opamps[pool.boxes.column(Boxes.OPAMP)],
+        )
+        between = np.column_stack([pool.key[:, :3], *names])
+        alive &= ~keys.less(incumbents.bar[None, :], between)
+    return alive
+
+
+def _evaluate(hunt: Hunt, pool: Pool) -> None:
+    """Evaluate boxes of one setting each and keep what is better than the incumbents."""
+    index = hunt.index
+    choice = settings_of(pool.boxes, index.resistors, index.capacitors)
+    hunt.evaluated += pool.priority.size
+    judged = judge(index.space, choice, hunt.rules.by)
+    good = (judged.reach == PASSES) & (judged.vector[:, 0] >= hunt.rules.least)
+    if good.any():
+        _improve(hunt, judged.take(good))
+
+
+def _improve(hunt: Hunt, judged: Judged) -> None:
+    """Take the best of `judged` for each pair into the incumbents, and move the bar."""
+    incumbents, space = hunt.incumbents, hunt.index.space
+    key = keys.within_pair(space, judged.choice, judged.columns)
+    pair = judged.choice.opamp * space.diodes.price.size + judged.choice.diode
+    order = keys.order(np.column_stack([pair, key]))
+    first = order[np.r_[True, np.diff(pair[order]) != 0]]
+    slots = incumbents.slot_of[pair[first]]
+    better = slots < 0
+    known = ~better
+    if known.any():
+        better[known] = keys.less(key[first[known]], incumbents.key[slots[known]])
+    first, slots = first[better], slots[better]
+    if not first.size:
+        return
+    fresh = slots < 0
+    before = 0 if incumbents.judged is None else incumbents.judged.reach.size
+    slots[fresh] = before + np.arange(int(fresh.sum()), dtype=slots.dtype)
+    incumbents.slot_of[pair[first]] = slots
+    _store(incumbents, (slots, fresh), judged.take(first), key[first])
+    _raise_bar(hunt, slots.astype(np.int64))
+
+
+def _store(incumbents: Incumbents, places: tuple[NDArray[np.int32], Bools], new: Judged, key: Floats) -> None:
+    slots, fresh = places
+    if incumbents.judged is None:
+        incumbents.judged, incumbents.key = new, key
+        return
+    old = incumbents.judged
+    for column, values in zip(_arrays(old), _arrays(new), strict=True):
+        column[slots[~fresh]] = values[~fresh]
+    incumbents.key[slots[~fresh]] = key[~fresh]
+    if fresh.any():
+        incumbents.judged = _joined(old, new.take(fresh))
+        incumbents.key = np.concatenate([incumbents.key, key[fresh]])
+
+
+def _arrays(judged: Judged) -> tuple[NDArray[np.generic], ...]:
+    return (*judged.choice.columns(), judged.reach, judged.margin_columns, *judged.columns)
+
+
+def _joined(left: Judged, right: Judged) -> Judged:
+    columns = [np.concatenate(both) for both in zip(_arrays(left), _arrays(right), strict=True)]
+    from optimizer.search.space import Choice
+
+    return Judged(Choice(*columns[:6]), columns[6], columns[7], *columns[8:])
+
+
+def _raise_bar(hunt: Hunt, changed: Ints) -> None:
+    """The last row shown, after the incumbents at slots `changed` improved."""
+    incumbents, space = hunt.incumbents, hunt.index.space
+    if incumbents.judged is None:
+        return
+    slots = np.union1d(incumbents.shown, changed)
+    some = incumbents.judged.take(slots)
+    key = keys.between_pairs(space, some.choice, some.columns)
+    order = keys.order(key)[: hunt.rules.show]
+    incumbents.shown = slots[order]
+    if order.size == hunt.rules.show:
+        incumbents.bar = key[order[-1]]

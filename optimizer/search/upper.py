@@ -1,0 +1,198 @@
+"""Upper bounds on the margins, the snr and (from below) cost and supply current of boxes of settings."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer import margins
+from optimizer.figures import rounded
+from optimizer.search.bounds import (
+    SLACK,
+    Coefficients,
+    Floor,
+    Goals,
+    Narrow,
+    coefficients,
+    error_offset,
+    error_slope,
+    narrow,
+    noise_floor,
+    roof,
+)
+from optimizer.search.view import View
+
+Floats = NDArray[np.float64]
+Bools = NDArray[np.bool_]
+
+_STEPS = 5
+"""Bisections between level and comfort that place the bound on the bandwidth margin."""
+
+
+@dataclass(frozen=True, slots=True)
+class Bound:
+    """What no setting of a box can beat, one row a box.
+
+    `margin_columns` in the order of the stated targets, cut at comfort; `snr` [dB], `cost` and
+    `supply_current` [A] rounded as figures are; `left` what remains of Rf and Cf.
+    """
+
+    possible: Bools
+    margin_columns: Floats
+    snr: Floats
+    cost: Floats
+    supply_current: Floats
+    left: Narrow
+
+
+def bound(v: View, goals: Goals, level: Floats) -> Bound:
+    """Bounds over every setting of each box whose smallest margin is at least its `level`."""
+    loose = level - SLACK * (1.0 + np.abs(level))
+    left = narrow(v, goals, loose)
+    c = coefficients(v, left, roof(v, goals, loose))
+    with np.errstate(all="ignore"):
+        floor = noise_floor(v, left, c, goals.bench)
+        snr = _decibels(v.responsivity * goals.bench.weakest, floor.weak)
+        columns = [_ceiling(name, v, (left, c, floor), goals, (loose, snr)) for name in goals.limits]
+    cost, current = rounded(v.cost), rounded(v.supply_current)
+    exact = {"cost": cost, "supply_current": current}
+    table = np.empty((v.gain.size, len(columns)))
+    for k, (name, column) in enumerate(zip(goals.limits, columns, strict=True)):
+        if name in exact:
+            table[:, k] = margins.margin(name, exact[name], goals.limits[name])
+        else:
+            # NaN would be an unknown value that no target needs; it never bounds
+            known = np.clip(np.where(np.isnan(column), np.inf, column), -2.0, margins.LARGEST)
+            table[:, k] = known + SLACK * (1.0 + np.abs(known))
+    possible = left.possible & np.all(table >= loose[:, None], axis=1)
+    return Bound(possible, np.clip(table, -1.0, goals.comfort), snr * 1.0 + 1e-6, cost, current, left)
+
+
+def _decibels(signal: Floats, square: Floats) -> Floats:
+    return np.where(square > 0.0, 20.0 * np.log10(signal) - 10.0 * np.log10(square), np.inf)
+
+
+_State = tuple[Narrow, Coefficients, Floor]
+
+
+def _ceiling(name: str, v: View, state: _State, goals: Goals, known: tuple[Floats, Floats]) -> Floats:
+    """Upper bound on the margin of target `name`."""
+    left, c, floor = state
+    limit = goals.limits[name]
+    if name == "bandwidth":
+        return _bandwidth(v, c, goals, known[0])
+    if name == "snr":
+        return margins.raw_margin("snr", known[1], limit)
+    if name == "dynamic_range":
+        return margins.raw_margin(name, _dynamic_range(v, left, floor, goals), limit)
+    if name == "full_scale":
+        return _full_scale(v, left, goals) / limit - 1.0
+    if name == "phase_margin":
+        return _phase_margin(v, left, c) / margins.PHASE_SCALE - limit / margins.PHASE_SCALE
+    if name == "peaking":
+        return 1.0 - _peaking(c) / limit
+    if name == "slew":
+        return _slew(v, left, goals) / limit - 1.0
+    if name == "offset":
+        offset = error_offset(v) + error_slope(v) * left.rf_low + v.dark_low * _gain_low(v, left)
+        return limit / offset - 1.0
+    return np.full(v.gain.shape, np.inf)
+
+
+def _gain_low(v: View, left: Narrow) -> Floats:
+    """H0 [ohm] at least: at the smallest Rf and the largest shunt conductance."""
+    return left.rf_low * v.gain / (v.gain + 1.0 + left.rf_low * v.shunt_high)
+
+
+def _full_scale(v: View, left: Narrow, goals: Goals) -> Floats:
+    """Light at most, background taken off, at the smallest Rf that is left."""
+    gain = _gain_low(v, left)
+    light = (left.swing - error_offset(v) - error_slope(v) * left.rf_low) / gain - v.dark_low
+    return np.maximum(light / v.responsivity - goals.bench.background, 0.0)
+
+
+def _dynamic_range(v: View, left: Narrow, floor: Floor, goals: Goals) -> Floats:
+    return _decibels(v.responsivity * _full_scale(v, left, goals), floor.dark)
+
+
+def _slew(v: View, left: Narrow, goals: Goals) -> Floats:
+    frequency = goals.bench.bandwidth_target
+    if frequency is None:
+        return np.full(v.gain.shape, np.inf)
+    amplitude = _gain_low(v, left) * v.responsivity * goals.bench.strongest
+    return v.slew_rate / (np.pi * frequency * amplitude)
+
+
+def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
+    """The margin up to comfort that the bandwidth can have: where |H| is certainly below H0/sqrt 2."""
+    target = 2.0 * np.pi * goals.limits["bandwidth"]
+
+    def excluded(margin: Floats) -> Bools:
+        x = (target * np.maximum(1.0 + margin, 0.0)) ** 2
+        real = np.maximum(np.maximum(1.0 - c.e2_high * x, c.e2_low * x - 1.0), 0.0)
+        imaginary = np.maximum(np.maximum(c.e1_low - c.e3_high * x, c.e3_low * x - c.e1_high), 0.0)
+        poles = (1.0 + v.pole**2 * x) * (1.0 + v.lag_low**2 * x)
+        return np.asarray((real**2 + x * imaginary**2) * poles > 2.0 * (1.0 + 1e-9))
+
+    low, high = level, np.full(level.shape, goals.comfort)
+    over = excluded(high)
+    low = np.where(over, low, high)
+    for _ in range(_STEPS):
+        middle = 0.5 * (low + high)
+        out = excluded(middle)
+        high = np.where(out, middle, high)
+        low = np.where(out, low, middle)
+    return np.where(excluded(level), -np.inf, np.where(over, high, np.inf))
+
+
+def _peaking(c: Coefficients) -> Floats:
+    """Peaking [dB] at least: |D|^2 with coefficients from above, at their minimum (any x is a bound)."""
+    c1 = c.e1_high**2 - 2.0 * c.e2_low
+    c2 = c.e2_high**2 - 2.0 * c.e1_low * c.e3_low
+    c3 = c.e3_high**2
+    x = -c1 / (c2 + np.sqrt(np.maximum(c2 * c2 - 3.0 * c1 * c3, 0.0)))
+    x = np.where(np.isfinite(x) & (x > 0.0), x, 0.0)
+    least = np.clip(1.0 + x * (c1 + x * (c2 + x * c3)), 1e-30, 1.0)
+    return -10.0 * np.log10(least)
+
+
+def _phase_margin(v: View, left: Narrow, c: Coefficients) -> Floats:
+    """Phase margin [deg] at most, with the crossover between its extremes."""
+    t_low = left.rf_low * (v.cin_low + left.cf_low)
+    t_high = left.rf_high * (v.cin_high + left.cf_high)
+    f_low, f_high = left.rf_low * left.cf_low, left.rf_high * left.cf_high
+    w_low = _crossover(v, (c.g_high, t_high, f_low), False)
+    w_high = _crossover(v, (c.g_low, t_low, f_high), True)
+    lag = np.arctan(v.dominant * w_low) + np.arctan(v.second * w_low)
+    lag = lag + np.arctan(t_low / c.g_high * w_low) - np.arctan(f_high * w_high)
+    return 180.0 - np.degrees(lag)
+
+
+def _crossover(v: View, loop: tuple[Floats, Floats, Floats], above: bool) -> Floats:
+    """The crossover [rad/s] of one loop (g, Rf (Cin + Cf), Rf Cf), from above or from below.
+
+    Newton's method on a convex polynomial with one positive root: each step from above stays above;
+    the line between a point below and one above cuts the axis below the root.
+    """
+    g, t, f = loop
+    a2, b2, t2 = v.dominant**2, v.second**2, t * t
+    k0 = np.maximum(v.gain**2 - g * g, 0.0)
+    k1 = g * g * (a2 + b2) + t2 - (v.gain * f) ** 2
+    k2 = g * g * a2 * b2 + (a2 + b2) * t2
+    k3 = a2 * b2 * t2
+    drop = np.maximum(-k1, 0.0)
+    x = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
+    x = np.minimum(x, np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf))
+    x = np.minimum(x, np.where(k1 > 0.0, k0 / k1, np.inf))
+    for _ in range(5):
+        value = ((k3 * x + k2) * x + k1) * x - k0
+        slope = (3.0 * k3 * x + 2.0 * k2) * x + k1
+        x = x - np.where((slope > 0.0) & (value > 0.0), value / slope, 0.0)
+    x = np.where(np.isfinite(x), x, 0.0)
+    if above:
+        return np.sqrt(x * (1.0 + 1e-9))
+    value = np.maximum(((k3 * x + k2) * x + k1) * x - k0, 0.0)
+    secant = np.where(value + k0 > 0.0, x * (k0 / (value + k0)), x)
+    return np.sqrt(np.maximum(secant * (1.0 - 1e-9), 0.0))
