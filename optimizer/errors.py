@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from difflib import get_close_matches
 
 
 class LuxsiftError(Exception):
@@ -32,7 +33,7 @@ class Problem:
             place += f", {self.column}"
         found = "" if self.cell is None else f"found {self.cell!r}, "
         remedy = f" ({self.remedy})" if self.remedy else ""
-        return f"{place}: {found}{self.rule}{remedy}"
+        return _printable(f"{place}: {found}{self.rule}{remedy}")
 
 
 class InputError(LuxsiftError):
@@ -49,3 +50,21 @@ class OutputError(LuxsiftError):
 
 class MissingExtraError(LuxsiftError):
     """An optional reader or writer is not installed."""
+
+
+def nearest(word: str, known: Iterable[str]) -> str | None:
+    """Return the known word nearest to `word` in spelling, case aside; None where none is near."""
+    by_fold = {name.casefold(): name for name in known}
+    near = get_close_matches(word[:60].casefold(), by_fold, n=1)
+    return by_fold[near[0]] if near else None
+
+
+def did_you_mean(word: str, known: Iterable[str]) -> str:
+    """Return the remedy that names the known word nearest to `word`, '' where none is near."""
+    near = nearest(word, known)
+    return f"did you mean {near!r}?" if near else ""
+
+
+def _printable(text: str) -> str:
+    """Escape what a terminal would obey rather than show: names and remedies quote the user's input."""
+    return "".join(sign if sign.isprintable() else sign.encode("unicode_escape").decode() for sign in text)

@@ -226,6 +226,16 @@ def evaluate(bench: Bench, s: Settings) -> Evaluated:
     return Evaluated(exact, checks(bench, s, (transresistance, offset, exact["phase_margin"])))
 
 
+def screen(bench: Bench, s: Settings) -> dict[str, Bools]:
+    """The checks of `evaluate` alone, without the figures that they do not need."""
+    amp = amplifier_of(s)
+    network = loops.Network(s.rf, s.cf, s.shunt, input_capacitance(bench, s))
+    loop = loops.close(amp, network)
+    transresistance = s.rf * loop.gain
+    offset = dc_error(s) + s.dark * transresistance
+    return checks(bench, s, (transresistance, offset, rounded(loops.phase_margin(amp, loop))))
+
+
 def _slew(bench: Bench, s: Settings, per_light: Floats) -> Floats:
     if bench.bandwidth_target is None:
         return np.full(np.shape(per_light), np.nan)
@@ -257,9 +267,7 @@ def _noise(bench: Bench, s: Settings, state: tuple[loops.Loop, Floats, Bools]) -
     density = noise.thermal_current(s.rf, bench.kelvin) + s.current_noise
     density = density + noise.thermal_conductance_current(s.shunt, bench.kelvin)
     steady = noise.shot_current(s.responsivity * bench.background + s.dark)
-    signal = noise.output_current(
-        transresistance, noise.shot_current(s.responsivity * bench.weakest), white
-    )
+    signal = noise.output_current(transresistance, noise.shot_current(s.responsivity * bench.weakest), white)
     square = s.voltage_noise**2
     rest = noise.output_current(transresistance, density + steady, white)
     rest = rest + noise.amplifier_voltage(safe, square, white)

@@ -68,7 +68,9 @@ def raw_margin(name: str, value: Floats, limit: float) -> Floats:
         if name == "peaking":
             return np.asarray(1.0 - value / limit)
         if name in AT_MOST:
-            return np.asarray(np.where(value > 0.0, limit / value - 1.0, np.where(value <= 0.0, LARGEST, np.nan)))
+            return np.asarray(
+                np.where(value > 0.0, limit / value - 1.0, np.where(value <= 0.0, LARGEST, np.nan))
+            )
     raise KeyError(name)
 
 

@@ -121,9 +121,10 @@ def steady_limits(v: View, goals: Goals, level: Floats) -> tuple[Floats, Floats]
     room = swing(v, bench, v.rf_low)
     fixed, slope = error_offset(v), error_slope(v)
     factor = np.maximum(1.0 + level, 0.0)
-    light = v.responsivity * (bench.strongest * factor + bench.background) + v.dark_low
+    strongest = bench.strongest * factor if "full_scale" in limits else 0.0 * factor
+    light = v.responsivity * (strongest + bench.background) + v.dark_low
     with np.errstate(divide="ignore", invalid="ignore"):
-        gain = np.where(factor > 0.0, (room - fixed) / (light + slope), np.inf)
+        gain = np.where(strongest > 0.0, (room - fixed) / (light + slope), np.inf)
         if "slew" in limits and bench.bandwidth_target is not None:
             rate = limits["slew"] * factor * np.pi * bench.bandwidth_target * bench.strongest
             gain = np.minimum(gain, np.where(factor > 0.0, v.slew_rate / (rate * v.responsivity), np.inf))
@@ -246,7 +247,9 @@ def noise_floor(v: View, left: Narrow, c: Coefficients, bench: Bench) -> Floor:
         per_volt = v.voltage_noise / left.rf_high**2
         node = v.voltage_noise * (v.cin_low + left.cf_low) ** 2
         amplifier = per_volt * c.g_low**2 * (flat + flicker) + node * rising
-        buffer = per_volt * (flat + flicker) + v.voltage_noise * (left.cf_low + v.reference_node) ** 2 * rising
+        buffer = (
+            per_volt * (flat + flicker) + v.voltage_noise * (left.cf_low + v.reference_node) ** 2 * rising
+        )
         amplifier = amplifier + np.where(v.buffered, buffer, 0.0)
         charge = 2.0 * ELEMENTARY_CHARGE
         steady = charge * (v.responsivity * bench.background + v.dark_low) + v.current_noise

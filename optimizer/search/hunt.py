@@ -28,6 +28,7 @@ Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
 BATCH = 4096
+_PROBES = 4
 
 
 @dataclass(frozen=True, slots=True)
@@ -101,11 +102,15 @@ def add(hunt: Hunt, opamp: Ints, diode: Ints) -> None:
     """Take pairs into the hunt."""
     for begin in range(0, opamp.size, BATCH):
         part = slice(begin, begin + BATCH)
-        _admit(hunt, whole(hunt.index.space, opamp[part], diode[part]), None)
+        boxes = whole(hunt.index.space, opamp[part], diode[part])
+        _admit(hunt, boxes, np.full(len(boxes), -np.inf))
 
 
-def drain(hunt: Hunt, stop_at: float, tick: Callable[[], None]) -> None:
-    """Split boxes, the most promising first, until none is left before primary figure `stop_at`."""
+def drain(hunt: Hunt, stop_at: float, enough: Callable[[], bool]) -> None:
+    """Split boxes, the most promising first, until none is left up to primary figure `stop_at`.
+
+    `enough` is asked after every batch, and ends the work when it says so.
+    """
     while hunt.pool.priority.size:
         hunt.pool = hunt.pool.take(_alive(hunt, hunt.pool))
         size = hunt.pool.priority.size
@@ -118,14 +123,15 @@ def drain(hunt: Hunt, stop_at: float, tick: Callable[[], None]) -> None:
         chosen = hunt.pool.take(first)
         hunt.pool = hunt.pool.take(rest)
         _admit(hunt, halves(hunt.index, chosen.boxes), np.tile(chosen.key[:, 0], 2))
-        tick()
+        if enough():
+            return
 
 
 def _pairs(hunt: Hunt, boxes: Boxes) -> Ints:
     return boxes.column(Boxes.OPAMP) * hunt.index.space.diodes.price.size + boxes.column(Boxes.DIODE)
 
 
-def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats | None) -> None:
+def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats) -> None:
     """Bound `boxes`, evaluate the single ones that are left, and pool the others."""
     hunt.bounded += len(boxes)
     v = view(hunt.index, boxes)
@@ -134,7 +140,11 @@ def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats | None) -> None:
     boxes = narrowed(hunt.index, boxes, limits.left, v)
     keep = limits.possible & filled(boxes)
     key = _key(hunt, boxes.take(keep), limits, keep)
-    pool = Pool(boxes.take(keep), key, _priority(hunt, key))
+    key[:, 0] = np.maximum(key[:, 0], inherited[keep])
+    if hunt.rules.by == "margin":
+        key = _probed(hunt, boxes.take(keep), key)
+    boxes = boxes.take(keep)
+    pool = Pool(boxes, key, _priority(hunt, boxes, key))
     pool = pool.take(_alive(hunt, pool))
     lone = single(pool.boxes)
     if lone.any():
@@ -142,14 +152,27 @@ def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats | None) -> None:
     hunt.pool = hunt.pool.join(pool.take(~lone))
 
 
-def _level(hunt: Hunt, boxes: Boxes, known: tuple[Floats, Floats], inherited: Floats | None) -> Floats:
+def _probed(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
+    """`key` with the margin bound lowered: a box that holds nothing at a level has no such margin."""
+    low, high = np.full(len(boxes), hunt.rules.least), -key[:, 0]
+    v = view(hunt.index, boxes)
+    for _ in range(_PROBES):
+        middle = 0.5 * (low + high)
+        possible = bound(v, hunt.goals, middle).possible
+        low, high = np.where(possible, middle, low), np.where(possible, high, middle)
+    key[:, 0] = np.maximum(key[:, 0], -high)
+    key[:, 2] = np.maximum(key[:, 2], -high)
+    return key
+
+
+def _level(hunt: Hunt, boxes: Boxes, known: tuple[Floats, Floats], inherited: Floats) -> Floats:
     """The smallest margin that a setting of each box needs to be of any use."""
     rules, incumbents = hunt.rules, hunt.incumbents
     cost, current = known
     level = np.full(len(boxes), rules.least)
     first = {"cost": cost, "supply_current": current}.get(rules.by)
     if first is None:
-        first = np.full(len(boxes), -np.inf) if inherited is None else inherited
+        first = inherited
     slots = incumbents.slot_of[_pairs(hunt, boxes)]
     has = slots >= 0
     if has.any():
@@ -198,14 +221,13 @@ def _key(hunt: Hunt, boxes: Boxes, limits: Bound, keep: Bools) -> Floats:
     return np.column_stack([first, cost, -vector, *ties])
 
 
-def _priority(hunt: Hunt, key: Floats) -> Floats:
-    """One number that sorts boxes roughly as their keys do."""
-    comfort = hunt.goals.comfort
-    shortfall = comfort + key[:, 2]
-    size = np.abs(key[:, 1]) + 1e-12
-    if hunt.rules.by == "margin":
-        return np.asarray(key[:, 0] + 1e-6 * key[:, 1] / (1.0 + size))
-    return np.asarray(key[:, 0] + np.abs(key[:, 0]) * (1e-7 * shortfall) + 1e-12 * size)
+def _priority(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
+    """One number that sorts boxes roughly as their keys do, the smaller box first where they are alike."""
+    first = np.clip(key[:, 0], -1e30, 1e30)
+    cost = key[:, 1] / (1.0 + key[:, 1])
+    size = np.sum(np.log2(boxes.rows[:, 3::2] - boxes.rows[:, 2::2]), axis=1)
+    finer = (hunt.goals.comfort + key[:, 2]) + 0.01 * size
+    return np.asarray(first + np.abs(first) * 1e-7 * finer + 1e-6 * cost + 1e-8 * finer)
 
 
 def _alive(hunt: Hunt, pool: Pool) -> Bools:

@@ -98,7 +98,9 @@ def pair(space: Space, opamp: int, diode: int) -> PairResult:
         reach = max(reach, int(judged.reach.max()))
         best = _better(space, best, judged.take(judged.meets))
         near = judged.take(judged.reach == PASSES)
-        near = Judged(near.choice, near.reach, near.margin_columns, -near.vector[:, 0], near.cost, near.vector)
+        near = Judged(
+            near.choice, near.reach, near.margin_columns, -near.vector[:, 0], near.cost, near.vector
+        )
         nearest = _better(space, nearest, near)
     return PairResult(best, nearest, reach)
 

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from optimizer.catalog import unit_price
 from optimizer.catalog.parts import Parts
-from optimizer.figures import CHECKS, Bench
+from optimizer.figures import CHECKS, Bench, output_limits
 from optimizer.physics import loop, noise, output, photodiode
 from optimizer.request_types import Request
 from optimizer.search.contexts import Contexts
@@ -83,12 +83,14 @@ class Diodes:
 class Verdicts:
     """For one role: `code` (parts, contexts) of the first own check failed in each context, PASSES
 
-    where none; `blank` (parts, 2): index of the first unknown column that is needed in an unbiased and
-    in a biased wiring (-1: none); `alone` (parts,): the check reached in the context that gets
-    furthest; `column` (parts,): the name of the column where that check is `missing`, else ''.
+    where none; `blank` (parts, contexts): place in `columns` of the first unknown one that is needed;
+    `alone` (parts,): the check reached in the context that gets furthest; `column` (parts,): the name
+    of the column where that check is `missing`, else ''.
     """
 
-    code: Ints
+    code: NDArray[np.int8]
+    blank: NDArray[np.int8]
+    columns: tuple[str, ...]
     alone: Ints
     column: NDArray[np.str_]
 
@@ -191,7 +193,9 @@ def _unknown(parts: Parts, columns: Sequence[str]) -> Ints:
     return first
 
 
-def judge_opamps(parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: OpAmps) -> Verdicts:
+def judge_opamps(
+    parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: OpAmps
+) -> Verdicts:
     """Which checks each op-amp fails by itself, in each context."""
     n, supply = parts.number, request.supply
     needed = list(ALWAYS["opamps"])
@@ -214,8 +218,10 @@ def judge_opamps(parts: Parts, request: Request, contexts: Contexts, *, bench: B
     with np.errstate(invalid="ignore"):
         scarce = extra & (n["stock"][:, None] < 2 * request.quantity)
         code = np.minimum(code, np.where(scarce, CHECKS.index("stock"), PASSES))
-        code = np.minimum(code, np.where(_outside_input(bench, arrays, contexts), CHECKS.index("input_range"), PASSES))
-        code = np.minimum(code, np.where(_no_window(bench, arrays)[:, None], CHECKS.index("window"), PASSES))
+        outside = _outside_input(bench, arrays, contexts)
+        code = np.minimum(code, np.where(outside, CHECKS.index("input_range"), PASSES))
+        narrow = _no_window(bench, arrays)[:, None]
+        code = np.minimum(code, np.where(narrow, CHECKS.index("window"), PASSES))
     return _verdicts("opamps", code, np.tile(blank[:, None], (1, contexts.size)))
 
 
@@ -229,8 +235,6 @@ def _outside_input(bench: Bench, arrays: OpAmps, contexts: Contexts) -> Bools:
 
 
 def _no_window(bench: Bench, arrays: OpAmps) -> Bools:
-    from optimizer.figures import output_limits
-
     fails = np.zeros(arrays.gbw.size, dtype=bool)
     for end in bench.ends:
         lower, upper = output_limits(bench, end, arrays.output_low, arrays.output_high)
@@ -238,7 +242,9 @@ def _no_window(bench: Bench, arrays: OpAmps) -> Bools:
     return fails
 
 
-def judge_diodes(parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: Diodes) -> Verdicts:
+def judge_diodes(
+    parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: Diodes
+) -> Verdicts:
     """Which checks each photodiode fails by itself, in each context."""
     needed = list(ALWAYS["photodiodes"])
     light = request.light
@@ -272,9 +278,11 @@ def _sensitive(parts: Parts, wavelength: float) -> Bools:
 
 
 def _verdicts(role: str, code: Ints, blank: Ints) -> Verdicts:
-    order = [*COLUMNS[role], ""]
+    columns = (*COLUMNS[role], "")
+    last = len(columns) - 1
     alone = code.max(axis=1, initial=-1)
     missing = CHECKS.index("missing")
-    reached = np.where(code == missing, blank, len(order) - 1).min(axis=1, initial=len(order) - 1)
-    column = np.array([order[i] if a == missing else "" for i, a in zip(reached, alone, strict=True)], dtype=str)
-    return Verdicts(code, alone, column)
+    reached = np.where(code == missing, blank, last).min(axis=1, initial=last)
+    named = [columns[i] if a == missing else "" for i, a in zip(reached, alone, strict=True)]
+    column = np.array(named, dtype=str)
+    return Verdicts(code.astype(np.int8), blank.astype(np.int8), columns, alone, column)

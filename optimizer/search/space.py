@@ -114,7 +114,9 @@ def build(request: Request, catalogs: Catalogs) -> Space:
         capacitors=capacitors,
         low_passes=low_passes,
         opamp_verdicts=roles.judge_opamps(catalogs.opamps, request, contexts, bench=bench, arrays=opamps),
-        diode_verdicts=roles.judge_diodes(catalogs.photodiodes, request, contexts, bench=bench, arrays=diodes),
+        diode_verdicts=roles.judge_diodes(
+            catalogs.photodiodes, request, contexts, bench=bench, arrays=diodes
+        ),
         order_opamps=_ranks(catalogs.opamps.text["part"], catalogs.opamps.text["maker"]),
         order_diodes=_ranks(catalogs.photodiodes.text["part"], catalogs.photodiodes.text["maker"]),
         combinations=combinations,

@@ -80,5 +80,10 @@ def _widths(index: Index, boxes: Boxes) -> Floats:
     node = space.diodes.capacitance[column(Boxes.DIODE), x0] * 0.05 + 1e-13
     several_lags = np.where(column(Boxes.L1) - column(Boxes.L0) > 1, _MUCH / 2.0, 0.0)
     return np.column_stack(
-        [context, np.log(r_high / r_low) + 1e-7, np.log((c_high + node) / (c_low + node)) + 1e-8, several_lags]
+        [
+            context,
+            np.log(r_high / r_low) + 1e-7,
+            np.log((c_high + node) / (c_low + node)) + 1e-8,
+            several_lags,
+        ]
     )

@@ -184,7 +184,9 @@ def _crossover(v: View, loop: tuple[Floats, Floats, Floats], above: bool) -> Flo
     k3 = a2 * b2 * t2
     drop = np.maximum(-k1, 0.0)
     x = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
-    x = np.minimum(x, np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf))
+    x = np.minimum(
+        x, np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf)
+    )
     x = np.minimum(x, np.where(k1 > 0.0, k0 / k1, np.inf))
     for _ in range(5):
         value = ((k3 * x + k2) * x + k1) * x - k0

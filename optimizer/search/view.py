@@ -184,7 +184,9 @@ def view(index: Index, boxes: Boxes) -> View:
     mixed = np.where(some[BUFFERED] & lone, np.minimum(one, two), one)
     capacitance = space.diodes.capacitance
     shunt, dark = space.diodes.shunt[d], space.diodes.dark[d]
-    possible = (amps.passes[o, x1] > amps.passes[o, x0]) & (index.diode_passes[d, x1] > index.diode_passes[d, x0])
+    possible = (amps.passes[o, x1] > amps.passes[o, x0]) & (
+        index.diode_passes[d, x1] > index.diode_passes[d, x0]
+    )
     rise, fall = index.rising.least(x0, x1), index.falling.least(x0, x1)
     prices = (
         space.diodes.price[d],

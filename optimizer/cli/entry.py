@@ -1,0 +1,68 @@
+"""The one place that prints errors and decides the exit status."""
+
+from __future__ import annotations
+
+import io
+import sys
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING
+
+from optimizer.cli.arguments import parse, parser
+from optimizer.cli.messages import error_lines
+from optimizer.cli.output import write
+from optimizer.errors import LuxsiftError
+
+if TYPE_CHECKING:
+    import argparse
+
+BAD_INPUT, INTERRUPTED = 2, 130
+
+
+def main(words: Sequence[str] | None = None) -> int:
+    """Run one command and return its exit status: 0, 1, 2 or 130 (see `luxsift --help`)."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")
+    status = _guarded(list(sys.argv[1:] if words is None else words))
+    write(sys.stdout, "")
+    return status
+
+
+def _guarded(words: list[str]) -> int:
+    try:
+        return _run(words)
+    except LuxsiftError as error:
+        write(sys.stderr, "\n".join(error_lines(error)) + "\n")
+        return BAD_INPUT
+    except KeyboardInterrupt:
+        write(sys.stderr, "luxsift: interrupted before anything was decided\n")
+        return INTERRUPTED
+    except SystemExit as end:  # argparse has printed its help
+        return int(end.code or 0)
+
+
+def _run(words: list[str]) -> int:
+    parsed = parse(words)
+    if parsed.version:
+        from optimizer.record.build import installed_version
+
+        write(sys.stdout, f"luxsift {installed_version()}\n")
+        return 0
+    if parsed.command is None:
+        write(sys.stderr, parser().format_help())
+        return BAD_INPUT
+    return _command(parsed.command)(parsed)
+
+
+def _command(name: str) -> Callable[[argparse.Namespace], int]:
+    if name == "start":
+        from optimizer.cli.start import start
+
+        return start
+    if name == "inspect":
+        from optimizer.cli.inspect import inspect
+
+        return inspect
+    from optimizer.cli.shortlist import shortlist
+
+    return shortlist

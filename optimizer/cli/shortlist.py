@@ -1,0 +1,161 @@
+"""`luxsift shortlist`: read, search, print, save."""
+
+from __future__ import annotations
+
+import argparse
+import os
+import sys
+from collections.abc import Sequence
+from dataclasses import replace
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from optimizer.cli.arguments import COMMAND_LINE, ShortlistOptions, shortlist_options
+from optimizer.cli.messages import printable
+from optimizer.cli.output import write, write_lines
+from optimizer.cli.progress import progress
+from optimizer.errors import InputError, OutputError, Problem
+
+if TYPE_CHECKING:
+    from optimizer.record import Record
+    from optimizer.search.result import Outcome
+    from optimizer.study import Study
+
+MEETS, NOTHING_MEETS, INTERRUPTED = 0, 1, 130
+LISTED = 20
+
+
+def shortlist(parsed: argparse.Namespace) -> int:
+    """Run the search that `parsed` asks for; raises InputError and OutputError."""
+    options, problems = shortlist_options(parsed)
+    study = _load(options, problems)
+    from optimizer.search import Interrupted
+    from optimizer.search import shortlist as search
+
+    _tell_left_out(study, options)
+    try:
+        with progress(quiet=options.quiet) as report:
+            outcome = search(study.request, study.catalogs, workers=options.workers, progress=report)
+    except Interrupted as stop:
+        _tell_interrupted(study, stop.outcome)
+        return INTERRUPTED
+    return _answer(study, outcome, options)
+
+
+def _load(options: ShortlistOptions, problems: list[Problem]) -> Study:
+    """The study with the options put in force; raises every problem of both at once."""
+    from optimizer.study import load
+
+    study, inputs = None, [Path(options.request)]
+    try:
+        study = _with_options(load(options.request), options)
+    except InputError as error:
+        problems += error.problems
+    if study is not None:
+        problems += _choice_problems(study, options)
+        files = [file for files in study.request.catalogs.values() for file in files]
+        inputs += [study.request.path.parent / file for file in files]
+    problems += _output_problems(options, inputs)
+    if problems or study is None:
+        raise InputError(problems)
+    return study
+
+
+def _with_options(study: Study, options: ShortlistOptions) -> Study:
+    ranking = study.request.ranking
+    ranking = replace(ranking, by=options.by or ranking.by, show=options.show or ranking.show)
+    return replace(study, request=replace(study.request, ranking=ranking))
+
+
+def _choice_problems(study: Study, options: ShortlistOptions) -> list[Problem]:
+    show = study.request.ranking.show
+    if options.choose <= show:
+        return []
+    rule = f"expected one of the {show} rows to be shown"
+    remedy = f"or --show {options.choose}"
+    return [Problem(COMMAND_LINE, None, "--choose", str(options.choose), rule, remedy)]
+
+
+def _output_problems(options: ShortlistOptions, inputs: Sequence[Path]) -> list[Problem]:
+    """Why a file that is asked for could not be written, found before work is spent on it."""
+    from optimizer.record.files import check_writable
+
+    taken = {os.path.realpath(path) for path in inputs}
+    problems = []
+    for name, path in (("--save", options.save), ("--csv", options.csv)):
+        if path is None or (name == "--save" and path == "-"):
+            continue
+        if os.path.realpath(path) in taken:
+            rule = "that file is input of this run, or already written by another option"
+            problems.append(Problem(COMMAND_LINE, None, name, path, rule, "give another name"))
+        taken.add(os.path.realpath(path))
+        try:
+            check_writable(path)
+        except OutputError as error:
+            problems.append(Problem(COMMAND_LINE, None, name, None, str(error)))
+    return problems
+
+
+def _answer(study: Study, outcome: Outcome, options: ShortlistOptions) -> int:
+    from optimizer import record as records
+
+    shown = len(outcome.candidates)
+    beyond = shown and options.choose > shown
+    record = records.build(study, outcome, None if beyond else options.choose)
+    if beyond:
+        _print(record, options)
+        raise InputError([records.choice_problem(options.choose, shown)])
+    failure = _save(record, options)
+    _print(record, options)
+    if failure is not None:
+        raise failure
+    return MEETS if shown else NOTHING_MEETS
+
+
+def _save(record: Record, options: ShortlistOptions) -> OutputError | None:
+    """Write the files that are asked for; the error comes back, so that the table is still printed."""
+    from optimizer import record as records
+    from optimizer.record.files import to_json
+    from optimizer.report.csv_file import write_csv
+
+    try:
+        if options.save == "-":
+            write(sys.stdout, to_json(record))
+        elif options.save is not None:
+            records.write(record, options.save)
+        if options.csv is not None:
+            write_csv(record, options.csv)
+    except OutputError as error:
+        return error
+    return None
+
+
+def _print(record: Record, options: ShortlistOptions) -> None:
+    from optimizer.report import report, table_only
+    from optimizer.report.terminal import width_of
+
+    stream = sys.stderr if options.save == "-" else sys.stdout
+    draw = table_only if options.quiet else report
+    write_lines(stream, draw(record, width_of(stream)))
+
+
+def _tell_left_out(study: Study, options: ShortlistOptions) -> None:
+    from optimizer.report.words import several
+
+    rows = study.catalogs.left_out
+    if options.quiet or not rows:
+        return
+    lines = [f"luxsift: left out of the catalogs as source.toml says: {several(len(rows), 'row')}"]
+    lines += [f"  {entry.file}, line {entry.row}: {entry.reason}" for entry in rows[:LISTED]]
+    if len(rows) > LISTED:
+        lines.append(f"  ... and {len(rows) - LISTED:,} more (luxsift inspect lists them)")
+    write(sys.stderr, "".join(f"{printable(line)}\n" for line in lines))
+
+
+def _tell_interrupted(study: Study, outcome: Outcome) -> None:
+    from optimizer.record import build
+    from optimizer.report.interrupted import interrupted
+    from optimizer.report.terminal import width_of
+
+    record = build(study, outcome, None)
+    write_lines(sys.stderr, interrupted(record, width_of(sys.stderr)))

@@ -1,0 +1,125 @@
+"""From a study and the outcome of its search to the record."""
+
+from __future__ import annotations
+
+import math
+from collections import Counter
+from collections.abc import Mapping
+from dataclasses import asdict
+from datetime import UTC, datetime
+from typing import TYPE_CHECKING, Any
+
+from optimizer.errors import InputError, Problem
+from optimizer.record.model import FORMAT, Record
+from optimizer.vocabulary import VOCABULARY
+
+if TYPE_CHECKING:
+    from optimizer.search.result import Candidate, Outcome
+    from optimizer.study import Study
+
+
+def build(study: Study, outcome: Outcome, chosen: int | None = 1) -> Record:
+    """Write down what was asked and what the search decided.
+
+    `chosen` is the rank of the row to mark; without candidates nothing is chosen.
+    Raises InputError where `chosen` is no rank of a candidate.
+    """
+    from optimizer.request_force import in_force
+
+    shown = len(outcome.candidates)
+    if shown and chosen is not None and not 1 <= chosen <= shown:
+        raise InputError([choice_problem(chosen, shown)])
+    data = {
+        "format": FORMAT,
+        "name": study.request.name,
+        "created": datetime.now(UTC).isoformat(timespec="seconds"),
+        "version": installed_version(),
+        "request": in_force(study.request),
+        "chosen": chosen if shown else None,
+        "currency": _currency(study),
+        "inputs": [{"file": s.file, "sha256": s.sha256, "rows": s.rows} for s in study.inputs],
+        "left_out": _left_out(study),
+        "search": _search(outcome),
+        "candidates": [_candidate(c, rank) for rank, c in enumerate(outcome.candidates, 1)],
+        "near_misses": [
+            _candidate(c, rank) | {"missed": list(c.missed)}
+            for rank, c in enumerate(outcome.near_misses, shown + 1)
+        ],
+    }
+    return Record(plain(data))
+
+
+def choice_problem(chosen: int, shown: int) -> Problem:
+    """What to say where `chosen` is no rank of the `shown` candidates."""
+    rows = "the one row that meets the request" if shown == 1 else f"a rank from 1 to {shown}"
+    return Problem("command line", None, "--choose", str(chosen), f"expected {rows}")
+
+
+def installed_version() -> str:
+    """The version of the installed distribution, "unknown" where the source tree runs uninstalled."""
+    from importlib.metadata import PackageNotFoundError, version
+
+    try:
+        return version("luxsift")
+    except PackageNotFoundError:
+        return "unknown"
+
+
+def plain(value: Any) -> Any:
+    """Give `value` in JSON's own types: null for what is not finite, no numpy scalar, no -0.0."""
+    if isinstance(value, Mapping):
+        return {str(key): plain(item) for key, item in value.items()}
+    if isinstance(value, list | tuple):
+        return [plain(item) for item in value]
+    if value is None or isinstance(value, bool | str | int):
+        return value
+    number = value.item() if hasattr(value, "item") else value
+    if isinstance(number, float):
+        return number + 0.0 if math.isfinite(number) else None
+    return number
+
+
+def _currency(study: Study) -> str | None:
+    stated: str = study.request.currency
+    return study.catalogs.currency or (None if stated == "catalog currency" else stated)
+
+
+def _left_out(study: Study) -> list[dict[str, Any]]:
+    rows = Counter(entry.file for entry in study.catalogs.left_out)
+    return [{"file": file, "rows": count} for file, count in sorted(rows.items())]
+
+
+def _search(outcome: Outcome) -> dict[str, Any]:
+    return {
+        "combinations": outcome.combinations,
+        "pairs": outcome.pairs,
+        "evaluated": outcome.evaluated,
+        "seconds": outcome.seconds,
+        "proven": outcome.proven,
+        "dropped": dict(sorted(outcome.dropped.items())),
+        "impossible": outcome.impossible,
+        "blocking": outcome.blocking,
+    }
+
+
+def _candidate(candidate: Candidate, rank: int) -> dict[str, Any]:
+    return {
+        "rank": rank,
+        "photodiode": candidate.photodiode,
+        "opamp": candidate.opamp,
+        "photodiode_maker": candidate.photodiode_maker,
+        "opamp_maker": candidate.opamp_maker,
+        "wiring": candidate.wiring,
+        "reference": asdict(candidate.reference),
+        "feedback_resistance": candidate.feedback_resistance,
+        "resistor_family": candidate.resistor_family,
+        "feedback_capacitance": candidate.feedback_capacitance,
+        "capacitor_family": candidate.capacitor_family,
+        "low_pass": candidate.low_pass,
+        "figures": {name: candidate.figures.get(name) for name in VOCABULARY},
+        "targets": [asdict(target) for target in candidate.targets],
+        "limiting": candidate.limiting,
+        "margin": candidate.margin,
+        "assumed": sorted(candidate.assumed),
+        "linear_model": list(candidate.linear_model),
+    }

@@ -1,0 +1,121 @@
+"""Whether a JSON document has the shape of a record, before anything relies on it."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from typing import Any
+
+from optimizer.errors import Problem
+from optimizer.record.model import FORMAT
+from optimizer.vocabulary import VOCABULARY
+
+Shape = Mapping[str, tuple[type, ...]]
+NUMBER = (int, float)
+TOP: Shape = {
+    "name": (str,),
+    "created": (str,),
+    "version": (str,),
+    "request": (dict,),
+    "chosen": (int, type(None)),
+    "inputs": (list,),
+    "search": (dict,),
+    "candidates": (list,),
+    "near_misses": (list,),
+}
+SEARCH: Shape = {
+    "combinations": (int,),
+    "evaluated": (int,),
+    "seconds": NUMBER,
+    "proven": (bool,),
+    "dropped": (dict,),
+}
+REQUEST: Shape = {"quantity": (int,), "light": (dict,), "space": (dict,), "ranking": (dict,)}
+LIGHT: Shape = {"wavelength": NUMBER, "strongest": (*NUMBER, str)}
+SPACE: Shape = {"low_pass": (list,)}
+RANKING: Shape = {"by": (str,), "show": (int,), "comfort": NUMBER}
+CANDIDATE: Shape = {
+    "rank": (int,),
+    "photodiode": (str,),
+    "opamp": (str,),
+    "photodiode_maker": (str,),
+    "opamp_maker": (str,),
+    "wiring": (str,),
+    "reference": (dict,),
+    "feedback_resistance": NUMBER,
+    "resistor_family": (str,),
+    "feedback_capacitance": NUMBER,
+    "capacitor_family": (str, type(None)),
+    "low_pass": (*NUMBER, type(None)),
+    "figures": (dict,),
+    "targets": (list,),
+    "limiting": (str,),
+    "margin": NUMBER,
+    "assumed": (list,),
+}
+REFERENCE: Shape = {
+    "kind": (str,),
+    "voltage": NUMBER,
+    "top": (*NUMBER, type(None)),
+    "bottom": (*NUMBER, type(None)),
+    "buffered": (bool,),
+    "extra_package": (bool,),
+}
+TARGET: Shape = {"name": (str,), "value": (*NUMBER, type(None)), "limit": NUMBER, "margin": NUMBER}
+WORDS = {str: "text", int: "a whole number", float: "a number", dict: "a table", list: "a list"}
+WORDS |= {bool: "true or false", type(None): "null"}
+
+
+def document_problems(file: str, data: Any) -> list[Problem]:
+    """Everything that keeps `data` from being a record of this format, in reading order."""
+    said = data.get("format") if isinstance(data, dict) else None
+    if said != FORMAT:
+        return [Problem(file, None, "format", None if said is None else str(said), *_other(said))]
+    return list(_shape(file, "", data, TOP) or _inner(file, data))
+
+
+def _other(said: object) -> tuple[str, str]:
+    family = FORMAT.partition("/")[0]
+    if isinstance(said, str) and said.partition("/")[0] == family:
+        return f"expected {FORMAT!r}", "another version of luxsift wrote it; run the request again"
+    return f"expected a record, {FORMAT!r}", "records are written by luxsift shortlist REQUEST --save FILE"
+
+
+def _inner(file: str, data: Mapping[str, Any]) -> Iterator[Problem]:
+    yield from _shape(file, "search", data["search"], SEARCH)
+    request = _shape(file, "request", data["request"], REQUEST)
+    yield from request
+    for table, shape in () if request else (("light", LIGHT), ("space", SPACE), ("ranking", RANKING)):
+        yield from _shape(file, f"request.{table}", data["request"][table], shape)
+    for group in ("candidates", "near_misses"):
+        for index, entry in enumerate(data[group]):
+            yield from _candidate(file, f"{group}[{index}]", entry)
+
+
+def _candidate(file: str, where: str, entry: Any) -> Iterator[Problem]:
+    own = _shape(file, where, entry, CANDIDATE)
+    yield from own
+    if own:
+        return
+    yield from _shape(file, f"{where}.reference", entry["reference"], REFERENCE)
+    figures = dict.fromkeys(VOCABULARY, (*NUMBER, type(None)))
+    yield from _shape(file, f"{where}.figures", entry["figures"], figures)
+    for index, target in enumerate(entry["targets"]):
+        yield from _shape(file, f"{where}.targets[{index}]", target, TARGET)
+
+
+def _shape(file: str, where: str, table: Any, shape: Shape) -> list[Problem]:
+    if not isinstance(table, dict):
+        return [Problem(file, None, where or None, None, "expected a table")]
+    found = []
+    for key, kinds in shape.items():
+        place = f"{where}.{key}" if where else key
+        if key not in table:
+            found.append(Problem(file, None, place, None, "the record lacks this key"))
+        elif not _is_one_of(table[key], kinds):
+            rule = f"expected {' or '.join(WORDS[kind] for kind in kinds)}"
+            found.append(Problem(file, None, place, str(table[key])[:60], rule))
+    return found
+
+
+def _is_one_of(value: object, kinds: tuple[type, ...]) -> bool:
+    return isinstance(value, kinds) and (bool in kinds or not isinstance(value, bool))

@@ -1,0 +1,48 @@
+"""The record as one frozen value, with its tables for a notebook."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+FORMAT = "luxsift-shortlist/1"
+
+
+@dataclass(frozen=True)
+class Record:
+    """What one run decided: `data` is the JSON document that `--save` writes, in SI units."""
+
+    data: Mapping[str, Any]
+
+    @property
+    def candidates(self) -> list[dict[str, Any]]:
+        """The candidates that meet the request, best first."""
+        return list(self.data["candidates"])
+
+    @property
+    def near_misses(self) -> list[dict[str, Any]]:
+        """The eligible candidates that miss a target, nearest first."""
+        return list(self.data["near_misses"])
+
+    @property
+    def table(self) -> pd.DataFrame:
+        """The candidates as a DataFrame, one row each, numbers in SI units."""
+        from optimizer.record.rows import frame
+
+        return frame(self.candidates, self.data["request"])
+
+    @property
+    def near_miss_table(self) -> pd.DataFrame:
+        """The near misses as a DataFrame with the columns of `table`."""
+        from optimizer.record.rows import frame
+
+        return frame(self.near_misses, self.data["request"])
+
+    def _repr_html_(self) -> str:
+        from optimizer.record.html import notebook
+
+        return notebook(self)

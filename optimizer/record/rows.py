@@ -1,0 +1,83 @@
+"""Candidates as flat rows: one column a value, the same for the DataFrame and the CSV file."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import TYPE_CHECKING, Any
+
+from optimizer.vocabulary import TARGETS, VOCABULARY
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+TEXT = (
+    "photodiode",
+    "opamp",
+    "photodiode_maker",
+    "opamp_maker",
+    "wiring",
+    "reference",
+    "resistor_family",
+    "capacitor_family",
+    "limiting",
+    "missed",
+    "assumed",
+    "linear_model",
+)
+CHOICE = (
+    "rank",
+    "photodiode",
+    "opamp",
+    "photodiode_maker",
+    "opamp_maker",
+    "wiring",
+    "reference",
+    "reference_voltage",
+    "divider_top",
+    "divider_bottom",
+    "buffered",
+    "extra_package",
+    "feedback_resistance",
+    "resistor_family",
+    "feedback_capacitance",
+    "capacitor_family",
+    "low_pass",
+)
+VERDICT = ("limiting", "margin")
+NOTES = ("missed", "assumed", "linear_model")
+
+
+def columns(request: Mapping[str, Any]) -> tuple[str, ...]:
+    """The columns of a row, with one `<target>_margin` for each target that `request` grades."""
+    margins = (f"{name}_margin" for name in graded(request))
+    return (*CHOICE, *VOCABULARY, *VERDICT, *margins, *NOTES)
+
+
+def graded(request: Mapping[str, Any]) -> tuple[str, ...]:
+    """The graded targets in the order of the record; full_scale always is one."""
+    stated = {name for name, limit in request.get("targets", {}).items() if limit is not None}
+    return tuple(name for name in TARGETS if name == "full_scale" or name in stated)
+
+
+def flat(candidate: Mapping[str, Any]) -> dict[str, Any]:
+    """One candidate of a record as column -> value; lists become text joined by '; '."""
+    reference = candidate["reference"]
+    row = {name: candidate[name] for name in CHOICE if name in candidate}
+    row |= {"reference": reference["kind"], "reference_voltage": reference["voltage"]}
+    row |= {"divider_top": reference["top"], "divider_bottom": reference["bottom"]}
+    row |= {name: reference[name] for name in ("buffered", "extra_package")}
+    row |= {name: candidate["figures"].get(name) for name in VOCABULARY}
+    row |= {f"{target['name']}_margin": target["margin"] for target in candidate["targets"]}
+    row |= {name: candidate[name] for name in VERDICT}
+    return row | {name: "; ".join(candidate.get(name, ())) for name in NOTES}
+
+
+def frame(candidates: Sequence[Mapping[str, Any]], request: Mapping[str, Any]) -> pd.DataFrame:
+    """The candidates as a DataFrame of `columns(request)`, indexed from 0; NaN where no figure exists."""
+    import pandas as pd
+
+    names = columns(request)
+    table = pd.DataFrame([flat(candidate) for candidate in candidates], columns=list(names))
+    flags = {"buffered": "bool", "extra_package": "bool", "rank": "int64"}
+    kinds = {name: flags.get(name, "object" if name in TEXT else "float64") for name in names}
+    return table.astype(kinds)

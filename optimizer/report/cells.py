@@ -1,0 +1,100 @@
+"""The cells of the ranked table: one column a heading, with the marks that footnotes explain."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from optimizer.quantities import show
+from optimizer.report.layout import Column
+from optimizer.report.words import clean, figure, margin_words
+
+Candidate = Mapping[str, Any]
+ASSUMED = "*"
+LINEAR = "^"
+
+
+def choice_columns(
+    rows: Sequence[Candidate], request: Mapping[str, Any], *, narrow: bool = False
+) -> list[Column]:
+    """What each row buys: parts, wiring, reference and feedback; `narrow` folds the wiring's name."""
+    wirings = [row["wiring"].replace("-", "-\n") if narrow else row["wiring"] for row in rows]
+    columns = [
+        Column("photodiode", tuple(_names(rows, "photodiode")), gives=True),
+        Column("op-amp", tuple(_names(rows, "opamp")), gives=True),
+        Column("wiring", tuple(wirings)),
+        Column("Vref", tuple(_reference(row) for row in rows), right=True),
+        Column("Rf", tuple(_resistance(row) for row in rows), right=True),
+        Column("Cf", tuple(_capacitance(row) for row in rows), right=True),
+    ]
+    if any(cutoff not in ("none", None) for cutoff in request["space"]["low_pass"]):
+        columns.append(Column("low-pass", tuple(_low_pass(row) for row in rows), right=True))
+    return columns
+
+
+def figure_columns(
+    rows: Sequence[Candidate], request: Mapping[str, Any], *, narrow: bool = False, tall: bool = True
+) -> list[Column]:
+    """What each row does: the figures, and the limiting target with its margin in words.
+
+    `narrow` folds the limiting target onto two lines, `tall` the longer headings.
+    """
+
+    def cells(name: str) -> tuple[str, ...]:
+        return tuple(_marked_figure(row, name, request) for row in rows)
+
+    return [
+        Column("bandwidth", cells("bandwidth"), right=True),
+        Column("SNR", cells("snr"), right=True),
+        Column("dynamic\nrange" if tall else "dyn. range", cells("dynamic_range"), right=True),
+        Column("supply\ncurrent" if tall else "supply", cells("supply_current"), right=True),
+        Column("cost", cells("cost"), right=True),
+        Column("limiting target", tuple(limiting(row, "\n" if narrow else " ") for row in rows)),
+    ]
+
+
+def limiting(row: Candidate, joint: str = " ") -> str:
+    """The limiting target and its margin: 'snr, 3 % to spare'."""
+    exists = all(t["value"] is not None for t in row["targets"] if t["name"] == row["limiting"])
+    return f"{row['limiting']},{joint}{margin_words(row['margin']) if exists else 'does not exist'}"
+
+
+def named(row: Candidate, role: str) -> str:
+    """A part with its maker."""
+    return f"{clean(row[role])} ({clean(row[role + '_maker'])})"
+
+
+def _names(rows: Sequence[Candidate], role: str) -> list[str]:
+    makers: dict[str, set[str]] = {}
+    for row in rows:
+        makers.setdefault(row[role], set()).add(row[role + "_maker"])
+    shared = {part for part, who in makers.items() if len(who) > 1}
+    texts = (named(row, role) if row[role] in shared else clean(row[role]) for row in rows)
+    return [_marked(text, row, f"{role}.") for text, row in zip(texts, rows, strict=True)]
+
+
+def _marked(text: str, row: Candidate, prefix: str) -> str:
+    return text + ASSUMED if any(name.startswith(prefix) for name in row["assumed"]) else text
+
+
+def _marked_figure(row: Candidate, name: str, request: Mapping[str, Any]) -> str:
+    text = figure(name, row["figures"].get(name), request)
+    return text + LINEAR if name in row.get("linear_model", ()) else text
+
+
+def _reference(row: Candidate) -> str:
+    reference = row["reference"]
+    return "ground" if reference["kind"] == "ground" else show(reference["voltage"], "voltage")
+
+
+def _resistance(row: Candidate) -> str:
+    return _marked(show(row["feedback_resistance"], "resistance"), row, "resistor.")
+
+
+def _capacitance(row: Candidate) -> str:
+    placed = row["feedback_capacitance"]
+    return _marked(show(placed, "capacitance") if placed else "none", row, "capacitor.")
+
+
+def _low_pass(row: Candidate) -> str:
+    return "none" if row["low_pass"] is None else show(row["low_pass"], "frequency")

@@ -1,0 +1,89 @@
+"""The chosen row in full: what to build, and every graded target beside its limit."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from rich.text import Text
+
+from optimizer.quantities import show
+from optimizer.report.cells import named
+from optimizer.report.layout import Column, fit, lines
+from optimizer.report.paragraphs import paragraph
+from optimizer.report.words import beside, clean, figure, margin_words, side
+
+
+def chosen_lines(record: Mapping[str, Any], width: int) -> list[Text]:
+    """The chosen candidate as a short parts list and its targets; empty where none is chosen."""
+    rows = [row for row in record["candidates"] if row["rank"] == record["chosen"]]
+    if not rows:
+        return []
+    row, request = rows[0], record["request"]
+    out = [Text(f"Row {row['rank']}, chosen", "bold")]
+    for label, text in _build(row, request):
+        folded = paragraph(text, width - 13)
+        out += [Text(f"  {label if i == 0 else '':<10} {line}") for i, line in enumerate(folded)]
+    return out + _targets(row, request, width)
+
+
+def _build(row: Mapping[str, Any], request: Mapping[str, Any]) -> list[tuple[str, str]]:
+    bias = figure("reverse_bias", row["figures"]["reverse_bias"], request)
+    rows = [
+        ("photodiode", f"{named(row, 'photodiode')}, {row['wiring']}, reverse bias {bias}"),
+        ("op-amp", named(row, "opamp")),
+        ("feedback", _feedback(row)),
+        ("reference", _reference(row, request)),
+    ]
+    if row["low_pass"] is not None:
+        rows.append(("low-pass", f"{show(row['low_pass'], 'frequency')} after the receiver (not priced)"))
+    return rows
+
+
+def _feedback(row: Mapping[str, Any]) -> str:
+    resistor = f"{show(row['feedback_resistance'], 'resistance')} ({clean(row['resistor_family'])})"
+    if not row["feedback_capacitance"]:
+        return f"{resistor}, no capacitor placed"
+    placed = show(row["feedback_capacitance"], "capacitance")
+    return f"{resistor} with {placed} ({clean(row['capacitor_family'])})"
+
+
+def _reference(row: Mapping[str, Any], request: Mapping[str, Any]) -> str:
+    reference = row["reference"]
+    if reference["kind"] == "ground":
+        return "ground"
+    top, bottom = (show(reference[end], "resistance") for end in ("top", "bottom"))
+    level = show(reference["voltage"], "voltage")
+    text = f"{level} by a divider of {top} from V+ and {bottom} to V-"
+    bypass = request["space"].get("divider", {}).get("bypass")
+    if bypass is not None:
+        text += f", bypassed by {show(bypass, 'capacitance')}"
+    if reference["buffered"]:
+        text += ", buffered by a second amplifier"
+        text += " in a second package" if reference["extra_package"] else " of the same package"
+    return text
+
+
+def _targets(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> list[Text]:
+    comfort = request["ranking"]["comfort"]
+    pairs = [beside(t["name"], t["value"], t["limit"], request) for t in row["targets"]]
+    names = [t["name"] for t in row["targets"]]
+    limits = [f"{side(name)} {limit}" for name, (_value, limit) in zip(names, pairs, strict=True)]
+    columns = (
+        Column("target", tuple(names)),
+        Column("value", tuple(value for value, _limit in pairs), right=True),
+        Column("limit", tuple(limits)),
+        Column("margin", tuple(_margin(t, row["limiting"], comfort) for t in row["targets"])),
+    )
+    widths = fit(columns, width - 2)
+    out = [Text("  " + line, "bold") for line in lines(columns, widths, -1)]
+    for index in range(len(names)):
+        out += [Text("  " + line) for line in lines(columns, widths, index)]
+    return out
+
+
+def _margin(target: Mapping[str, Any], limiting: str, comfort: float) -> str:
+    words = margin_words(target["margin"])
+    if target["name"] == limiting:
+        words += ", limiting"
+    return f"{words}, comfortable" if target["margin"] >= comfort else words

@@ -1,0 +1,48 @@
+"""The shortlist as CSV text: candidates, then near misses, one column a value, SI units."""
+
+from __future__ import annotations
+
+import csv
+import re
+from io import StringIO
+from pathlib import Path
+from typing import Any
+
+from optimizer.record import Record, write_text
+from optimizer.record.rows import columns, flat
+
+# A spreadsheet runs a cell that begins so; a foreign separator inside a cell may begin a new one.
+FORMULA = re.compile(r"(^|[;,|\t\r\n])([\s\u200b\ufeff]*[=+\-@\uff1d\uff0b\uff0d\uff20\t\r\n])")
+
+
+def write_csv(record: Record, path: str | Path) -> None:
+    """Write `csv_text` to `path`; raises OutputError and leaves the old file as it was on failure."""
+    write_text(path, csv_text(record))
+
+
+def csv_text(record: Record) -> str:
+    """Every candidate and near miss as one row of `meets` and the columns of `Record.table`.
+
+    Numbers are in SI units, empty where a figure does not exist; text that a spreadsheet would run
+    as a formula is led by an apostrophe.
+    """
+    names = columns(record.data["request"])
+    buffer = StringIO(newline="")
+    writer = csv.writer(buffer, quoting=csv.QUOTE_NONNUMERIC, lineterminator="\r\n")
+    writer.writerow(("meets", *names))
+    for meets, rows in (("yes", record.candidates), ("no", record.near_misses)):
+        for row in rows:
+            values = flat(row)
+            writer.writerow((meets, *(_cell(values.get(name)) for name in names)))
+    return buffer.getvalue()
+
+
+def neutral(text: str) -> str:
+    """`text` with an apostrophe before whatever a spreadsheet would run as a formula."""
+    return FORMULA.sub(r"\1'\2", text)
+
+
+def _cell(value: Any) -> Any:
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    return neutral(value) if isinstance(value, str) else value

@@ -1,0 +1,73 @@
+"""Columns of text on a terminal: aligned by display width, folded rather than cut."""
+
+from __future__ import annotations
+
+import textwrap
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+from rich.cells import cell_len, chop_cells
+
+GAP = 2
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """A heading over cells; a line break in either starts a new line. `gives` columns may be folded."""
+
+    heading: str
+    cells: tuple[str, ...]
+    right: bool = False
+    gives: bool = False
+
+    @property
+    def width(self) -> int:
+        """The display width that holds every line unfolded."""
+        return max(cell_len(line) for cell in (self.heading, *self.cells) for line in cell.split("\n"))
+
+
+def total(columns: Sequence[Column]) -> int:
+    """The display width of the columns side by side."""
+    return sum(column.width for column in columns) + GAP * (len(columns) - 1)
+
+
+def fit(columns: Sequence[Column], width: int, least: int = 8) -> list[int]:
+    """Widths that sum to `width` where they can: the widest `gives` columns shrink first, to `least` or
+    their heading.
+    """
+    widths = [column.width for column in columns]
+    floors = [max(cell_len(line) for line in column.heading.split("\n")) for column in columns]
+    room = width - GAP * (len(columns) - 1)
+    while sum(widths) > room:
+        able = [i for i, column in enumerate(columns) if column.gives and widths[i] > max(least, floors[i])]
+        if not able:
+            break
+        widths[max(able, key=lambda i: widths[i])] -= 1
+    return widths
+
+
+def lines(columns: Sequence[Column], widths: Sequence[int], row: int) -> Iterator[str]:
+    """The lines of one row, `row` -1 being the headings (set at the bottom)."""
+    texts = [column.heading if row < 0 else column.cells[row] for column in columns]
+    stacks = [_folded(text, width) for text, width in zip(texts, widths, strict=True)]
+    height = max(len(stack) for stack in stacks)
+    for level in range(height):
+        cells = []
+        for column, width, stack in zip(columns, widths, stacks, strict=True):
+            at = level - (height - len(stack)) if row < 0 else level
+            cells.append(_padded(stack[at] if 0 <= at < len(stack) else "", width, column.right))
+        yield (" " * GAP).join(cells).rstrip()
+
+
+def _folded(text: str, width: int) -> list[str]:
+    """`text` in lines no wider than `width`: parted at spaces and hyphens, inside a word at need."""
+    folded: list[str] = []
+    for line in text.split("\n"):
+        pieces = textwrap.wrap(line, width) if cell_len(line) > width else [line]
+        folded += [part for piece in pieces for part in (chop_cells(piece, width) or [""])]
+    return folded
+
+
+def _padded(text: str, width: int, right: bool) -> str:
+    space = " " * max(0, width - cell_len(text))
+    return space + text if right else text + space

@@ -1,0 +1,98 @@
+"""Headline, footnotes of the table's marks, and what the search covered."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from rich.text import Text
+
+from optimizer.quantities import KINDS, show
+from optimizer.report.cells import ASSUMED, LINEAR
+from optimizer.report.paragraphs import styled
+from optimizer.report.words import clean, count, several, spoken
+from optimizer.vocabulary import COLUMNS
+
+ORDERS = {
+    "cost": "lowest cost first",
+    "margin": "largest margin first",
+    "snr": "highest SNR first",
+    "supply_current": "lowest supply current first",
+}
+
+
+def headline(record: Mapping[str, Any], width: int) -> list[Text]:
+    """The request's name, how many rows meet it, and in which order they stand."""
+    rows, request = record["candidates"], record["request"]
+    out = styled(clean(record["name"]), width, "bold")
+    if record["search"].get("impossible"):
+        return out
+    if not rows:
+        return out + styled("Nothing meets the request.", width, "bold red")
+    plural = f"{len(rows)} receivers that meet" if len(rows) > 1 else "One receiver that meets"
+    currency = f", cost in {record['currency']}" if record.get("currency") else ""
+    quantity = f" at {count(request['quantity'])} built"
+    return out + styled(
+        f"{plural} the request, {ORDERS[request['ranking']['by']]}{currency}{quantity}", width
+    )
+
+
+def impossible_lines(record: Mapping[str, Any], width: int) -> list[Text]:
+    """What no part could meet, with the reasons; empty where there is no such thing."""
+    reasons: Sequence[str] = record["search"].get("impossible", ())
+    if not reasons:
+        return []
+    out = styled("No part could meet this request, so nothing was searched:", width, "bold red")
+    return out + [line for reason in reasons for line in styled(f"- {clean(reason)}", width, indent="  ")]
+
+
+def footnotes(rows: Sequence[Mapping[str, Any]], request: Mapping[str, Any], width: int) -> list[Text]:
+    """What the marks in a table of `rows` stand for; empty where none is set."""
+    out = []
+    assumed = sorted({name for row in rows for name in row["assumed"]})
+    if assumed:
+        where = "; ".join(f"{name}{_filled(name, request)} ({_ranks(rows, name)})" for name in assumed)
+        out += styled(
+            f"{ASSUMED} assumed where the catalog leaves a blank: {clean(where)}", width, indent="  "
+        )
+    if any(row.get("linear_model") for row in rows):
+        text = f"{LINEAR} of the linear model: the dark output rests on the lower rail (dark_on_rail)"
+        out += styled(text, width, indent="  ")
+    return out
+
+
+def covered(record: Mapping[str, Any], width: int) -> list[Text]:
+    """How much was covered, and whether the ranking is proven."""
+    search = record["search"]
+    pairs = f" of {count(search['pairs'])} pairs" if search.get("pairs") else ""
+    text = f"Covered {spoken(search['combinations'])} combinations{pairs} in {search['seconds']:.3g} s"
+    text += f", {count(search['evaluated'])} of them evaluated, the others excluded by proven bounds. "
+    if search["proven"]:
+        text += "The ranking is proven: the same as evaluating every combination."
+    else:
+        text += "NOT PROVEN: the search was stopped before it could exclude the rest."
+    left_out = sum(entry["rows"] for entry in record.get("left_out", ()))
+    if left_out:
+        files = ", ".join(f"{clean(e['file'])} ({count(e['rows'])})" for e in record["left_out"])
+        text += f" Left out of the catalogs as source.toml says: {several(left_out, 'row')}, {files}."
+    return styled(text, width)
+
+
+def _filled(name: str, request: Mapping[str, Any]) -> str:
+    """What `name` ("opamp.output_low") was filled with: ' = 50 mV'; '' where that is not known."""
+    role, _, column = name.partition(".")
+    known = COLUMNS.get(f"{role}s", {}).get(column)
+    if known is None:
+        return ""
+    value = request.get("assume", {}).get(f"{role}s", {}).get(column)
+    if value is None:
+        return f" = {known.default_text}" if known.default_text else ""
+    kind = "level" if known.kind == "gain" else known.kind
+    return f" = {value}" if isinstance(value, str) or kind not in KINDS else f" = {show(value, kind)}"
+
+
+def _ranks(rows: Sequence[Mapping[str, Any]], name: str) -> str:
+    ranks = [str(row["rank"]) for row in rows if name in row["assumed"]]
+    if len(ranks) == len(rows) > 1:
+        return "every row"
+    return f"row {ranks[0]}" if len(ranks) == 1 else f"rows {', '.join(ranks)}"

@@ -1,0 +1,74 @@
+"""The ranked table: one line a row where it fits, two where it does not, nothing cut."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from typing import Any
+
+from rich.text import Text
+
+from optimizer.report.cells import Candidate, choice_columns, figure_columns
+from optimizer.report.layout import GAP, Column, fit, lines, total
+
+HEADING = "bold"
+CHOSEN = "bold"
+GOOD, BAD = "green", "red"
+Note = Callable[[Candidate], Sequence[str]]
+Grids = Sequence[Sequence[Column]]
+
+
+def no_note(_row: Candidate) -> Sequence[str]:
+    """No further lines under a row."""
+    return ()
+
+
+def ranked_table(
+    rows: Sequence[Candidate],
+    request: Mapping[str, Any],
+    width: int,
+    *,
+    chosen: int | None = None,
+    note: Note = no_note,
+) -> list[Text]:
+    """The table of `rows` for a terminal of `width` columns; `note` adds full lines under a row."""
+    rank = Column("", tuple(_rank(row, chosen) for row in rows), right=True)
+    inner = width - rank.width - GAP
+    grids = _grids(rows, request, inner)
+    widths = [fit(grid, inner) for grid in grids]
+    printed = [Text(line, HEADING) for line in _row(rank, "", (grids, widths), -1)]
+    printed.append(Text("-" * min(width, max(len(line) for line in printed))))
+    for index, row in enumerate(rows):
+        block = list(_row(rank, rank.cells[index], (grids, widths), index))
+        block += [" " * (rank.width + GAP) + line for line in note(row)]
+        style = CHOSEN if row["rank"] == chosen else ""
+        printed += [_coloured(line, style) for line in block]
+    return printed
+
+
+def _grids(rows: Sequence[Candidate], request: Mapping[str, Any], width: int) -> Grids:
+    for narrow in (False, True):
+        single = choice_columns(rows, request, narrow=narrow) + figure_columns(rows, request, narrow=narrow)
+        if total(single) <= width:
+            return (single,)
+    figures = figure_columns(rows, request, tall=False)
+    if total(figures) > width:
+        figures = figure_columns(rows, request, narrow=True, tall=False)
+    return (choice_columns(rows, request), figures)
+
+
+def _row(rank: Column, label: str, grids: tuple[Grids, list[list[int]]], index: int) -> Iterator[str]:
+    every = (line for grid, widths in zip(*grids, strict=True) for line in lines(grid, widths, index))
+    for level, line in enumerate(every):
+        margin = label if level == 0 else ""
+        yield f"{margin:>{rank.width}}{' ' * GAP}{line}".rstrip()
+
+
+def _rank(row: Candidate, chosen: int | None) -> str:
+    return f"> {row['rank']}" if row["rank"] == chosen else str(row["rank"])
+
+
+def _coloured(line: str, style: str) -> Text:
+    text = Text(line, style)
+    text.highlight_regex(r"(under )?\S+ % to spare|\S+-fold to spare|exactly met", GOOD)
+    text.highlight_regex(r"misses by (under )?\S+ %|does not exist", BAD)
+    return text

@@ -1,0 +1,85 @@
+"""How the report says numbers: margins, large counts, values beside their limits."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from optimizer.quantities import show
+from optimizer.vocabulary import VOCABULARY, figure_kind
+
+SCALES = (
+    (10**18, "million million million"),
+    (10**15, "thousand million million"),
+    (10**12, "million million"),
+    (10**9, "thousand million"),
+    (10**6, "million"),
+)
+
+
+def clean(text: object) -> str:
+    """`text` on one line and free of control characters, so that no catalog cell drives the terminal."""
+    flat = " ".join(str(text).split())
+    return "".join(char if char.isprintable() else "?" for char in flat)
+
+
+def count(number: int) -> str:
+    """A count with thousands separated: '59,990'."""
+    return f"{number:,}"
+
+
+def several(number: int, what: str) -> str:
+    """A count of things: '1 row', '1,234 rows'."""
+    return f"{count(number)} {what}" if number == 1 else f"{count(number)} {what}s"
+
+
+def spoken(number: int) -> str:
+    """A large count in words that mean the same everywhere: '12.3 million million'."""
+    for scale, words in SCALES:
+        if number >= scale:
+            return f"{number / scale:.3g} {words}" if number < 1000 * scale else f"{number:.3g}"
+    return count(number)
+
+
+def percent(fraction: float) -> str:
+    """A positive fraction in whole percent, to one digit below 1 %; never rounded to nothing."""
+    if fraction < 1e-4:
+        return "under 0.01 %"
+    if fraction < 0.0095:
+        return f"{100 * fraction:.1g} %"
+    return f"{100 * fraction:,.0f} %"
+
+
+def margin_words(margin: float) -> str:
+    """A margin in words: '3 % to spare', 'misses by 4 %', 'exactly met'."""
+    if margin == 0:
+        return "exactly met"
+    if margin < 0:
+        return f"misses by {percent(-margin)}"
+    return f"{margin:.0f}-fold to spare" if margin >= 10 else f"{percent(margin)} to spare"
+
+
+def light_kind(request: Mapping[str, Any]) -> str:
+    """In which kind of light the request speaks: 'power' or 'irradiance' (written as text)."""
+    return "irradiance" if isinstance(request["light"]["strongest"], str) else "power"
+
+
+def figure(name: str, value: float | None, request: Mapping[str, Any], digits: int = 3) -> str:
+    """One figure with its unit; '-' where it does not exist."""
+    if value is None:
+        return "-"
+    return show(value, figure_kind(name, light_kind(request)), digits)
+
+
+def beside(name: str, value: float | None, limit: float, request: Mapping[str, Any]) -> tuple[str, str]:
+    """A value and its limit with as many digits as it takes to tell the two apart."""
+    for digits in range(3, 10):
+        said, bound = (figure(name, number, request, digits) for number in (value, limit))
+        if said != bound or value == limit:
+            break
+    return said, bound
+
+
+def side(name: str) -> str:
+    """On which side of its limit a target must be: 'at least' or 'at most'."""
+    return "at least" if VOCABULARY[name].better == "higher" else "at most"

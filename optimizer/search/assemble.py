@@ -1,0 +1,126 @@
+"""From settings by index to candidates by name, with every figure, target and what was assumed."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer import margins
+from optimizer.catalog.parts import Catalogs, Parts
+from optimizer.figures import FIGURES, evaluate
+from optimizer.request_types import WIRINGS
+from optimizer.search.result import Candidate, Reference, TargetValue
+from optimizer.search.space import Choice, Space, settings
+
+Floats = NDArray[np.float64]
+
+LINEAR_MODEL = ("dynamic_range", "output_noise_dark")
+"""Figures that are only the linear model's where the dark output rests on the rail."""
+
+
+def candidates(space: Space, catalogs: Catalogs, choice: Choice) -> tuple[Candidate, ...]:
+    """The candidates of `choice`, in its order."""
+    if not choice.opamp.size:
+        return ()
+    with np.errstate(all="ignore"):
+        figures = evaluate(space.bench, settings(space, choice)).figures
+    table = margins.margins(figures, space.limits)
+    return tuple(_candidate(space, catalogs, choice, row, figures, table) for row in range(table.shape[0]))
+
+
+def plain_number(value: float) -> float | None:
+    """A figure for the record: 9 digits, None where it does not exist."""
+    return float(f"{value:.9g}") if np.isfinite(value) else None
+
+
+def _candidate(
+    space: Space, catalogs: Catalogs, choice: Choice, row: int, figures: dict[str, Floats], table: Floats
+) -> Candidate:
+    o, d, x, r, c, low = (int(column[row]) for column in choice.columns())
+    values = {name: plain_number(float(figures[name][row])) for name in FIGURES}
+    targets = tuple(
+        TargetValue(name, values[name], limit, float(table[row, k]))
+        for k, (name, limit) in enumerate(space.limits.items())
+    )
+    limiting = margins.limiting(table[row].tolist(), space.limits)
+    family = int(space.capacitors.family[c])
+    lag = float(space.low_passes[low])
+    on_rail = space.bench.dark_on_rail and space.bench.low == 0.0
+    linear = on_rail and space.contexts.sign[x] > 0 and not space.contexts.divided[x]
+    return Candidate(
+        photodiode=str(catalogs.photodiodes.text["part"][d]),
+        photodiode_maker=str(catalogs.photodiodes.text["maker"][d]),
+        opamp=str(catalogs.opamps.text["part"][o]),
+        opamp_maker=str(catalogs.opamps.text["maker"][o]),
+        wiring=WIRINGS[int(space.contexts.wiring[x])],
+        reference=_reference(space, o, x),
+        feedback_resistance=float(space.resistors.value[r]),
+        resistor_family=space.resistors.names[int(space.resistors.family[r])],
+        feedback_capacitance=float(space.capacitors.value[c]),
+        capacitor_family=None if family < 0 else space.capacitors.names[family],
+        low_pass=None if lag == 0.0 else plain_number(1.0 / (2.0 * np.pi * lag)),
+        figures=values,
+        targets=targets,
+        limiting=limiting,
+        margin=min(target.margin for target in targets),
+        missed=tuple(target.name for target in targets if target.margin < 0.0),
+        assumed=_assumed(space, catalogs, choice, row),
+        linear_model=LINEAR_MODEL if linear else (),
+    )
+
+
+def _reference(space: Space, opamp: int, context: int) -> Reference:
+    x = space.contexts
+    divided, buffered = bool(x.divided[context]), bool(x.buffered[context])
+    return Reference(
+        kind="divider" if divided else "ground",
+        voltage=float(f"{x.vref[context]:.9g}"),
+        top=float(x.top[context]) if divided else None,
+        bottom=float(x.bottom[context]) if divided else None,
+        buffered=buffered,
+        extra_package=buffered and not bool(space.opamps.spare[opamp]),
+    )
+
+
+def _assumed(space: Space, catalogs: Catalogs, choice: Choice, row: int) -> tuple[str, ...]:
+    """The filled blanks that this candidate's figures and checks use, sorted."""
+    o, d, x, r, c, _ = (int(column[row]) for column in choice.columns())
+    biased = bool(space.contexts.biased[x])
+    unused = {"dark_current", "reverse_max"} if not biased else {"shunt_resistance"}
+    unused |= _needless(space)
+    names = _filled("opamp", catalogs.opamps, o, unused)
+    names |= _filled("photodiode", catalogs.photodiodes, d, unused)
+    names |= _family_filled(
+        "resistor", catalogs.resistors, space.resistors.names, int(space.resistors.family[r])
+    )
+    if space.capacitors.family[c] >= 0:
+        family = int(space.capacitors.family[c])
+        names |= _family_filled("capacitor", catalogs.capacitors, space.capacitors.names, family)
+    return tuple(sorted(names))
+
+
+def _needless(space: Space) -> set[str]:
+    """Columns that no figure or check of this request uses."""
+    request = space.request
+    unused = {"board_area", "lead_weeks", "tolerance", "tempco"}
+    if not request.ambient.stated:
+        unused |= {"temp_min", "temp_max", "bias_doubling", "offset_drift"}
+    if request.ambient.hottest == 25.0:
+        unused |= {"dark_doubling"}
+    if request.supply.load is None:
+        unused |= {"output_current"}
+    if request.targets.bandwidth is None:
+        unused |= {"slew_rate"}
+    light = request.light
+    if light.kind == "power" and light.area_from is None and light.area_to is None:
+        unused |= {"active_area"}
+    return unused
+
+
+def _filled(role: str, parts: Parts, row: int, unused: set[str]) -> set[str]:
+    return {f"{role}.{name}" for name, mask in parts.assumed.items() if mask[row] and name not in unused}
+
+
+def _family_filled(role: str, parts: Parts, names: tuple[str, ...], family: int) -> set[str]:
+    row = int(np.flatnonzero(parts.text["family"] == names[family])[0])
+    return _filled(role, parts, row, {"board_area", "tolerance", "tempco"})

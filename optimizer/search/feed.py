@@ -1,0 +1,98 @@
+"""Which pairs a hunt takes in, in what order, and when it may stop."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer.figures import rounded
+from optimizer.search import hunt as hunting
+from optimizer.search.bounds import Goals
+from optimizer.search.boxes import whole
+from optimizer.search.hunt import Hunt, Rules
+from optimizer.search.view import Index, view
+
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+
+FIRST = 1024
+LARGEST = 65536
+_BLOCK = 65536
+
+
+@dataclass(frozen=True, slots=True)
+class Pairs:
+    """Pairs by rising `floor`, the least that the ranked figure (or else the cost) can be."""
+
+    opamp: Ints
+    diode: Ints
+    floor: Floats
+
+    def take(self, rows: NDArray[np.int64] | NDArray[np.bool_]) -> Pairs:
+        """The pairs at `rows`."""
+        return Pairs(self.opamp[rows], self.diode[rows], self.floor[rows])
+
+    @property
+    def size(self) -> int:
+        """How many pairs there are."""
+        return int(self.opamp.size)
+
+
+def floors(index: Index, opamp: Ints, diode: Ints, *, by: str) -> Floats:
+    """The least supply current (if that ranks) or cost of each pair, rounded as figures are."""
+    least = np.empty(opamp.size)
+    for begin in range(0, opamp.size, _BLOCK):
+        part = slice(begin, begin + _BLOCK)
+        v = view(index, whole(index.space, opamp[part], diode[part]))
+        least[part] = rounded(v.supply_current if by == "supply_current" else v.cost)
+    return np.where(np.isnan(least), np.inf, least)
+
+
+def pairs_of(index: Index, opamps: Ints, diodes: Ints, *, by: str) -> Pairs:
+    """Every pair of `opamps` and `diodes`, by rising floor."""
+    opamp = np.repeat(opamps, diodes.size)
+    diode = np.tile(diodes, opamps.size)
+    floor = floors(index, opamp, diode, by=by)
+    order = np.argsort(floor, kind="stable")
+    return Pairs(opamp[order], diode[order], floor[order])
+
+
+def run(
+    index: Index, goals: Goals, rules: Rules, *, pairs: Pairs, watch: Callable[[Hunt, int], bool]
+) -> Hunt:
+    """Hunt through `pairs`; `watch(hunt, pairs taken in)` is asked after every batch whether to stop."""
+    hunt = hunting.start(index, goals, rules)
+    ranked = rules.by in ("cost", "supply_current")
+    taken = 0
+    for chunk in _rising(pairs) if ranked else _sampled(pairs):
+        bar = hunt.incumbents.bar
+        if ranked and bar is not None and chunk.floor[0] > bar[0]:
+            break
+        hunting.add(hunt, chunk.opamp, chunk.diode)
+        taken += chunk.size
+        after = pairs.floor[taken] if ranked and taken < pairs.size else np.inf
+        hunting.drain(hunt, after, lambda taken=taken: watch(hunt, taken))  # type: ignore[misc]
+        if watch(hunt, taken):
+            return hunt
+    hunting.drain(hunt, np.inf, lambda: watch(hunt, taken))
+    return hunt
+
+
+def _rising(pairs: Pairs) -> Iterator[Pairs]:
+    """Chunks by rising floor, each larger than the one before."""
+    begin, size = 0, FIRST
+    while begin < pairs.size:
+        yield Pairs(*(c[begin : begin + size] for c in (pairs.opamp, pairs.diode, pairs.floor)))
+        begin, size = begin + size, min(2 * size, LARGEST)
+
+
+def _sampled(pairs: Pairs) -> Iterator[Pairs]:
+    """An even sample first, so that the bar is high early; then the rest by rising floor."""
+    sample = np.unique(np.linspace(0, pairs.size - 1, min(FIRST, pairs.size)).astype(int))
+    rest = np.ones(pairs.size, dtype=bool)
+    rest[sample] = False
+    yield pairs.take(sample)
+    yield from _rising(pairs.take(rest))

@@ -1,0 +1,152 @@
+"""The shortlist: hunt, fill up with near misses, count the rest, and say what was proved."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer.catalog.parts import Catalogs
+from optimizer.errors import LuxsiftError
+from optimizer.request_types import Request
+from optimizer.search import assemble, feed, impossible, reasons
+from optimizer.search.bounds import Goals
+from optimizer.search.crew import Crew, Found
+from optimizer.search.hunt import Rules
+from optimizer.search.result import Outcome, Progress
+from optimizer.search.roles import PASSES
+from optimizer.search.space import Choice, Space, build
+from optimizer.search.view import Index, lay_out
+
+Ints = NDArray[np.int64]
+
+Report = Callable[[Progress], None]
+
+
+class Interrupted(LuxsiftError):
+    """The user stopped the search; `outcome` holds what it had by then, not proven."""
+
+    def __init__(self, outcome: Outcome) -> None:
+        self.outcome = outcome
+        super().__init__("interrupted")
+
+
+@dataclass(frozen=True, slots=True)
+class Work:
+    """One request compiled, and who does the work."""
+
+    space: Space
+    index: Index
+    goals: Goals
+    catalogs: Catalogs
+    crew: Crew
+
+
+def shortlist(
+    request: Request, catalogs: Catalogs, *, workers: int = 1, progress: Report | None = None
+) -> Outcome:
+    """The ranked shortlist of `request` over `catalogs`, proven equal to evaluating every combination.
+
+    `workers` processes share the pairs; the result is the same for any number. `progress` is called
+    about ten times a second. Raises `Interrupted` on Ctrl-C.
+    """
+    begun = time.perf_counter()
+    space = build(request, catalogs)
+    pairs = catalogs.opamps.size * catalogs.photodiodes.size
+    known = impossible.reasons(space)
+    if known:
+        return Outcome(
+            (), (), space.combinations, pairs, 0, time.perf_counter() - begun, True, impossible=known
+        )
+    index = lay_out(space)
+    goals = Goals(space.bench, space.limits, request.ranking.comfort)
+    work = Work(space, index, goals, catalogs, Crew(index, workers, progress, _label(space, catalogs)))
+    try:
+        return replace(_searched(work), seconds=time.perf_counter() - begun)
+    except KeyboardInterrupt:
+        outcome = _outcome(work, work.crew.so_far(), None, proven=False)
+        raise Interrupted(replace(outcome, seconds=time.perf_counter() - begun)) from None
+
+
+def _label(space: Space, catalogs: Catalogs) -> Callable[[Choice], str]:
+    """Words for the best setting so far."""
+
+    def words(choice: Choice) -> str:
+        diode = catalogs.photodiodes.text["part"][int(choice.diode[0])]
+        opamp = catalogs.opamps.text["part"][int(choice.opamp[0])]
+        return f"{diode} with {opamp}, Rf {space.resistors.value[int(choice.resistor[0])]:.3g} ohm"
+
+    return words
+
+
+def _searched(work: Work) -> Outcome:
+    """Hunt for pairs that meet; with too few of them, for the nearest misses too."""
+    ranking, space = work.space.request.ranking, work.space
+    o = np.flatnonzero(space.opamp_verdicts.alone == PASSES)
+    d = np.flatnonzero(space.diode_verdicts.alone == PASSES)
+    every = feed.pairs_of(work.index, o, d, by=ranking.by)
+    met = work.crew.hunt(work.goals, Rules(ranking.by, ranking.show, 0.0), every)
+    lacking = ranking.show - met.choice.opamp.size
+    if not lacking:
+        return _outcome(work, met, None, proven=True)
+    taken = np.isin(
+        _numbers(space, every.opamp, every.diode), _numbers(space, met.choice.opamp, met.choice.diode)
+    )
+    near = work.crew.hunt(work.goals, Rules("margin", lacking, -1.0), every.take(~taken))
+    blocking = () if met.choice.opamp.size else _blocking(work, every, near)
+    return replace(_outcome(work, met, near, proven=True), blocking=blocking)
+
+
+def _numbers(space: Space, opamp: Ints, diode: Ints) -> Ints:
+    return opamp * space.diodes.price.size + diode
+
+
+def _outcome(work: Work, met: Found, near: Found | None, *, proven: bool) -> Outcome:
+    space, request = work.space, work.space.request
+    missed = met.choice.take(np.zeros(0, dtype=np.int64)) if near is None else near.choice
+    full = near is None and met.choice.opamp.size == request.ranking.show
+    shown = reasons.Shown(
+        np.concatenate(
+            [_numbers(space, met.choice.opamp, met.choice.diode), _numbers(space, missed.opamp, missed.diode)]
+        ),
+        float(met.primary[-1]) if full else None,
+    )
+    counts: Mapping[str, int] = {}
+    if proven:
+        counts = reasons.dropped(work.index, work.goals, by=request.ranking.by, shown=shown)
+    return Outcome(
+        candidates=assemble.candidates(space, work.catalogs, met.choice),
+        near_misses=assemble.candidates(space, work.catalogs, missed),
+        combinations=space.combinations,
+        pairs=work.catalogs.opamps.size * work.catalogs.photodiodes.size,
+        evaluated=work.crew.evaluated,
+        seconds=0.0,
+        proven=proven,
+        dropped=counts,
+    )
+
+
+def _blocking(work: Work, every: feed.Pairs, near: Found) -> tuple[str, ...]:
+    """The single targets of which each, if dropped, would let something through."""
+    if not near.choice.opamp.size:
+        return ()
+    table = near.margin_columns
+    names = []
+    for place, name in enumerate(work.goals.limits):
+        rest = {other: limit for other, limit in work.goals.limits.items() if other != name}
+        alone = np.all(np.delete(table, place, axis=1) >= 0.0, axis=1)
+        if not rest or alone.any() or _something_meets(work, rest, every):
+            names.append(name)
+    return tuple(names)
+
+
+def _something_meets(work: Work, limits: Mapping[str, float], every: feed.Pairs) -> bool:
+    space = replace(work.space, limits=limits)
+    index = replace(work.index, space=space)
+    goals = replace(work.goals, limits=limits)
+    crew = Crew(index, work.crew.workers, work.crew.progress, work.crew.label)
+    found = crew.hunt(goals, Rules("cost", 1, 0.0), every, first_only=True)
+    return bool(found.choice.opamp.size)

@@ -1,0 +1,80 @@
+"""What inspect prints, of catalogs written for the purpose."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+
+from optimizer.catalog.inspect import inspect_file
+from optimizer.cli import main
+from optimizer.report import to_text
+from optimizer.report.inspection import LISTED, inspection_lines
+
+HEADER = "part,maker,price,responsivity,capacitance,shunt_resistance,Datasheet\n"
+GOOD = "YZD-1,Zellmarsh,1.20,850 nm:0.6,10 pF,1 Gohm,x\n"
+
+
+def said(path: Path, rows: str, width: int = 80) -> str:
+    path.write_text(HEADER + rows)
+    text = to_text(inspection_lines(inspect_file(path), width), colour=False)
+    assert max(len(line) for line in text.split("\n")) <= max(width, len(str(path)) + 50)
+    return " ".join(text.split())
+
+
+@pytest.fixture
+def file(tmp_path: Path) -> Path:
+    return tmp_path / "photodiodes.csv"
+
+
+def test_counts_and_unused_headers(file: Path) -> None:
+    text = said(file, GOOD)
+    assert ": 1 photodiode" in text
+    assert "Known for every part: part, maker, price, responsivity, capacitance, shunt_resistance." in text
+    assert "rise_time 1 0 unknown" in text
+    assert "dark_doubling 1 0 10 K" in text
+    assert "Headers not used: Datasheet." in text
+
+
+def test_what_an_assume_line_would_admit(file: Path) -> None:
+    text = said(file, GOOD + "YZD-2,Zellmarsh,1.20,850 nm:0.6,10 pF,-,x\n")
+    assert "shunt_resistance 1 1 unknown 1" in text
+    assert "[assume.photodiodes] dark_current = ..." in text
+
+
+def test_a_unit_slip_is_told_and_not_refused(file: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    text = said(file, GOOD + "YZD-2,Zellmarsh,1.20,850 nm:0.6,10 F,1 Gohm,x\n")
+    assert "Unusual values: 1" in text
+    assert "line 3 capacitance 10 F above the usual" in text
+    assert "a unit slip?" in text
+    assert main(["inspect", str(file)]) == 0
+    assert capsys.readouterr().err == ""
+
+
+def test_long_lists_are_shortened_and_counted(file: Path) -> None:
+    rows = "".join(f"YZD-{n},Zellmarsh,1.20,850 nm:0.6,10 F,1 Gohm,x\n" for n in range(LISTED + 7))
+    assert "... and 7 more like these" in said(file, rows)
+
+
+def test_duplicates_make_a_file_unusable(file: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    text = said(file, GOOD + GOOD)
+    assert "UNUSABLE" in text
+    assert "On several lines: 1 part YZD-1 Zellmarsh lines 2, 3" in text
+    assert main(["inspect", str(file)]) == 2
+    out, err = capsys.readouterr()
+    assert "UNUSABLE" in out
+    assert "photodiodes.csv, line 3" in err
+
+
+def test_every_file_is_inspected_though_one_fails(file: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    file.write_text(HEADER + GOOD)
+    assert main(["inspect", "nowhere.csv", str(file)]) == 2
+    out, err = capsys.readouterr()
+    assert ": 1 photodiode" in " ".join(out.split())
+    assert not out.startswith("\n")
+    assert "nowhere.csv" in err
+
+
+def test_names_do_not_drive_the_terminal(file: Path) -> None:
+    text = said(file, GOOD.replace("YZD-1", "YZD\x1b[31m") * 2)
+    assert "\x1b" not in text

@@ -1,0 +1,116 @@
+from __future__ import annotations
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from optimizer.record.build import plain
+from optimizer.report.cautions import cautions
+from optimizer.report.reasons import WORDS, reason
+from optimizer.report.words import beside, clean, margin_words, percent, spoken
+from tests.made_up import record
+
+DATA = record().data
+
+
+@pytest.mark.parametrize(
+    ("number", "words"),
+    [
+        (0, "0"),
+        (999_999, "999,999"),
+        (1_000_000, "1 million"),
+        (12_345_678_901_234, "12.3 million million"),
+        (4_560_000_000, "4.56 thousand million"),
+        (7 * 10**18, "7 million million million"),
+        (10**24, "1e+24"),
+    ],
+)
+def test_spoken(number: int, words: str) -> None:
+    assert spoken(number) == words
+
+
+@pytest.mark.parametrize(
+    ("margin", "words"),
+    [
+        (0.0, "exactly met"),
+        (-0.0, "exactly met"),
+        (0.0312, "3 % to spare"),
+        (-0.04, "misses by 4 %"),
+        (0.0042, "0.4 % to spare"),
+        (1e-9, "under 0.01 % to spare"),
+        (-1e-9, "misses by under 0.01 %"),
+        (0.996, "100 % to spare"),
+        (3.5, "350 % to spare"),
+        (12.4, "12-fold to spare"),
+        (1000.0, "1000-fold to spare"),
+        (-1.0, "misses by 100 %"),
+    ],
+)
+def test_margin_words(margin: float, words: str) -> None:
+    assert margin_words(margin) == words
+
+
+@given(st.floats(min_value=1e-12, max_value=20))
+def test_a_margin_never_reads_as_nothing(fraction: float) -> None:
+    assert percent(fraction) not in ("0 %", "-0 %")
+    assert margin_words(-fraction).startswith("misses by")
+    assert margin_words(fraction).endswith("to spare")
+
+
+@pytest.mark.parametrize(
+    ("value", "limit", "said"),
+    [
+        (45.9999, 46.0, ("45.9999 dB", "46 dB")),
+        (46.0, 46.0, ("46 dB", "46 dB")),
+        (None, 46.0, ("-", "46 dB")),
+    ],
+)
+def test_a_miss_never_looks_like_its_limit(value: float | None, limit: float, said: tuple[str, str]) -> None:
+    assert beside("snr", value, limit, DATA["request"]) == said
+
+
+def test_full_scale_follows_the_requests_kind_of_light() -> None:
+    request = plain(DATA["request"])
+    request["light"] |= {"weakest": "0.004 W/m2", "strongest": "0.4 W/m2", "background": "0.0 W/m2"}
+    value, limit = beside("full_scale", 0.5, 0.4, request)
+    assert value.endswith("W/m2")
+    assert limit.endswith("W/m2")
+
+
+@given(st.text())
+def test_cleaned_text_is_one_printable_line(text: str) -> None:
+    cleaned = clean(text)
+    assert cleaned.isprintable()
+    assert "\x1b" not in cleaned
+
+
+# The keys of the eligibility table of physics.md.
+KEYS = "status excluded stock temperature wavelength supply reverse_bias input_range window dark_output load"
+KEYS += " gain min_gain unstable missed_target cannot_beat"
+
+
+@pytest.mark.parametrize("key", KEYS.split())
+def test_every_reason_has_words(key: str) -> None:
+    assert key in WORDS
+    assert "does not know" not in reason(key, DATA["request"])
+
+
+def test_a_missing_value_names_catalog_and_column() -> None:
+    assert "op-amp catalog leaves output_low blank" in reason("missing:output_low", DATA["request"])
+    assert "a catalog leaves temp_min blank" in reason("missing:temp_min", DATA["request"])
+
+
+@pytest.mark.parametrize(
+    ("wavelength", "word"),
+    [(254e-9, "below 400 nm"), (850e-9, "blink reflex"), (1550e-9, "cornea")],
+)
+def test_cautions_fit_the_wavelength(wavelength: float, word: str) -> None:
+    text = cautions({"light": {"wavelength": wavelength}})
+    assert word in text
+    for standard in ("IEC 60825-1", "IEC 62471", "IEC 60601-1", "ISO 13849-1", "EN 54", "IEC 61508"):
+        assert standard in text
+    assert "no evidence of compliance" in text
+
+
+def test_visible_light_is_not_called_invisible() -> None:
+    assert "invisible" not in cautions({"light": {"wavelength": 550e-9}})

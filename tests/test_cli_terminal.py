@@ -1,0 +1,105 @@
+"""The command line before a real terminal (a pseudo-terminal of the system), and before none."""
+
+from __future__ import annotations
+
+import os
+import pty
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+from optimizer.cli import main
+
+DRIVER = """
+import sys, time
+import optimizer.search
+from optimizer.search.result import Progress
+from tests.made_up import outcome
+
+def search(request, catalogs, *, workers=1, progress=None):
+    for decided in (100, 200) if progress else ():
+        progress(Progress(60_000, decided, 12, "3.21 EUR"))
+        time.sleep(0.15)
+    return outcome()
+
+optimizer.search.shortlist = search
+optimizer.search.Interrupted = KeyboardInterrupt
+from optimizer.cli import main
+sys.exit(main(sys.argv[1:]))
+"""
+
+
+@pytest.fixture
+def request_file(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> Path:
+    main(["start", str(tmp_path)])
+    capsys.readouterr()
+    return tmp_path / "request.toml"
+
+
+def seen(words: list[str], *, terminals: set[str], **changes: str) -> tuple[str, str]:
+    """What a run writes to standard output and error, each a terminal or a pipe."""
+    kept = {
+        key: value for key, value in os.environ.items() if key not in ("NO_COLOR", "COLUMNS", "FORCE_COLOR")
+    }
+    ends = {name: pty.openpty() if name in terminals else os.pipe() for name in ("out", "err")}
+    done = subprocess.Popen(
+        [sys.executable, "-c", DRIVER, *words],
+        stdout=ends["out"][1],
+        stderr=ends["err"][1],
+        env={**kept, "TERM": "xterm", **changes},
+    )
+    for _reader, writer in ends.values():
+        os.close(writer)
+    texts = {name: drained(reader) for name, (reader, _writer) in ends.items()}
+    assert done.wait() == 0
+    return texts["out"], texts["err"]
+
+
+def drained(reader: int) -> str:
+    parts = []
+    while True:
+        try:
+            part = os.read(reader, 65536)
+        except OSError:  # how Linux says that a terminal's other end has closed
+            part = b""
+        if not part:
+            os.close(reader)
+            return b"".join(parts).decode().replace("\r\n", "\n")
+        parts.append(part)
+
+
+def test_a_terminal_gets_progress_and_colour(request_file: Path) -> None:
+    out, err = seen(["shortlist", str(request_file)], terminals={"out", "err"})
+    assert "\x1b[1m" in out
+    assert "200 of 60,000 pairs decided" in err
+    assert "best so far: 3.21 EUR" in err
+
+
+def test_pipes_get_plain_text_and_silence(request_file: Path) -> None:
+    out, err = seen(["shortlist", str(request_file)], terminals=set(), FORCE_COLOR="1")
+    assert "YZD-21" in out
+    assert "\x1b" not in out
+    assert err == ""
+
+
+def test_no_color_is_respected(request_file: Path) -> None:
+    out, _err = seen(["shortlist", str(request_file)], terminals={"out", "err"}, NO_COLOR="1")
+    assert "YZD-21" in out
+    assert "\x1b" not in out
+
+
+@pytest.mark.parametrize("how", ["--quiet", "TERM"])
+def test_no_progress_where_it_is_not_wanted(request_file: Path, how: str) -> None:
+    words = ["shortlist", str(request_file)] + (["--quiet"] if how == "--quiet" else [])
+    out, err = seen(words, terminals={"out", "err"}, TERM="dumb" if how == "TERM" else "xterm")
+    assert "YZD-21" in out
+    assert err == ""
+
+
+@pytest.mark.parametrize("columns", [80, 120])
+def test_columns_sets_the_width(request_file: Path, columns: int) -> None:
+    out, _err = seen(["shortlist", str(request_file)], terminals=set(), COLUMNS=str(columns))
+    widest = max(len(line) for line in out.split("\n"))
+    assert columns - 15 < widest <= columns

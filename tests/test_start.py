@@ -1,0 +1,95 @@
+"""`luxsift start`: what it writes is read without a word, and nothing is ever overwritten."""
+
+from __future__ import annotations
+
+import os
+import re
+from pathlib import Path
+
+import pytest
+
+from optimizer.cli import main
+from optimizer.cli.start import STARTER
+from optimizer.request import read_request
+from optimizer.study import load
+
+
+def test_what_start_writes_is_read_without_a_problem(tmp_path: Path) -> None:
+    assert main(["start", str(tmp_path / "new" / "folder")]) == 0
+    study = load(tmp_path / "new" / "folder" / "request.toml")
+    assert study.catalogs.opamps.size == 8
+    assert study.catalogs.photodiodes.size == 6
+    assert sorted(os.listdir(tmp_path / "new" / "folder")) == sorted(STARTER)
+
+
+def test_start_names_the_next_command(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    main(["start", str(tmp_path / "a folder")])
+    assert f"luxsift shortlist '{tmp_path}/a folder/request.toml'" in capsys.readouterr().out
+
+
+def test_start_writes_here_when_no_folder_is_named(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    assert main(["start"]) == 0
+    assert (tmp_path / "request.toml").is_file()
+
+
+def test_every_conflict_is_named_and_nothing_is_written(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (tmp_path / "opamps.csv").write_text("mine")
+    (tmp_path / "request.toml").symlink_to(tmp_path / "dangling")
+    assert main(["start", str(tmp_path)]) == 2
+    said = capsys.readouterr().err
+    assert f"{tmp_path}/opamps.csv: there is such a file already" in said
+    assert f"{tmp_path}/request.toml: there is such a file already" in said
+    assert sorted(os.listdir(tmp_path)) == ["opamps.csv", "request.toml"]
+    assert (tmp_path / "opamps.csv").read_text() == "mine"
+
+
+def test_a_file_is_no_folder(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (tmp_path / "file").write_text("mine")
+    assert main(["start", str(tmp_path / "file")]) == 2
+    assert "expected a folder" in capsys.readouterr().err
+
+
+def test_a_write_that_fails_half_way_leaves_nothing(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    opened = Path.open
+
+    def fail(path: Path, mode: str = "r", *rest: object) -> object:
+        if path.name == "photodiodes.csv" and mode == "xb":
+            raise OSError(28, "No space left on device")
+        return opened(path, mode)
+
+    monkeypatch.setattr(Path, "open", fail)
+    assert main(["start", str(tmp_path)]) == 2
+    assert "No space left on device; nothing was written" in capsys.readouterr().err
+    assert os.listdir(tmp_path) == []
+
+
+def test_lines_that_show_a_usual_value_do_hold_it(tmp_path: Path) -> None:
+    """A newcomer may take the mark away from any such line of [space] and the request means the same."""
+    main(["start", str(tmp_path)])
+    path = tmp_path / "request.toml"
+    before = read_request(path)
+    text = path.read_text()
+    space = text[text.index("[space]") : text.index("# [converter]")]
+    bare = re.sub(r"^# ", "", space, flags=re.MULTILINE)
+    assert bare.count("=") > 10
+    path.write_text(text.replace(space, bare))
+    assert read_request(path) == before
+
+
+def test_the_added_examples_are_valid_too(tmp_path: Path) -> None:
+    main(["start", str(tmp_path)])
+    path = tmp_path / "request.toml"
+    text = path.read_text()
+    for mark in ("converter", "assume.opamps"):
+        block = re.search(rf"# \[{re.escape(mark)}\](.*\n# )*.*\n", text)
+        assert block is not None
+        text = text.replace(block[0], re.sub(r"^# ", "", block[0], flags=re.MULTILINE))
+    path.write_text(text)
+    request = read_request(path)
+    assert request.converter is not None
+    assert request.assume == {("opamps", "output_low"): 0.05}
