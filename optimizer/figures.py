@@ -316,15 +316,33 @@ def checks(bench: Bench, s: Settings, state: tuple[Floats, Floats, Floats]) -> d
     `state`: transresistance [ohm], offset [V], phase margin [deg] (rounded).
     """
     transresistance, offset, phase = state
-    with np.errstate(divide="ignore", invalid="ignore"):
-        small = 1.0 + input_capacitance(bench, s) / s.cf < s.min_gain
     return {
-        "dark_output": dark_output_fails(bench, s, (transresistance, offset)),
-        "load": load_fails(bench, s),
-        "gain": np.asarray(s.dc_gain <= 1.0 + s.rf * s.shunt),
-        "min_gain": np.asarray(small | (s.buffered & ~s.buffers)),
+        **steady_checks(bench, s, (transresistance, offset)),
+        "min_gain": min_gain_fails(bench, s),
         "unstable": np.asarray(~(phase > 0.0)),
     }
+
+
+def steady_checks(bench: Bench, s: Settings, state: tuple[Floats, Floats]) -> dict[str, Bools]:
+    """The checks that do not depend on Cf; `state`: transresistance [ohm] and offset [V]."""
+    return {
+        "dark_output": dark_output_fails(bench, s, state),
+        "load": load_fails(bench, s),
+        "gain": np.asarray(s.dc_gain <= 1.0 + s.rf * s.shunt),
+    }
+
+
+def min_gain_fails(bench: Bench, s: Settings) -> Bools:
+    """Where the op-amp works below the noise gain at which it is stable, or cannot buffer its reference."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        small = 1.0 + input_capacitance(bench, s) / s.cf < s.min_gain
+    return np.asarray(small | (s.buffered & ~s.buffers))
+
+
+def steady_state(s: Settings) -> tuple[Floats, Floats]:
+    """Transresistance [ohm] and offset [V] without the dynamics."""
+    transresistance = s.rf * s.dc_gain / (s.dc_gain + (1.0 + s.rf * s.shunt))
+    return transresistance, dc_error(s) + s.dark * transresistance
 
 
 def dark_output_fails(bench: Bench, s: Settings, state: tuple[Floats, Floats]) -> Bools:

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import os
 import pty
+import signal
 import subprocess
 import sys
+import time
 from pathlib import Path
 
 import pytest
@@ -19,7 +21,7 @@ from optimizer.search.result import Progress
 from tests.made_up import outcome
 
 def search(request, catalogs, *, workers=1, progress=None):
-    for decided in (100, 200) if progress else ():
+    for decided in (100, 200):
         progress(Progress(60_000, decided, 12, "3.21 EUR"))
         time.sleep(0.15)
     return outcome()
@@ -103,3 +105,28 @@ def test_columns_sets_the_width(request_file: Path, columns: int) -> None:
     out, _err = seen(["shortlist", str(request_file)], terminals=set(), COLUMNS=str(columns))
     widest = max(len(line) for line in out.split("\n"))
     assert columns - 15 < widest <= columns
+
+
+@pytest.mark.parametrize("workers", ["1", "2"])
+def test_ctrl_c_ends_a_real_search_and_says_what_was_proved(workers: str, tmp_path: Path) -> None:
+    """The longest of the shipped examples is stopped as soon as its first progress is seen."""
+    request = Path(__file__).parent.parent / "examples" / "level" / "request.toml"
+    save = tmp_path / "record.json"
+    reader, writer = pty.openpty()
+    words = ["shortlist", str(request), "--by", "margin", "--workers", workers, "--save", str(save)]
+    with subprocess.Popen(
+        [sys.executable, "-m", "optimizer", *words], stdout=subprocess.DEVNULL, stderr=writer
+    ) as process:
+        os.close(writer)
+        said = b""
+        if workers == "1":
+            while b"pairs decided" not in said:
+                said += os.read(reader, 65536)
+        else:  # several processes report when the first of them is done: too late for this test
+            time.sleep(3)
+        process.send_signal(signal.SIGINT)
+        said += drained(reader).encode()
+    assert process.returncode == 130
+    assert b"interrupted" in said
+    assert b"Traceback" not in said
+    assert not save.exists()

@@ -10,6 +10,7 @@ import pytest
 
 from optimizer.cli import main
 from optimizer.cli.start import STARTER
+from optimizer.record import read
 from optimizer.request import read_request
 from optimizer.study import load
 
@@ -93,3 +94,40 @@ def test_the_added_examples_are_valid_too(tmp_path: Path) -> None:
     request = read_request(path)
     assert request.converter is not None
     assert request.assume == {("opamps", "output_low"): 0.05}
+
+
+def test_the_starter_runs_at_once(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    main(["start", str(tmp_path)])
+    capsys.readouterr()
+    assert main(["shortlist", str(tmp_path / "request.toml"), "--save", str(tmp_path / "r.json")]) == 0
+    out, err = capsys.readouterr()
+    assert err == ""
+    record = read(tmp_path / "r.json")
+    assert "The ranking is proven" in " ".join(out.split())
+    assert record.data["search"]["proven"] is True
+    shown = len(record.candidates) + len(record.near_misses)
+    assert shown + sum(record.data["search"]["dropped"].values()) == 8 * 6
+    # a newcomer sees both kinds of row, and every column of the table filled
+    assert record.candidates
+    assert record.near_misses
+    assert all(row["margin"] >= 0 for row in record.candidates)
+    assert all(row["margin"] < 0 and row["missed"] for row in record.near_misses)
+
+
+def test_the_order_of_catalog_rows_and_the_workers_do_not_matter(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    main(["start", str(tmp_path)])
+    words = ["shortlist", str(tmp_path / "request.toml"), "--quiet", "--save", str(tmp_path / "r.json")]
+    assert main(words) == 0
+    first = dict(read(tmp_path / "r.json").data)
+    for name in ("opamps.csv", "photodiodes.csv", "resistors.csv", "capacitors.csv"):
+        header, *rows = (tmp_path / name).read_text().splitlines()
+        (tmp_path / name).write_text("\n".join([header, *reversed(rows)]) + "\n")
+    assert main([*words, "--workers", "2"]) == 0
+    second = dict(read(tmp_path / "r.json").data)
+    for data in (first, second):
+        data["search"] = {k: v for k, v in data["search"].items() if k not in ("seconds", "evaluated")}
+        data["inputs"] = [(entry["file"], entry["rows"]) for entry in data["inputs"]]
+        del data["created"]
+    assert first == second

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
+from functools import lru_cache
 
 from optimizer.catalog.checks import refuse_unordered
 from optimizer.catalog.parts import Points
@@ -42,18 +43,22 @@ class Style:
 def number_reader(column: Column, style: Style) -> Callable[[str], float]:
     """Return the reader of a column of single quantities; unknown cells read as NaN."""
 
+    name, kind, comma, unit = column.name, column.kind, style.decimal_comma, style.unit
+
     def read(cell: str) -> float:
         if cell in UNKNOWN:
             return math.nan
         if cell == "none" and column.none_allowed:
-            return NO_EFFECT[column.name]
+            return NO_EFFECT[name]
         if style.part:
-            value = read_range_end(
-                cell, column.kind, style.part, decimal_comma=style.decimal_comma, unit=style.unit
-            )
+            value = read_range_end(cell, kind, style.part, decimal_comma=comma, unit=unit)
         else:
-            value = _quantity(cell, column.kind, style, column.none_allowed)
-        refuse_impossible(column.name, value)
+            try:
+                value = read_quantity(cell, kind, decimal_comma=comma, unit=unit)
+            except QuantityError as error:
+                raise _explained(error, cell, column.none_allowed) from None
+        if value <= 0:  # what cannot be is never above zero; half a million cells pass here
+            refuse_impossible(name, value)
         return value
 
     return read
@@ -104,7 +109,7 @@ def status_reader(style: Style) -> Callable[[str], str]:
         plain = cell.casefold().replace(" ", "-").replace("_", "-")
         if plain in STATUSES:
             return plain
-        remedy = did_you_mean(plain, STATUSES) or f'in source.toml: status = {{ "{cell}" = "active" }}'
+        remedy = did_you_mean(plain, STATUSES) or f'in source.toml: status = {{ "{cell[:40]}" = "active" }}'
         raise QuantityError("expected a status: " + ", ".join(STATUSES), remedy)
 
     return read
@@ -127,14 +132,28 @@ def read_text(cell: str) -> str:
     return "" if cell in UNKNOWN else cell
 
 
-def _quantity(cell: str, kind: str, style: Style, none_allowed: bool = False) -> float:
+def _explained(error: QuantityError, cell: str, none_allowed: bool) -> QuantityError:
+    """Return the error with how to write an unknown value, where the cell seems to mean that."""
+    if cell.casefold() not in _LIKE_UNKNOWN:
+        return error
+    remedy = _BLANK_REMEDY + ("; 'none', in small letters, states no such effect" if none_allowed else "")
+    return QuantityError(str(error), remedy)
+
+
+def _quantity(cell: str, kind: str, style: Style) -> float:
     try:
         return read_quantity(cell, kind, decimal_comma=style.decimal_comma, unit=style.unit)
     except QuantityError as error:
-        if cell.casefold() not in _LIKE_UNKNOWN:
-            raise
-        remedy = _BLANK_REMEDY + ("; 'none', in small letters, states no such effect" if none_allowed else "")
-        raise QuantityError(str(error), remedy) from None
+        raise _explained(error, cell, none_allowed=False) from None
+
+
+@lru_cache(maxsize=1024)
+def _pieces_bought(text: str) -> float:
+    """Return the quantity that a price break begins at; a catalog has few different ones."""
+    quantity = read_quantity(text, "count")
+    if quantity < 1:
+        raise QuantityError("a price break begins at 1 piece or more")
+    return quantity
 
 
 def _pieces(cell: str) -> list[str]:
@@ -175,9 +194,8 @@ def _pair(column: str, piece: str, kinds: tuple[str, str], style: Style) -> tupl
 def _price_break(piece: str, style: Style) -> tuple[float, float, tuple[str, str] | None]:
     """Return quantity, unit price, and (currency code, text) where the piece names one."""
     left, colon, right = piece.rpartition(":")
-    quantity = read_quantity(left.strip(), "count") if colon else 1.0
+    quantity = _pieces_bought(left.strip()) if colon else 1.0
     price, code = read_price(right.strip(), decimal_comma=style.decimal_comma)
-    refuse_impossible("price", price)
-    if quantity < 1:
-        raise QuantityError("a price break begins at 1 piece or more")
+    if price <= 0:
+        refuse_impossible("price", price)
     return quantity, price, (code, tidy(right)) if code else None

@@ -237,4 +237,5 @@ def _likeness(header: str, name: str) -> float:
         return 0.0
     if sorted(header) == sorted(name):  # two letters swapped, which difflib underrates in short names
         return 0.99
-    return SequenceMatcher(None, header, name, autojunk=False).ratio()
+    matcher = SequenceMatcher(None, header, name, autojunk=False)
+    return matcher.ratio() if matcher.real_quick_ratio() >= _NEAR else 0.0

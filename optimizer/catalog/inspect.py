@@ -157,7 +157,7 @@ def _read(file: str, role: str) -> tuple[str, Run, FileResult | None]:
 
 
 def _likely_roles(file: str) -> list[str]:
-    """Return the role that the headers and then the file's name speak for; several where they tie."""
+    """Return the role that the file's name and its headers speak for; several where they tie."""
     path = Path(file)
     source = read_bytes(path, file)
     source_map = read_source_map(path, file, read_bytes)
@@ -166,19 +166,19 @@ def _likely_roles(file: str) -> list[str]:
     found = {split_unit(header)[0] for header in table.header} | set(mapped)
     scores = {role: _score(role, found, path) for role in ROLES}
     best = max(scores.values())
-    if not best[0] and not best[1]:
+    if not any(best):
         rule = "no header is a column of a catalog of op-amps, photodiodes, resistors or capacitors"
         remedy = "name the columns as the README does, or map them in source.toml"
         raise InputError([Problem(file, table.header_line, None, None, rule, remedy)])
     return [role for role, score in scores.items() if score == best]
 
 
-def _score(role: str, found: set[str], path: Path) -> tuple[int, bool, int]:
+def _score(role: str, found: set[str], path: Path) -> tuple[bool, int, int]:
+    """Tell how much speaks for a role: the file's name, then the required columns, then all columns."""
     required = {name for name, column in COLUMNS[role].items() if column.required}
-    alike = COLUMNS[role].keys() & found
-    # all four roles share names such as price: a share of the required ones says which role it is
     share = round(100 * len(required & found) / len(required))
-    return share, role.removesuffix("s") in path.stem.lower().replace("-", ""), len(alike)
+    called = share > 0 and role.removesuffix("s") in path.stem.lower().replace("-", "")
+    return called, share, len(COLUMNS[role].keys() & found)
 
 
 def _counts(rows: Rows) -> Iterator[ColumnCount]:

@@ -13,6 +13,8 @@ _AMBIENT = re.compile(r"\s*\(\s*T\s*_?A(?:MB)?\s*\)\s*$", re.IGNORECASE)
 _JUNCTION = re.compile(r"\(\s*T\s*_?(?:J|C|CASE|CH)\s*\)", re.IGNORECASE)
 _BARE = re.compile(r"[-+\u2212]?\s*[0-9.,]+(?:[eE][-+]?[0-9]+)?")
 
+_LONGEST = 80
+
 
 def read_range_end(
     cell: str, kind: str, part: str, *, decimal_comma: bool = False, unit: str | None = None
@@ -36,7 +38,8 @@ def read_range_end(
 
 def _ends(cell: str) -> tuple[str, str]:
     """Return both ends as text, each with its unit."""
-    match = _RANGE.fullmatch(cell.strip())
+    # no range needs so long a text, and the pattern would try every way to cut it
+    match = _RANGE.fullmatch(cell.strip()) if len(cell) <= _LONGEST else None
     if match is None:
         raise QuantityError("expected one range such as '1.8 V ~ 5.5 V' or '-40 to 125 °C'")
     low, high = match[1].strip(), match[2].strip()

@@ -1,4 +1,4 @@
-"""How far the search is, on a terminal; silent where nobody looks."""
+"""How far the search is: remembered always, shown on a terminal only."""
 
 from __future__ import annotations
 
@@ -6,19 +6,34 @@ import os
 import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from optimizer.search.result import Progress
 
-Report = Callable[["Progress"], None]
+Show = Callable[["Progress"], None]
+
+
+@dataclass(slots=True)
+class Watch:
+    """Takes the search's reports: keeps the last one, and passes each on to `show` if there is one."""
+
+    show: Show | None = None
+    last: Progress | None = None
+
+    def __call__(self, now: Progress) -> None:
+        """Take one report."""
+        self.last = now
+        if self.show is not None:
+            self.show(now)
 
 
 @contextmanager
-def progress(*, quiet: bool) -> Iterator[Report | None]:
-    """A function that shows progress on standard error, or None where nobody would see it."""
+def watch(*, quiet: bool) -> Iterator[Watch]:
+    """A watch that shows progress on standard error where a person sees it."""
     if quiet or not sys.stderr.isatty() or os.environ.get("TERM") == "dumb":
-        yield None
+        yield Watch()
         return
     from rich.console import Console
     from rich.progress import BarColumn, TextColumn, TimeElapsedColumn
@@ -34,7 +49,7 @@ def progress(*, quiet: bool) -> Iterator[Report | None]:
         task = display.add_task("", total=None, visible=False, best="")
 
         def show(now: Progress) -> None:
-            best = f"best so far: {now.best}" if now.best else "nothing meets so far"
+            best = f"best so far: {now.best}" if now.best else ""
             display.update(task, total=now.pairs, completed=now.decided, best=best, visible=True)
 
-        yield show
+        yield Watch(show)

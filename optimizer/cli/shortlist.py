@@ -13,12 +13,12 @@ from typing import TYPE_CHECKING
 from optimizer.cli.arguments import COMMAND_LINE, ShortlistOptions, shortlist_options
 from optimizer.cli.messages import printable
 from optimizer.cli.output import write, write_lines
-from optimizer.cli.progress import progress
+from optimizer.cli.progress import watch
 from optimizer.errors import InputError, OutputError, Problem
 
 if TYPE_CHECKING:
     from optimizer.record import Record
-    from optimizer.search.result import Outcome
+    from optimizer.search.result import Outcome, Progress
     from optimizer.study import Study
 
 MEETS, NOTHING_MEETS, INTERRUPTED = 0, 1, 130
@@ -34,10 +34,10 @@ def shortlist(parsed: argparse.Namespace) -> int:
 
     _tell_left_out(study, options)
     try:
-        with progress(quiet=options.quiet) as report:
-            outcome = search(study.request, study.catalogs, workers=options.workers, progress=report)
+        with watch(quiet=options.quiet) as watcher:
+            outcome = search(study.request, study.catalogs, workers=options.workers, progress=watcher)
     except Interrupted as stop:
-        _tell_interrupted(study, stop.outcome)
+        _tell_interrupted(study, stop.outcome, watcher.last)
         return INTERRUPTED
     return _answer(study, outcome, options)
 
@@ -152,10 +152,10 @@ def _tell_left_out(study: Study, options: ShortlistOptions) -> None:
     write(sys.stderr, "".join(f"{printable(line)}\n" for line in lines))
 
 
-def _tell_interrupted(study: Study, outcome: Outcome) -> None:
+def _tell_interrupted(study: Study, outcome: Outcome, last: Progress | None) -> None:
     from optimizer.record import build
     from optimizer.report.interrupted import interrupted
     from optimizer.report.terminal import width_of
 
     record = build(study, outcome, None)
-    write_lines(sys.stderr, interrupted(record, width_of(sys.stderr)))
+    write_lines(sys.stderr, interrupted(record, last, width_of(sys.stderr)))

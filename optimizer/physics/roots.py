@@ -15,14 +15,17 @@ _CROSSING_STEPS = 500
 
 
 def single_positive_root(k0: Floats, k1: Floats, k2: Floats, k3: Floats) -> Floats:
-    """The positive root of k3 x^3 + k2 x^2 + k1 x - k0 with k0 > 0, k2 > 0, k3 >= 0; NaN where k0 <= 0.
+    """The positive root of k3 x^3 + k2 x^2 + k1 x - k0 with k0 > 0 and k2, k3 >= 0; NaN where k0 <= 0.
+
+    k1 must be positive where k2 and k3 are 0.
 
     The polynomial is convex for x > 0 and has one positive root, so Newton's method from above falls
     onto it monotonically, whatever the sign of k1 (Cardano's formula cancels there).
     """
     with np.errstate(divide="ignore", invalid="ignore"):
         drop = np.maximum(-k1, 0.0)
-        x = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
+        quadratic = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
+        x = np.where(k2 > 0.0, quadratic, np.inf)
         cubic = np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf)
         linear = np.where(k1 > 0.0, k0 / k1, np.inf)
         x = np.where(k0 > 0.0, np.minimum(np.minimum(x, cubic), linear), np.nan)
@@ -109,9 +112,7 @@ def _polished(x: Floats, rows: Sequence[Floats], rise: float) -> Floats:
     return np.asarray(np.where((slope > 0.0) & (np.abs(step) < 1e-6 * x), x - step, x))
 
 
-def cubic_roots(
-    e1: Floats, e2: Floats, e3: Floats
-) -> tuple[Floats, Complexes, Complexes]:
+def cubic_roots(e1: Floats, e2: Floats, e3: Floats) -> tuple[Floats, Complexes, Complexes]:
     """Roots of t^3 + e1 t^2 + e2 t + e3 with e1, e2 > 0 and e1 e2 > e3 >= 0 (all left of the axis).
 
     One real root and the other two (complex, or real in complex arrays). The real root is bracketed

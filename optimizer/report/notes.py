@@ -92,7 +92,19 @@ def _filled(name: str, request: Mapping[str, Any]) -> str:
 
 
 def _ranks(rows: Sequence[Mapping[str, Any]], name: str) -> str:
-    ranks = [str(row["rank"]) for row in rows if name in row["assumed"]]
+    ranks = [row["rank"] for row in rows if name in row["assumed"]]
     if len(ranks) == len(rows) > 1:
         return "every row"
-    return f"row {ranks[0]}" if len(ranks) == 1 else f"rows {', '.join(ranks)}"
+    return f"row {ranks[0]}" if len(ranks) == 1 else f"rows {', '.join(_runs(ranks))}"
+
+
+def _runs(ranks: Sequence[int]) -> list[str]:
+    """Rising numbers with runs of three or more written '2-8'."""
+    runs: list[list[int]] = []
+    for rank in ranks:
+        if runs and rank == runs[-1][-1] + 1:
+            runs[-1].append(rank)
+        else:
+            runs.append([rank])
+    texts = (f"{run[0]}-{run[-1]}" if len(run) > 2 else ", ".join(map(str, run)) for run in runs)
+    return list(texts)

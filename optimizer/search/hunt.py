@@ -14,6 +14,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
+from optimizer.figures import rounded
 from optimizer.search import keys
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes, settings_of, single, whole
@@ -168,7 +169,7 @@ def _probed(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
 def _level(hunt: Hunt, boxes: Boxes, known: tuple[Floats, Floats], inherited: Floats) -> Floats:
     """The smallest margin that a setting of each box needs to be of any use."""
     rules, incumbents = hunt.rules, hunt.incumbents
-    cost, current = known
+    cost, current = rounded(known[0]), rounded(known[1])
     level = np.full(len(boxes), rules.least)
     first = {"cost": cost, "supply_current": current}.get(rules.by)
     if first is None:
@@ -193,9 +194,7 @@ def _not_before(by: str, known: tuple[Floats, Floats], best: Floats) -> Bools:
     first, cost = known
     if by == "margin":
         return np.ones(first.size, dtype=bool)
-    near = 1.0 + 1e-8
-    primary = first * np.where(first > 0, near, 1.0 / near)
-    return np.asarray((primary > best[:, 0]) | ((primary >= best[:, 0]) & (cost * near >= best[:, 1])))
+    return np.asarray((first > best[:, 0]) | ((first == best[:, 0]) & (cost >= best[:, 1])))
 
 
 def _key(hunt: Hunt, boxes: Boxes, limits: Bound, keep: Bools) -> Floats:

@@ -1,9 +1,10 @@
 """How far a pair gets through the eligibility checks: the check reached by its best setting.
 
-Exact, without evaluating every setting. A few likely settings settle most pairs. For the others: the
-dark output and the gain only get worse with Rf, the load does not depend on it, min_gain depends on
-Rf only through the resistor's parasitic, so testing the smallest Rf of each parasitic in every context
-decides them; only stability needs every value.
+Exact, without evaluating every setting. A few likely settings settle most pairs, bounds most of the
+others. For the rest: the dark output and the gain only get worse with Rf (save where the dark output may
+rest on the rail), the load does not depend on it, min_gain asks for small Cf. Stability, e1 e2 > e3, is convex in Cf at a given Rf and convex in Rf at
+a given Cf (both leading coefficients are positive), so over a rectangle of them it holds somewhere only
+if it holds at a corner.
 """
 
 from __future__ import annotations
@@ -13,7 +14,14 @@ from collections.abc import Iterator
 import numpy as np
 from numpy.typing import NDArray
 
-from optimizer.figures import CHECKS, screen
+from optimizer.figures import (
+    CHECKS,
+    Settings,
+    output_limits,
+    screen,
+    steady_checks,
+    steady_state,
+)
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space, own_code, settings
 
@@ -21,18 +29,33 @@ Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
 _BLOCK = 65536
+_QUANTILES = (
+    (0.0, 1.0),
+    (0.0, 0.0),
+    (0.4, 1.0),
+    (1.0, 1.0),
+    (0.6, 0.0),
+    (0.4, 0.0),
+    (0.25, 0.0),
+    (0.8, 0.0),
+    (0.1, 0.2),
+)
+"""Where in the sorted resistors and capacitors the likely settings lie."""
+_DARK = CHECKS.index("dark_output")
 _MIN_GAIN = CHECKS.index("min_gain")
 _UNSTABLE = CHECKS.index("unstable")
 
 
 def first_failed(space: Space, choice: Choice) -> Ints:
     """Index of the first check that each setting fails, PASSES where it is eligible."""
-    reach = own_code(space, choice)
     with np.errstate(all="ignore"):
-        fails = screen(space.bench, settings(space, choice))
+        return _worst(own_code(space, choice), screen(space.bench, settings(space, choice)))
+
+
+def _worst(code: Ints, fails: dict[str, Bools]) -> Ints:
     for name, mask in fails.items():
-        reach = np.minimum(reach, np.where(mask, CHECKS.index(name), PASSES))
-    return reach
+        code = np.minimum(code, np.where(mask, CHECKS.index(name), PASSES))
+    return code
 
 
 def furthest(space: Space, opamp: Ints, diode: Ints) -> Ints:
@@ -41,16 +64,18 @@ def furthest(space: Space, opamp: Ints, diode: Ints) -> Ints:
     for begin in range(0, opamp.size, _BLOCK):
         part = slice(begin, begin + _BLOCK)
         reach[part] = _witnessed(space, opamp[part], diode[part])
-    for row in np.flatnonzero(reach < PASSES):
-        reach[row] = _scanned(space, int(opamp[row]), int(diode[row]), int(reach[row]))
+    open_ = np.flatnonzero(reach < PASSES)
+    final = _no_further(space, opamp[open_], diode[open_], reach[open_])
+    for row in open_[~final]:
+        reach[row] = max(reach[row], _scanned(space, int(opamp[row]), int(diode[row])))
     return reach
 
 
 def _witnessed(space: Space, opamp: Ints, diode: Ints) -> Ints:
     """The best of a few likely settings of each pair."""
     reach = np.full(opamp.size, -1)
-    for group in range(int(space.contexts.group[-1]) + 1):
-        for resistor, capacitor in _likely(space):
+    for resistor, capacitor in _likely(space):
+        for group in range(int(space.contexts.group[-1]) + 1):
             open_ = np.flatnonzero(reach < PASSES)
             if not open_.size:
                 return reach
@@ -62,12 +87,11 @@ def _witnessed(space: Space, opamp: Ints, diode: Ints) -> Ints:
 
 
 def _likely(space: Space) -> Iterator[tuple[int, int]]:
-    """Resistor and capacitor of settings that often pass: small and large Rf, large to small Cf."""
+    """Resistor and capacitor of settings that often pass."""
     resistors = np.argsort(space.resistors.value, kind="stable")
     capacitors = np.argsort(space.capacitors.value, kind="stable")
-    for r in (0, resistors.size - 1) if space.bench.dark_on_rail else (0,):
-        for c in (capacitors.size - 1, capacitors.size // 2, 0):
-            yield int(resistors[r]), int(capacitors[c])
+    for r, c in _QUANTILES:
+        yield int(resistors[int(r * (resistors.size - 1))]), int(capacitors[int(c * (capacitors.size - 1))])
 
 
 def _likely_context(space: Space, opamp: Ints, diode: Ints, group: int) -> Ints:
@@ -88,44 +112,87 @@ def _likely_context(space: Space, opamp: Ints, diode: Ints, group: int) -> Ints:
     return members[np.clip(np.clip(wanted, 0, last), np.minimum(low, high), high)]
 
 
-def _scanned(space: Space, opamp: int, diode: int, known: int) -> int:
-    """The check reached by one pair, by scanning what can matter."""
+def _no_further(space: Space, opamp: Ints, diode: Ints, reach: Ints) -> Bools:
+    """Where bounds prove that no setting of a pair gets past the check it reached."""
+    x, o, d, bench = space.contexts, space.opamps, space.diodes, space.bench
+    free = ~x.buffered
+    widest = d.capacitance[:, free].max(axis=1, initial=0.0)
+    cin = widest[diode] + o.common[opamp] + o.differential[opamp] + bench.stray
+    least = space.capacitors.value.min() + space.resistors.parasitic.min()
+    with np.errstate(divide="ignore", invalid="ignore"):
+        gain = 1.0 + cin / least if least > 0.0 else np.full(opamp.size, np.inf)
+        decompensated = (gain < o.min_gain[opamp]) & ~o.buffers[opamp]
+    room = np.inf
+    for end in bench.ends:
+        lower, upper = output_limits(bench, end, o.output_low, o.output_high)
+        room = np.minimum(room, upper - lower - 2.0 * bench.guard)
+    smallest = space.resistors.value.min()
+    shunt = d.shunt[diode] if not x.biased.any() else 0.0
+    error = o.vos[opamp] * (1.0 + smallest * shunt) + o.bias[opamp] * smallest
+    dark = (2.0 * error * (1.0 - 1e-9) > np.asarray(room)[opamp]) & (not bench.dark_on_rail)
+    return np.asarray((decompensated & (reach == _MIN_GAIN)) | (dark & (reach == _DARK)))
+
+
+def _scanned(space: Space, opamp: int, diode: int) -> int:
+    """The check reached by one pair, from the settings that can get furthest."""
     code = np.minimum(space.opamp_verdicts.code[opamp], space.diode_verdicts.code[diode])
     contexts = np.flatnonzero(code == PASSES)
-    known = max(known, int(code[code < PASSES].max(initial=-1)))
+    reach = int(code[code < PASSES].max(initial=-1))
     if not contexts.size:
-        return known
-    smallest = np.argmin(space.capacitors.value)
-    few = _few_resistors(space)
-    reach = _grid(space, (opamp, diode), (contexts, few, np.array([smallest])))
-    if space.bench.dark_on_rail:
-        every = np.arange(space.resistors.size)
-        rail = contexts[~space.contexts.divided[contexts] & (space.contexts.sign[contexts] > 0)]
-        reach = max(reach, _grid(space, (opamp, diode), (rail, every, np.array([smallest]))))
-    known = max(known, reach)
-    if known != _UNSTABLE:
-        return known
-    every = (contexts, np.arange(space.resistors.size), np.arange(space.capacitors.size))
-    return _grid(space, (opamp, diode), every)
-
-
-def _few_resistors(space: Space) -> Ints:
-    """The smallest resistor of each parasitic capacitance."""
-    order = np.lexsort((space.resistors.value, space.resistors.parasitic))
-    parasitic = space.resistors.parasitic[order]
-    return order[np.r_[True, np.diff(parasitic) != 0.0]]
-
-
-def _grid(space: Space, pair: tuple[int, int], axes: tuple[Ints, Ints, Ints]) -> int:
-    """The furthest check reached over a grid of contexts, resistors and capacitors of one pair."""
-    sizes = tuple(axis.size for axis in axes)
-    total, reach = int(np.prod(sizes)), -1
-    for start in range(0, total, _BLOCK):
-        index = np.unravel_index(np.arange(start, min(start + _BLOCK, total)), sizes)
-        context, resistor, capacitor = (axis[i] for axis, i in zip(axes, index, strict=True))
-        same = np.ones(context.size, dtype=np.int64)
-        choice = Choice(pair[0] * same, pair[1] * same, context, resistor, capacitor, 0 * same)
-        reach = max(reach, int(first_failed(space, choice).max()))
+        return reach
+    x = space.contexts
+    rail = space.bench.dark_on_rail & (x.sign[contexts] > 0) & ~x.divided[contexts]
+    for parasitic in np.unique(space.resistors.parasitic):
+        resistors = np.flatnonzero(space.resistors.parasitic == parasitic)
+        smallest = resistors[[np.argmin(space.resistors.value[resistors])]]
+        found = _scanned_class(space, (opamp, diode), contexts, smallest)
+        if found == _UNSTABLE:
+            found = _scanned_class(space, (opamp, diode), contexts, resistors)
+        elif found < PASSES and rail.any():
+            found = max(found, _scanned_class(space, (opamp, diode), contexts[rail], resistors))
+        reach = max(reach, found)
         if reach == PASSES:
             break
     return reach
+
+
+def _scanned_class(space: Space, pair: tuple[int, int], contexts: Ints, resistors: Ints) -> int:
+    """The check reached with resistors of one parasitic: steady checks, then Cf at its two ends."""
+    context, resistor = (grid.ravel() for grid in np.meshgrid(contexts, resistors, indexing="ij"))
+    smallest = int(np.argmin(space.capacitors.value))
+    choice = _choice(pair, context, resistor, np.full(context.size, smallest))
+    s = settings(space, choice)
+    with np.errstate(all="ignore"):
+        steady = _worst(np.full(context.size, PASSES), steady_checks(space.bench, s, steady_state(s)))
+    if not (steady == PASSES).any():
+        return int(steady.max())
+    context, resistor = _ends(space, context[steady == PASSES], resistor[steady == PASSES])
+    least = _choice(pair, context, resistor, np.full(context.size, smallest))
+    most = _choice(pair, context, resistor, _largest(space, settings(space, least)))
+    return max(int(first_failed(space, least).max()), int(first_failed(space, most).max()))
+
+
+def _ends(space: Space, context: Ints, resistor: Ints) -> tuple[Ints, Ints]:
+    """The smallest and the largest resistor of each context (what passes between is an interval)."""
+    order = np.lexsort((space.resistors.value[resistor], context))
+    context, resistor = context[order], resistor[order]
+    change = np.flatnonzero(np.diff(context) != 0)
+    ends = np.unique(np.r_[0, change, change + 1, context.size - 1])
+    return context[ends], resistor[ends]
+
+
+def _largest(space: Space, s: Settings) -> Ints:
+    """The largest capacitor that min_gain allows with each setting's resistor, else the smallest."""
+    order = np.argsort(space.capacitors.value, kind="stable")
+    value = space.capacitors.value[order]
+    parasitic = s.cf - value[0]
+    cin = s.capacitance + s.common + s.differential + space.bench.stray
+    with np.errstate(divide="ignore"):
+        allowed = np.where(s.min_gain > 1.0, cin / (s.min_gain - 1.0), np.inf) - parasitic
+    place = np.searchsorted(value, allowed * (1.0 - 1e-9), "right") - 1
+    return order[np.clip(place, 0, value.size - 1)]
+
+
+def _choice(pair: tuple[int, int], context: Ints, resistor: Ints, capacitor: Ints) -> Choice:
+    same = np.ones(context.size, dtype=np.int64)
+    return Choice(pair[0] * same, pair[1] * same, context, resistor, capacitor, 0 * same)

@@ -64,7 +64,7 @@ def bound(v: View, goals: Goals, level: Floats) -> Bound:
             table[:, k] = margins.margin(name, exact[name], goals.limits[name])
         else:
             # NaN would be an unknown value that no target needs; it never bounds
-            known = np.clip(np.where(np.isnan(column), np.inf, column), -2.0, margins.LARGEST)
+            known = np.clip(np.where(np.isnan(column), np.inf, column), -1.0, margins.LARGEST)
             table[:, k] = known + SLACK * (1.0 + np.abs(known))
     possible = left.possible & np.all(table >= loose[:, None], axis=1)
     return Bound(possible, np.clip(table, -1.0, goals.comfort), snr * 1.0 + 1e-6, cost, current, left)

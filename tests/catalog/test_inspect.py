@@ -40,6 +40,11 @@ def test_role_is_guessed_from_what_the_file_holds(folder: Folder, role: str) -> 
     assert _inspect(folder, "export.csv").role == role
 
 
+def test_name_of_the_file_decides_where_few_headers_are_known(folder: Folder) -> None:
+    folder.write("my-op-amps.csv", "part,maker,price\nZQ1,Maker A,1\n")
+    assert _inspect(folder, "my-op-amps.csv").role == "opamps"
+
+
 def test_role_is_guessed_through_the_map(folder: Folder) -> None:
     folder.write("export.csv", "Typ;Hersteller\nPD1;Maker B\n")
     lines = ['part = { header = "Typ" }', 'maker = { header = "Hersteller" }', "price = { value = 1 }"]

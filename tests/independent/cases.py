@@ -11,7 +11,7 @@ from math import inf, log, log10, pi, sqrt
 
 import numpy as np
 
-from tests.independent import dense, direct
+from tests.independent import dense, direct, eligibility
 from tests.independent.direct import Case
 
 WIRINGS = ("rising-unbiased", "rising-biased", "falling-unbiased", "falling-biased")
@@ -77,15 +77,23 @@ def stable_case(rng: np.random.Generator, margin: float = 0.05, **fixed: str) ->
 
 
 def spoiled_case(rng: np.random.Generator) -> Case:
-    """A random setting that may lack gain, output range or sensitivity at its wavelength."""
+    """A random setting that may lack gain, range or sensitivity, or stand just at an edge of a check."""
     case = random_case(rng)
-    net = dense.circuit(case)
+    amp, supply, net = case["opamp"], case["supply"], dense.circuit(case)
+    least = (supply["high"] - supply["low"]) * (1 - supply["tolerance"])
     if chance(rng, 0.03):
         case["light"]["wavelength"] = float(rng.choice([390e-9, 1.11e-6]))
     if chance(rng, 0.05):
-        case["opamp"]["output_low"] = case["supply"]["high"] - case["supply"]["low"]
+        amp["supply_min"] = least * float(rng.uniform(0.95, 1.1))
     if chance(rng, 0.1):
-        case["opamp"]["open_loop_gain"] = (1 + net.rf * net.leak) * float(rng.uniform(0.5, 1.5))
+        amp["output_low"] = least - amp["output_high"] - supply["guard"] * float(rng.uniform(-0.5, 2))
+    if chance(rng, 0.1):
+        amp["open_loop_gain"] = (1 + net.rf * net.leak) * float(rng.uniform(0.5, 1.5))
+    if supply["load"] is not None and chance(rng, 0.3):
+        amp["bias_current"] = 1e-4
+        amp["output_current"] = eligibility.output_load(case) - direct.bias_current(case) * float(
+            rng.uniform(-1, 1)
+        )
     return case
 
 

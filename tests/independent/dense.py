@@ -147,13 +147,15 @@ def first_crossing(level: Callable, logs: np.ndarray) -> Crossing:
 
 def turning(level: Callable, logs: np.ndarray, i: int, sign: int) -> tuple[float, float]:
     """Where `level` has its minimum (sign +1) or maximum (-1) around grid point i, and its value there."""
+    step = logs[i + 1] - logs[i]
+    # counted from the grid point, for the method's own tolerance is relative to the argument
     found = minimize_scalar(
-        lambda u: sign * level(u),
-        bounds=(logs[i - 1], logs[i + 1]),
+        lambda shift: sign * level(logs[i] + shift),
+        bounds=(-step, step),
         method="bounded",
         options={"xatol": 1e-13},
     )
-    return float(found.x), sign * float(found.fun)
+    return float(logs[i] + found.x), sign * float(found.fun)
 
 
 def bandwidth(case: Case) -> Crossing:

@@ -73,15 +73,18 @@ def dark_output_clips(case: Case) -> bool:
     return False
 
 
-def overloaded(case: Case) -> bool:
+def output_load(case: Case) -> float:
+    """What the output has to drive at the high end of the supply [A], into load and feedback."""
     supply, light = case["supply"], case["light"]
-    if supply["load"] is None:
-        return False
     to = direct.reference_voltage(case, +1) if supply["load_to"] is None else supply["load_to"]
     farthest = max(abs(limit - to) for limit in direct.output_limits(case, +1))
     power = direct.on_diode(case, light["strongest"]) + direct.on_diode(case, light["background"])
     feedback = direct.responsivity(case) * power + direct.dark_current(case) + direct.bias_current(case)
-    return farthest / supply["load"] + feedback > case["opamp"]["output_current"]
+    return farthest / supply["load"] + feedback
+
+
+def overloaded(case: Case) -> bool:
+    return case["supply"]["load"] is not None and output_load(case) > case["opamp"]["output_current"]
 
 
 def too_little_gain(case: Case) -> bool:

@@ -10,6 +10,8 @@ import pytest
 from optimizer.record import Record
 from optimizer.record.build import plain
 from optimizer.report import report, table_only, to_text
+from optimizer.report.interrupted import interrupted
+from optimizer.search.result import Progress
 from tests.made_up import CANDIDATE, DIVIDER, FIGURES, MISS, outcome, record
 
 WIDTHS = [80, 100, 120, 160]
@@ -123,7 +125,7 @@ def test_near_misses_say_what_they_miss_and_by_how_much() -> None:
 def test_why_the_rest_dropped_out_with_counts() -> None:
     text = joined(text_of(FULL, 120))
     assert "Why 59,999 other pairs dropped out" in text
-    assert "31,200 wavelength 850 nm lies outside" in text
+    assert "31,200 wavelength wavelength outside" in text
     assert "16,799 cannot_beat proved unable to beat" in text
 
 
@@ -134,6 +136,19 @@ def test_what_was_covered_and_that_it_is_proven() -> None:
     unproven = joined(text_of(record(outcome(proven=False))))
     assert "NOT PROVEN" in unproven
     assert "The ranking is proven" not in unproven
+
+
+def test_an_interrupted_search_claims_no_more_than_was_proved() -> None:
+    last = Progress(40, 30, 12, None)
+    text = joined(to_text(interrupted(record(outcome(proven=False)), last, 80), colour=False))
+    assert "30 of the 40 pairs whose parts are eligible" in text
+    assert "NOT proven" in text
+    assert "YZD-21" in text
+    nothing = joined(to_text(interrupted(record(outcome((), (), proven=False)), None, 80), colour=False))
+    assert "Nothing had been proved yet." in nothing
+    assert "proves nothing yet" in nothing
+    done = joined(to_text(interrupted(record(outcome(proven=True)), last, 80), colour=False))
+    assert "The ranking below is proven" in done
 
 
 @pytest.mark.parametrize(

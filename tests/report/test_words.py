@@ -6,7 +6,7 @@ from hypothesis import strategies as st
 
 from optimizer.record.build import plain
 from optimizer.report.cautions import cautions
-from optimizer.report.reasons import WORDS, reason
+from optimizer.report.reasons import WORDS, reason_lines
 from optimizer.report.words import beside, clean, margin_words, percent, spoken
 from tests.made_up import record
 
@@ -89,15 +89,29 @@ KEYS = "status excluded stock temperature wavelength supply reverse_bias input_r
 KEYS += " gain min_gain unstable missed_target cannot_beat"
 
 
+def dropped(counts: dict[str, int], width: int = 80) -> str:
+    lines = reason_lines({"search": {"dropped": counts}}, width)
+    assert max(len(line.plain) for line in lines) <= width
+    return " ".join(" ".join(line.plain for line in lines).split())
+
+
 @pytest.mark.parametrize("key", KEYS.split())
 def test_every_reason_has_words(key: str) -> None:
-    assert key in WORDS
-    assert "does not know" not in reason(key, DATA["request"])
+    text = dropped({"stock": 0, key: 1234})
+    assert f"1,234 {key} {WORDS[key]}" in text
+    assert "does not know" not in text
+    assert "[assume]" not in text
 
 
-def test_a_missing_value_names_catalog_and_column() -> None:
-    assert "op-amp catalog leaves output_low blank" in reason("missing:output_low", DATA["request"])
-    assert "a catalog leaves temp_min blank" in reason("missing:temp_min", DATA["request"])
+def test_a_reason_of_a_later_version_is_still_counted() -> None:
+    assert "3 pairs_of_tomorrow dropped for a reason" in dropped({"pairs_of_tomorrow": 3})
+
+
+def test_blanks_share_a_row_that_counts_each_column() -> None:
+    text = dropped({"missing:output_low": 40, "missing:price": 100, "stock": 120})
+    assert "140 missing a value that a target or check needs is blank: price 100, output_low 40 120" in text
+    assert "Why 260 other pairs dropped out" in text
+    assert "[assume]" in text
 
 
 @pytest.mark.parametrize(
