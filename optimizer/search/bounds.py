@@ -103,8 +103,8 @@ def swing(v: View, bench: Bench, rf_low: Floats) -> Floats:
     stop = np.minimum(v.fall_from, ceiling)
     up = np.minimum(v.upper[0] - start * bottom, v.upper[1] - start * top)
     down = np.minimum(stop * bottom - v.lower[0], stop * top - v.lower[1])
-    up = np.where(v.rises & (start <= ceiling * (1.0 + 1e-12) + 1e-12), up, -np.inf)
-    down = np.where(v.falls & (stop >= floor * (1.0 - 1e-12) - 1e-12), down, -np.inf)
+    up = np.where(v.rises & (start <= ceiling + 1e-9 * (1.0 + np.abs(ceiling))), up, -np.inf)
+    down = np.where(v.falls & (stop >= floor - 1e-9 * (1.0 + np.abs(floor))), down, -np.inf)
     return np.maximum(up, down)
 
 

@@ -183,7 +183,8 @@ def view(index: Index, boxes: Boxes) -> View:
     # a steep price break can make two packages cheaper than one
     mixed = np.where(some[BUFFERED] & lone, np.minimum(one, two), one)
     capacitance = space.diodes.capacitance
-    shunt, dark = space.diodes.shunt[d], space.diodes.dark[d]
+    # a diode of unknown shunt or dark current fails in the wirings that need it: elsewhere it is 0
+    shunt, dark = np.nan_to_num(space.diodes.shunt[d]), np.nan_to_num(space.diodes.dark[d])
     possible = (amps.passes[o, x1] > amps.passes[o, x0]) & (
         index.diode_passes[d, x1] > index.diode_passes[d, x0]
     )
