@@ -152,7 +152,7 @@ def _quadrature(z: Complexes, x0: float) -> tuple[Floats, Floats]:
     return flat, rising
 
 
-def output_voltage(loop: Loop, density: ArrayLike, slope: Floats, band: Band) -> Floats:
+def output_voltage(loop: Loop, density: Floats, slope: Floats, band: Band) -> Floats:
     """Mean square [V^2] of a voltage `density` [V^2/Hz] seen through gain (c + s slope)/D, c = 1.
 
     `slope` [s] is the numerator's time constant; `band` the integrals of 1/D with the same filters.
@@ -160,12 +160,12 @@ def output_voltage(loop: Loop, density: ArrayLike, slope: Floats, band: Band) ->
     return np.asarray(density * loop.gain**2 * (band.flat + slope**2 * band.rising))
 
 
-def amplifier_voltage(loop: Loop, density: ArrayLike, band: Band) -> Floats:
+def amplifier_voltage(loop: Loop, density: Floats, band: Band) -> Floats:
     """Mean square [V^2] of the op-amp's own voltage noise through A NG/(A + NG) = gain (g + s total)/D."""
     g2, t2 = loop.dc_noise_gain**2, loop.total**2
     return np.asarray(density * loop.gain**2 * (g2 * band.flat + t2 * band.rising))
 
 
-def output_current(transresistance: Floats, density: ArrayLike, band: Band) -> Floats:
+def output_current(transresistance: Floats, density: Floats, band: Band) -> Floats:
     """Mean square [V^2] of a current `density` [A^2/Hz] at the summing node, through H = H0/D."""
     return np.asarray(density * transresistance**2 * band.flat)

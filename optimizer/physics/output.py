@@ -10,7 +10,7 @@ Floats = NDArray[np.float64]
 
 def offset_voltage(maximum: ArrayLike, drift: ArrayLike, distance: float) -> Floats:
     """Input offset [V] at `distance` [K] from 25 C: maximum at 25 C plus drift [V/K] times distance."""
-    return np.asarray(maximum + np.asarray(drift, dtype=float) * distance)
+    return np.add(maximum, np.asarray(drift, dtype=float) * distance)
 
 
 def dc_error(offset: Floats, bias: Floats, resistance: Floats, shunt: Floats) -> Floats:

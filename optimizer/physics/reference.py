@@ -11,7 +11,7 @@ Floats = NDArray[np.float64]
 def divided(high: ArrayLike, low: ArrayLike, top: ArrayLike, bottom: ArrayLike) -> Floats:
     """Voltage [V] of a divider, `top` [ohm] from `high` [V], `bottom` to `low`: V- + (V+ - V-) R2/(R1 + R2)."""
     span = np.subtract(high, low)
-    return np.asarray(low + span * (np.asarray(bottom, dtype=float) / np.add(top, bottom)))
+    return np.asarray(np.asarray(low, dtype=float) + span * (np.asarray(bottom, dtype=float) / np.add(top, bottom)))
 
 
 def parallel(top: ArrayLike, bottom: ArrayLike) -> Floats:

@@ -126,7 +126,7 @@ def cubic_roots(e1: Floats, e2: Floats, e3: Floats) -> tuple[Floats, Complexes, 
     half = np.sqrt((b * b - 4.0 * c).astype(np.complex128)) / 2.0
     first = -0.5 * b - half
     second = np.where(np.imag(half) == 0.0, c / first, -0.5 * b + half)
-    return r * e1, first * e1, second * e1
+    return r * e1, np.asarray(first * e1), np.asarray(second * e1)
 
 
 def _real_root(p: Floats, q: Floats) -> Floats:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -34,7 +36,7 @@ def plain_number(value: float) -> float | None:
 
 
 def _candidate(
-    space: Space, catalogs: Catalogs, choice: Choice, row: int, figures: dict[str, Floats], table: Floats
+    space: Space, catalogs: Catalogs, choice: Choice, row: int, figures: Mapping[str, Floats], table: Floats
 ) -> Candidate:
     o, d, x, r, c, low = (int(column[row]) for column in choice.columns())
     values = {name: plain_number(float(figures[name][row])) for name in FIGURES}

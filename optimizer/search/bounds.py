@@ -85,7 +85,7 @@ class Roof:
 def error_offset(v: View) -> Floats:
     """The part of the dc error [V] that does not grow with Rf, at least."""
     reference = np.where(v.divided, v.bias * v.source_low, 0.0) + np.where(v.buffered, v.vos, 0.0)
-    return v.vos + reference
+    return np.asarray(v.vos + reference)
 
 
 def error_slope(v: View) -> Floats:

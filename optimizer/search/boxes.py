@@ -27,7 +27,7 @@ class Boxes:
 
     def column(self, index: int) -> Ints:
         """One column of all boxes."""
-        return self.rows[:, index]
+        return np.asarray(self.rows[:, index])
 
     def take(self, rows: NDArray[np.int64] | NDArray[np.bool_]) -> Boxes:
         """The boxes at `rows`."""
@@ -60,7 +60,7 @@ class RangeMin:
         level = np.frexp((stop - start).astype(float))[1] - 1
         left = self.table[level, start]
         right = self.table[level, stop - (1 << level)]
-        return np.where(self.values[right] < self.values[left], right, left)
+        return np.asarray(np.where(self.values[right] < self.values[left], right, left))
 
     def least(self, start: Ints, stop: Ints) -> Floats:
         """The smallest of values[start:stop]."""

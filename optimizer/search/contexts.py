@@ -65,17 +65,17 @@ def build(request: Request, levels: Sequence[Level]) -> Contexts:
         if "divider" in space.references:
             rows.extend((wiring, v.top, v.bottom, v.cost) for v in levels if np.isfinite(v.cost))
     table = np.array(rows, dtype=float).reshape(-1, 4)
-    wiring, top, bottom, cost = table[:, 0].astype(int), table[:, 1], table[:, 2], table[:, 3]
+    wirings, top, bottom, cost = table[:, 0].astype(np.int64), table[:, 1], table[:, 2], table[:, 3]
     divided = np.isfinite(top)
     vref = np.where(divided, reference.divided(supply.high, supply.low, top, bottom), 0.0)
-    biased = wiring % 2 == 1
-    rising = wiring < 2
+    biased = np.asarray(wirings % 2 == 1)
+    rising = np.asarray(wirings < 2)
     bias = np.where(rising, vref - supply.low, supply.high - vref)
     bias = np.where(biased, bias, 0.0)
     keep = ~biased | (bias > 0.0)
-    group = np.cumsum(np.r_[0, (np.diff(wiring[keep]) != 0) | (np.diff(divided[keep].astype(int)) != 0)])
+    group = np.cumsum(np.r_[0, (np.diff(wirings[keep]) != 0) | (np.diff(divided[keep].astype(int)) != 0)])
     return Contexts(
-        wiring=wiring[keep],
+        wiring=wirings[keep],
         sign=np.where(rising, 1.0, -1.0)[keep],
         biased=biased[keep],
         divided=divided[keep],

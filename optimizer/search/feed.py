@@ -85,7 +85,7 @@ def _rising(pairs: Pairs) -> Iterator[Pairs]:
     """Chunks by rising floor, each larger than the one before."""
     begin, size = 0, FIRST
     while begin < pairs.size:
-        yield Pairs(*(c[begin : begin + size] for c in (pairs.opamp, pairs.diode, pairs.floor)))
+        yield pairs.take(np.arange(begin, min(begin + size, pairs.size)))
         begin, size = begin + size, min(2 * size, LARGEST)
 
 

@@ -1,15 +1,16 @@
 """How far a pair gets through the eligibility checks: the check reached by its best setting.
 
-Exact, without evaluating every setting. A few likely settings settle most pairs, bounds most of the
-others. For the rest: the dark output and the gain only get worse with Rf (save where the dark output may
-rest on the rail), the load does not depend on it, min_gain asks for small Cf. Stability, e1 e2 > e3, is convex in Cf at a given Rf and convex in Rf at
-a given Cf (both leading coefficients are positive), so over a rectangle of them it holds somewhere only
-if it holds at a corner.
+Exact, without evaluating every setting. A few likely settings settle most pairs, an imaginary best
+one most of the others. For the rest: the dark output and the gain only get worse with Rf (save where
+the dark output may rest on the rail), the load does not depend on it, min_gain asks for small Cf.
+Stability, e1 e2 > e3, is convex in Cf at a given Rf and convex in Rf at a given Cf (both leading
+coefficients are positive), so over a rectangle of them it holds somewhere only if it holds at a corner.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,7 +18,7 @@ from numpy.typing import NDArray
 from optimizer.figures import (
     CHECKS,
     Settings,
-    output_limits,
+    min_gain_fails,
     screen,
     steady_checks,
     steady_state,
@@ -41,8 +42,6 @@ _QUANTILES = (
     (0.1, 0.2),
 )
 """Where in the sorted resistors and capacitors the likely settings lie."""
-_DARK = CHECKS.index("dark_output")
-_MIN_GAIN = CHECKS.index("min_gain")
 _UNSTABLE = CHECKS.index("unstable")
 
 
@@ -113,24 +112,32 @@ def _likely_context(space: Space, opamp: Ints, diode: Ints, group: int) -> Ints:
 
 
 def _no_further(space: Space, opamp: Ints, diode: Ints, reach: Ints) -> Bools:
-    """Where bounds prove that no setting of a pair gets past the check it reached."""
-    x, o, d, bench = space.contexts, space.opamps, space.diodes, space.bench
-    free = ~x.buffered
-    widest = d.capacitance[:, free].max(axis=1, initial=0.0)
-    cin = widest[diode] + o.common[opamp] + o.differential[opamp] + bench.stray
-    least = space.capacitors.value.min() + space.resistors.parasitic.min()
-    with np.errstate(divide="ignore", invalid="ignore"):
-        gain = 1.0 + cin / least if least > 0.0 else np.full(opamp.size, np.inf)
-        decompensated = (gain < o.min_gain[opamp]) & ~o.buffers[opamp]
-    room = np.inf
-    for end in bench.ends:
-        lower, upper = output_limits(bench, end, o.output_low, o.output_high)
-        room = np.minimum(room, upper - lower - 2.0 * bench.guard)
-    smallest = space.resistors.value.min()
-    shunt = d.shunt[diode] if not x.biased.any() else 0.0
-    error = o.vos[opamp] * (1.0 + smallest * shunt) + o.bias[opamp] * smallest
-    dark = (2.0 * error * (1.0 - 1e-9) > np.asarray(room)[opamp]) & (not bench.dark_on_rail)
-    return np.asarray((decompensated & (reach == _MIN_GAIN)) | (dark & (reach == _DARK)))
+    """Where no setting of a pair can get past the check it reached: not even one, in any context, with
+
+    the smallest resistor, the smallest capacitor and the smallest parasitic together.
+    """
+    final = np.zeros(opamp.size, dtype=bool)
+    step = max(_BLOCK // space.contexts.size, 1)
+    for begin in range(0, opamp.size, step):
+        part = slice(begin, begin + step)
+        final[part] = _best_imaginable(space, opamp[part], diode[part]) <= reach[part]
+    return final
+
+
+def _best_imaginable(space: Space, opamp: Ints, diode: Ints) -> Ints:
+    """A check that no setting of each pair gets past (stability is taken for granted)."""
+    x, count = space.contexts, space.contexts.size
+    context = np.tile(np.arange(count), opamp.size)
+    none = np.zeros(context.size, dtype=np.int64)
+    choice = Choice(np.repeat(opamp, count), np.repeat(diode, count), context, none, none, none)
+    least = np.full(context.size, space.capacitors.value.min() + space.resistors.parasitic.min())
+    s = replace(settings(space, choice), rf=np.full(context.size, space.resistors.value.min()), cf=least)
+    with np.errstate(all="ignore"):
+        steady = steady_checks(space.bench, s, steady_state(s))
+        # an output that rests on the rail wants a large Rf, not a small one
+        steady["dark_output"] &= ~(space.bench.dark_on_rail & (x.sign > 0) & ~x.divided)[context]
+        checks = {**steady, "min_gain": min_gain_fails(space.bench, s)}
+        return _worst(own_code(space, choice), checks).reshape(-1, count).max(axis=1)
 
 
 def _scanned(space: Space, opamp: int, diode: int) -> int:
@@ -190,7 +197,7 @@ def _largest(space: Space, s: Settings) -> Ints:
     with np.errstate(divide="ignore"):
         allowed = np.where(s.min_gain > 1.0, cin / (s.min_gain - 1.0), np.inf) - parasitic
     place = np.searchsorted(value, allowed * (1.0 - 1e-9), "right") - 1
-    return order[np.clip(place, 0, value.size - 1)]
+    return np.asarray(order[np.clip(place, 0, value.size - 1)])
 
 
 def _choice(pair: tuple[int, int], context: Ints, resistor: Ints, capacitor: Ints) -> Choice:

@@ -194,7 +194,3 @@ def own_code(space: Space, c: Choice) -> Ints:
         space.opamp_verdicts.code[c.opamp, c.context], space.diode_verdicts.code[c.diode, c.context]
     )
 
-
-def show_rounded(value: float) -> float:
-    """One value to 9 significant digits, the float nearest to that decimal."""
-    return float(f"{float(rounded(np.float64(value))):.9g}")

@@ -167,7 +167,7 @@ def _phase_margin(v: View, left: Narrow, c: Coefficients) -> Floats:
     w_high = _crossover(v, (c.g_low, t_low, f_high), True)
     lag = np.arctan(v.dominant * w_low) + np.arctan(v.second * w_low)
     lag = lag + np.arctan(t_low / c.g_high * w_low) - np.arctan(f_high * w_high)
-    return 180.0 - np.degrees(lag)
+    return np.asarray(180.0 - np.degrees(lag))
 
 
 def _crossover(v: View, loop: tuple[Floats, Floats, Floats], above: bool) -> Floats:

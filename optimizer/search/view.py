@@ -35,7 +35,7 @@ class Amps:
     vref_ceiling: Floats
     dark_floor: Floats
     dark_ceiling: Floats
-    passes: Ints
+    passes: NDArray[np.int32]
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,7 +46,7 @@ class Index:
     resistors: Run
     capacitors: Run
     amps: Amps
-    diode_passes: Ints
+    diode_passes: NDArray[np.int32]
     rising: RangeMin
     falling: RangeMin
     bias_least: RangeMin
@@ -135,10 +135,10 @@ def lay_out(space: Space) -> Index:
     )
 
 
-def _passes(code: Ints) -> Ints:
+def _passes(code: NDArray[np.int8]) -> NDArray[np.int32]:
     counts = np.zeros((code.shape[0], code.shape[1] + 1), dtype=np.int32)
     np.cumsum(code == PASSES, axis=1, out=counts[:, 1:])
-    return np.asarray(counts)
+    return counts
 
 
 def _amps(space: Space) -> Amps:
