@@ -26,7 +26,9 @@ def responsivity(wavelength: ArrayLike, points: Sequence[tuple[float, float]]) -
     x, y = np.array(points, dtype=float).reshape(-1, 2).T
     if not x.size:
         return np.full(np.shape(wavelength), np.nan)
-    return np.asarray(np.interp(np.asarray(wavelength, dtype=float), x, y, left=np.nan, right=np.nan), dtype=np.float64)
+    return np.asarray(
+        np.interp(np.asarray(wavelength, dtype=float), x, y, left=np.nan, right=np.nan), dtype=np.float64
+    )
 
 
 def quantum_responsivity(efficiency: ArrayLike, wavelength: ArrayLike) -> Floats:

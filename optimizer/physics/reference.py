@@ -9,9 +9,12 @@ Floats = NDArray[np.float64]
 
 
 def divided(high: ArrayLike, low: ArrayLike, top: ArrayLike, bottom: ArrayLike) -> Floats:
-    """Voltage [V] of a divider, `top` [ohm] from `high` [V], `bottom` to `low`: V- + (V+ - V-) R2/(R1 + R2)."""
-    span = np.subtract(high, low)
-    return np.asarray(np.asarray(low, dtype=float) + span * (np.asarray(bottom, dtype=float) / np.add(top, bottom)))
+    """Voltage [V] of a divider between the rails: V- + (V+ - V-) R2/(R1 + R2).
+
+    `top` R1 [ohm] goes to `high` [V], `bottom` R2 to `low`; arrays broadcast.
+    """
+    share = np.asarray(bottom, dtype=float) / np.add(top, bottom)
+    return np.asarray(np.asarray(low, dtype=float) + np.subtract(high, low) * share)
 
 
 def parallel(top: ArrayLike, bottom: ArrayLike) -> Floats:

@@ -27,7 +27,8 @@ def candidates(space: Space, catalogs: Catalogs, choice: Choice) -> tuple[Candid
     with np.errstate(all="ignore"):
         figures = evaluate(space.bench, settings(space, choice)).figures
     table = margins.margins(figures, space.limits)
-    return tuple(_candidate(space, catalogs, choice, row, figures, table) for row in range(table.shape[0]))
+    graded = (figures, table)
+    return tuple(_candidate(space, catalogs, choice, row, graded) for row in range(table.shape[0]))
 
 
 def plain_number(value: float) -> float | None:
@@ -36,8 +37,9 @@ def plain_number(value: float) -> float | None:
 
 
 def _candidate(
-    space: Space, catalogs: Catalogs, choice: Choice, row: int, figures: Mapping[str, Floats], table: Floats
+    space: Space, catalogs: Catalogs, choice: Choice, row: int, graded: tuple[Mapping[str, Floats], Floats]
 ) -> Candidate:
+    figures, table = graded
     o, d, x, r, c, low = (int(column[row]) for column in choice.columns())
     values = {name: plain_number(float(figures[name][row])) for name in FIGURES}
     targets = tuple(

@@ -6,7 +6,8 @@ M^2 = 2 / ((1 + (W tau_diode)^2)(1 + (W tau_low_pass)^2)), a and b the op-amp's 
 c = ab/(a + b) >= e3/e2. Where |D(jw)| <= M at w = W:
 
   real part:       e2 W^2 <= 1 + M
-  imaginary part:  e1 <= M/W + c (1 + M)      (from e1 W <= M + e3 W^3 and e3 <= c e2)
+  imaginary part:  e1 <= M/W + c (1 + M)      (from e1 W <= M + e3 W^3 and e3 <= c e2), and closer
+                   e1 <= sqrt(M^2 - (1 - e2 W^2)^2)/W + e3 W^2 once e2 and e3 are bounded
   noise:           the integral of |1/D|^2 is 1/(4 (e1 - e3/e2)) without a low-pass; with one, of
                    |1/(D Plp)|^2 at least 1/(4 (E1 - E3/E2)) and of |s/(D Plp)|^2 at least
                    1/(4 (E1 E2 - E3)), E the coefficients of the product (continued fractions of a
@@ -19,7 +20,7 @@ The tests hold these to random settings: none may be excluded at its own margin.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -199,8 +200,9 @@ def coefficients(v: View, left: Narrow, ceiling: Roof) -> Coefficients:
     """Intervals of e1, e2, e3 over what is left, cut by the roof."""
     a, b = v.dominant, v.second
     g_low, g_high = 1.0 + left.rf_low * v.shunt_low, 1.0 + left.rf_high * v.shunt_high
-    feedback = (left.rf_low * left.cf_low, left.rf_high * left.cf_high)
-    total = (left.rf_low * (v.cin_low + left.cf_low), left.rf_high * (v.cin_high + left.cf_high))
+    slowest = np.minimum(left.rf_high * left.cf_high, ceiling.e1 * (v.gain + g_high) / v.gain)
+    feedback = (left.rf_low * left.cf_low, slowest)
+    total = (left.rf_low * (v.cin_low + left.cf_low), left.rf_high * v.cin_high + slowest)
 
     def e1(end: int, g: Floats) -> Floats:
         return (v.gain * feedback[end] + total[end] + g * (a + b)) / (v.gain + g)
@@ -208,16 +210,30 @@ def coefficients(v: View, left: Narrow, ceiling: Roof) -> Coefficients:
     def e2(end: int, g: Floats) -> Floats:
         return ((a + b) * total[end] + g * a * b) / (v.gain + g)
 
+    e2_low = np.minimum(e2(0, g_low), e2(0, g_high))
+    e2_high = np.minimum(np.maximum(e2(1, g_low), e2(1, g_high)), ceiling.e2)
+    e3_high = a * b * total[1] / (v.gain + g_low)
+    e1_high = np.minimum(np.maximum(e1(1, g_low), e1(1, g_high)), ceiling.e1)
     return Coefficients(
         e1_low=np.minimum(e1(0, g_low), e1(0, g_high)),
-        e1_high=np.minimum(np.maximum(e1(1, g_low), e1(1, g_high)), ceiling.e1),
-        e2_low=np.minimum(e2(0, g_low), e2(0, g_high)),
-        e2_high=np.minimum(np.maximum(e2(1, g_low), e2(1, g_high)), ceiling.e2),
+        e1_high=np.minimum(e1_high, _imaginary_roof(ceiling, (e2_low, e2_high), e3_high)),
+        e2_low=e2_low,
+        e2_high=e2_high,
         e3_low=a * b * total[0] / (v.gain + g_high),
-        e3_high=a * b * total[1] / (v.gain + g_low),
+        e3_high=e3_high,
         g_low=g_low,
         g_high=g_high,
     )
+
+
+def _imaginary_roof(ceiling: Roof, e2: tuple[Floats, Floats], e3_high: Floats) -> Floats:
+    """Upper bound on e1 from |D(jw)| <= M with what the real part, at least, takes of it."""
+    x = ceiling.w**2
+    real = np.maximum(np.maximum(1.0 - e2[1] * x, e2[0] * x - 1.0), 0.0)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        imaginary = np.sqrt(np.maximum(ceiling.m**2 - real**2, 0.0))
+        roof_ = imaginary / ceiling.w + e3_high * x
+    return np.where(ceiling.w > 0.0, roof_ * (1.0 + 1e-9), np.inf)
 
 
 @dataclass(frozen=True, slots=True)
@@ -277,3 +293,25 @@ def _flicker_floor(first: Floats, second: Floats, start: float) -> Floats:
     w1 = np.minimum(0.5 / first, 0.5 / np.sqrt(second))
     ratio = np.where(np.isfinite(w1) & (w1 > 0.0), w1 / (2.0 * np.pi * start), 1.0)
     return np.maximum(np.log(ratio), 0.0) / 1.4
+
+
+def needed(v: View, goals: Goals, level: Floats) -> Floats:
+    """The most noise [A^2], referred to the input, that the snr target at `level` leaves; inf for none."""
+    limit = goals.limits.get("snr")
+    if limit is None:
+        return np.full(v.gain.shape, np.inf)
+    factor = np.maximum(1.0 + level, 0.0)
+    with np.errstate(divide="ignore"):
+        return np.asarray((v.responsivity * goals.bench.weakest / factor) ** 2 * 10.0 ** (-limit / 10.0))
+
+
+def tightened(v: View, left: Narrow, c: Coefficients, floor: Floor, most: Floats) -> Narrow:
+    """`left` with Rf from below by its thermal noise, and both from above by the closer roof on e1."""
+    spare = most * (1.0 + 1e-9) - (floor.weak - floor.per_conductance / left.rf_high)
+    rf_low = np.where(spare > 0.0, floor.per_conductance / spare, np.inf) * (1.0 - 1e-9)
+    rf_low = np.maximum(left.rf_low, np.where(np.isfinite(most), rf_low, 0.0))
+    closer = Roof(c.e1_high, c.e2_high, c.e1_high, c.e1_high)
+    rf_high = np.minimum(left.rf_high, _rf_from_e1(v, closer, left.cf_low) * (1.0 + 1e-9))
+    cf_high = np.minimum(left.cf_high, _cf_from_e1(replace(v, rf_low=rf_low), closer) * (1.0 + 1e-9))
+    possible = left.possible & (rf_high >= rf_low) & (cf_high >= left.cf_low)
+    return Narrow(rf_low, rf_high, left.cf_low, cf_high, left.swing, possible)

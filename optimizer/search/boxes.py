@@ -36,10 +36,10 @@ class Boxes:
 
 @dataclass(frozen=True, slots=True)
 class RangeMin:
-    """Positions of the smallest value of any run of an array (sparse table)."""
+    """The smallest value of any range of an array, and where it is (sparse table by powers of two)."""
 
-    values: Floats
-    table: Ints
+    place: Ints
+    value: Floats
 
     @staticmethod
     def of(values: Floats) -> RangeMin:
@@ -50,21 +50,34 @@ class RangeMin:
             left, right = rows[-1][:-width], rows[-1][width:]
             rows.append(np.where(values[right] < values[left], right, left))
             width *= 2
-        table = np.zeros((len(rows), values.size), dtype=np.int64)
+        place = np.zeros((len(rows), values.size), dtype=np.int64)
         for level, row in enumerate(rows):
-            table[level, : row.size] = row
-        return RangeMin(values, table)
+            place[level, : row.size] = row
+        return RangeMin(place, values[place])
 
-    def position(self, start: Ints, stop: Ints) -> Ints:
-        """Where the smallest of values[start:stop] is; every range non-empty."""
+    def least(self, span: Span) -> Floats:
+        """The smallest value of each range."""
+        return np.minimum(self.value[span.level, span.start], self.value[span.level, span.last])
+
+    def position(self, span: Span) -> Ints:
+        """Where the smallest value of each range is (the first of equal ones)."""
+        left, right = (span.level, span.start), (span.level, span.last)
+        return np.where(self.value[right] < self.value[left], self.place[right], self.place[left])
+
+
+@dataclass(frozen=True, slots=True)
+class Span:
+    """Half-open ranges, none empty, as two overlapping ones of 2^`level` places each."""
+
+    level: Ints
+    start: Ints
+    last: Ints
+
+    @staticmethod
+    def of(start: Ints, stop: Ints) -> Span:
+        """The ranges from `start` to `stop`."""
         level = np.frexp((stop - start).astype(float))[1] - 1
-        left = self.table[level, start]
-        right = self.table[level, stop - (1 << level)]
-        return np.asarray(np.where(self.values[right] < self.values[left], right, left))
-
-    def least(self, start: Ints, stop: Ints) -> Floats:
-        """The smallest of values[start:stop]."""
-        return self.values[self.position(start, stop)]
+        return Span(level, start, stop - (1 << level))
 
 
 @dataclass(frozen=True, slots=True)

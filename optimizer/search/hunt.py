@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from optimizer.figures import rounded
 from optimizer.search import keys
 from optimizer.search.bounds import Goals
-from optimizer.search.boxes import Boxes, settings_of, single, whole
+from optimizer.search.boxes import Boxes, Span, settings_of, single, whole
 from optimizer.search.plain import Judged, judge
 from optimizer.search.roles import PASSES
 from optimizer.search.split import filled, halves, narrowed
@@ -214,8 +214,8 @@ def _key(hunt: Hunt, boxes: Boxes, limits: Bound, keep: Bools) -> Floats:
         index.capacitors.value[column(Boxes.C0)],
         column(Boxes.X0),
         column(Boxes.L0),
-        index.resistors.family.least(column(Boxes.R0), column(Boxes.R1)),
-        index.capacitors.family.least(column(Boxes.C0), column(Boxes.C1)),
+        index.resistors.family.least(Span.of(column(Boxes.R0), column(Boxes.R1))),
+        index.capacitors.family.least(Span.of(column(Boxes.C0), column(Boxes.C1))),
     ]
     return np.column_stack([first, cost, -vector, *ties])
 

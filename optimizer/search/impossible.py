@@ -15,7 +15,7 @@ from optimizer.search.space import Space
 
 def reasons(space: Space) -> tuple[str, ...]:
     """Why nothing can meet the request, whatever the parts; empty where nothing of the sort is known."""
-    return tuple([*_choices(space), *_window(space), *_converter(space), *_shot_noise(space)])
+    return (*_choices(space), *_window(space), *_converter(space), *_shot_noise(space))
 
 
 def _choices(space: Space) -> Iterator[str]:
@@ -57,16 +57,16 @@ def _window(space: Space) -> Iterator[str]:
         floor, ceiling, _ = bench.converter
         if floor < bench.low or ceiling > bench.high:
             yield (
-                f"the converter's range, {show(floor, 'voltage')} to {show(ceiling, 'voltage')}, is not inside "
-                f"the rails, {show(bench.low, 'voltage')} to {show(bench.high, 'voltage')}"
+                f"the converter's range, {show(floor, 'voltage')} to {show(ceiling, 'voltage')}, "
+                f"is not inside the rails, {show(bench.low, 'voltage')} to {show(bench.high, 'voltage')}"
             )
             return
     guards = bench.guard if bench.dark_on_rail else 2.0 * bench.guard
     width = _widest(space)
     if width <= guards:
         yield (
-            f"the guard of {show(bench.guard, 'voltage')} at both output limits leaves nothing of the output range "
-            f"of {show(max(width, 0.0), 'voltage')} at the worse end of the supply tolerance"
+            f"the guard of {show(bench.guard, 'voltage')} at both output limits leaves nothing of the "
+            f"output range of {show(max(width, 0.0), 'voltage')} at the worse end of the supply tolerance"
         )
 
 
@@ -84,8 +84,8 @@ def _converter(space: Space) -> Iterator[str]:
     snr = space.limits.get("snr")
     if snr is not None and best < snr - 1e-6:
         yield (
-            f"snr: the converter's step alone holds it to {show(float(best), 'level')} at the weakest light when "
-            f"the strongest fills its range; the target is {show(snr, 'level')}"
+            f"snr: the converter's step alone holds it to {show(float(best), 'level')} at the weakest "
+            f"light when the strongest fills its range; the target is {show(snr, 'level')}"
         )
     best = 20.0 * np.log10(usable / step)
     wide = space.limits.get("dynamic_range")
@@ -113,6 +113,7 @@ def _shot_noise(space: Space) -> Iterator[str]:
     best = 20.0 * np.log10(current) - 10.0 * np.log10(shot)
     if best < snr - 1e-6:
         yield (
-            f"snr: the shot noise of weakest light and background alone holds it to {show(float(best), 'level')} "
-            f"in the bandwidth asked for, with the most sensitive photodiode; the target is {show(snr, 'level')}"
+            "snr: the shot noise of weakest light and background alone holds it to "
+            f"{show(float(best), 'level')} in the bandwidth asked for, with the most sensitive photodiode; "
+            f"the target is {show(snr, 'level')}"
         )

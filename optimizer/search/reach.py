@@ -137,7 +137,7 @@ def _best_imaginable(space: Space, opamp: Ints, diode: Ints) -> Ints:
         # an output that rests on the rail wants a large Rf, not a small one
         steady["dark_output"] &= ~(space.bench.dark_on_rail & (x.sign > 0) & ~x.divided)[context]
         checks = {**steady, "min_gain": min_gain_fails(space.bench, s)}
-        return _worst(own_code(space, choice), checks).reshape(-1, count).max(axis=1)
+        return np.asarray(_worst(own_code(space, choice), checks).reshape(-1, count).max(axis=1))
 
 
 def _scanned(space: Space, opamp: int, diode: int) -> int:

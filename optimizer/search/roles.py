@@ -242,9 +242,7 @@ def _no_window(bench: Bench, arrays: OpAmps) -> Bools:
     return fails
 
 
-def judge_diodes(
-    parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: Diodes
-) -> Verdicts:
+def judge_diodes(parts: Parts, request: Request, contexts: Contexts, *, bench: Bench) -> Verdicts:
     """Which checks each photodiode fails by itself, in each context."""
     needed = list(ALWAYS["photodiodes"])
     light = request.light

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs
-from optimizer.figures import Bench, Settings, rounded
+from optimizer.figures import Bench, Settings
 from optimizer.physics.constants import ZERO_CELSIUS
 from optimizer.request_types import Request
 from optimizer.search import contexts as context_room
@@ -114,9 +114,7 @@ def build(request: Request, catalogs: Catalogs) -> Space:
         capacitors=capacitors,
         low_passes=low_passes,
         opamp_verdicts=roles.judge_opamps(catalogs.opamps, request, contexts, bench=bench, arrays=opamps),
-        diode_verdicts=roles.judge_diodes(
-            catalogs.photodiodes, request, contexts, bench=bench, arrays=diodes
-        ),
+        diode_verdicts=roles.judge_diodes(catalogs.photodiodes, request, contexts, bench=bench),
         order_opamps=_ranks(catalogs.opamps.text["part"], catalogs.opamps.text["maker"]),
         order_diodes=_ranks(catalogs.photodiodes.text["part"], catalogs.photodiodes.text["maker"]),
         combinations=combinations,
@@ -193,4 +191,3 @@ def own_code(space: Space, c: Choice) -> Ints:
     return np.minimum(
         space.opamp_verdicts.code[c.opamp, c.context], space.diode_verdicts.code[c.diode, c.context]
     )
-

@@ -72,12 +72,12 @@ def _widths(index: Index, boxes: Boxes) -> Floats:
     contexts = space.contexts
     span = space.bench.high - space.bench.low
     several = contexts.group[x0] != contexts.group[x1]
-    context = np.where(several, _MUCH, 2.0 * np.abs(contexts.vref[x1] - contexts.vref[x0]) / span + 1e-6)
+    context = np.where(several, _MUCH, np.abs(contexts.vref[x1] - contexts.vref[x0]) / span + 1e-6)
     resistors = index.resistors.value
     r_low, r_high = resistors[column(Boxes.R0)], resistors[column(Boxes.R1) - 1]
     capacitors = index.capacitors.value
     c_low, c_high = capacitors[column(Boxes.C0)], capacitors[column(Boxes.C1) - 1]
-    node = space.diodes.capacitance[column(Boxes.DIODE), x0] * 0.05 + 1e-13
+    node = space.diodes.capacitance[column(Boxes.DIODE), x0] * 0.3 + 1e-13
     several_lags = np.where(column(Boxes.L1) - column(Boxes.L0) > 1, _MUCH / 2.0, 0.0)
     return np.column_stack(
         [

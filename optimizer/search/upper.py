@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -19,8 +20,10 @@ from optimizer.search.bounds import (
     error_offset,
     error_slope,
     narrow,
+    needed,
     noise_floor,
     roof,
+    tightened,
 )
 from optimizer.search.view import View
 
@@ -51,11 +54,14 @@ def bound(v: View, goals: Goals, level: Floats) -> Bound:
     """Bounds over every setting of each box whose smallest margin is at least its `level`."""
     loose = level - SLACK * (1.0 + np.abs(level))
     left = narrow(v, goals, loose)
-    c = coefficients(v, left, roof(v, goals, loose))
+    ceiling = roof(v, goals, loose)
+    c = coefficients(v, left, ceiling)
     with np.errstate(all="ignore"):
+        left = tightened(v, left, c, noise_floor(v, left, c, goals.bench), needed(v, goals, loose))
+        c = coefficients(v, left, ceiling)
         floor = noise_floor(v, left, c, goals.bench)
         snr = _decibels(v.responsivity * goals.bench.weakest, floor.weak)
-        columns = [_ceiling(name, v, (left, c, floor), goals, (loose, snr)) for name in goals.limits]
+        columns = _ceilings(v, (left, c, floor), goals, level=loose, snr=snr)
     cost, current = rounded(v.cost), rounded(v.supply_current)
     exact = {"cost": cost, "supply_current": current}
     table = np.empty((v.gain.size, len(columns)))
@@ -77,28 +83,31 @@ def _decibels(signal: Floats, square: Floats) -> Floats:
 _State = tuple[Narrow, Coefficients, Floor]
 
 
-def _ceiling(name: str, v: View, state: _State, goals: Goals, known: tuple[Floats, Floats]) -> Floats:
-    """Upper bound on the margin of target `name`."""
+def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Floats) -> list[Floats]:
+    """Upper bound on the margin of each stated target, in their order; cost and current come later."""
     left, c, floor = state
-    limit = goals.limits[name]
-    if name == "bandwidth":
-        return _bandwidth(v, c, goals, known[0])
-    if name == "snr":
-        return margins.raw_margin("snr", known[1], limit)
-    if name == "dynamic_range":
-        return margins.raw_margin(name, _dynamic_range(v, left, floor, goals), limit)
-    if name == "full_scale":
-        return _full_scale(v, left, goals) / limit - 1.0
-    if name == "phase_margin":
-        return _phase_margin(v, left, c) / margins.PHASE_SCALE - limit / margins.PHASE_SCALE
-    if name == "peaking":
-        return 1.0 - _peaking(c) / limit
-    if name == "slew":
-        return _slew(v, left, goals) / limit - 1.0
-    if name == "offset":
-        offset = error_offset(v) + error_slope(v) * left.rf_low + v.dark_low * _gain_low(v, left)
-        return limit / offset - 1.0
-    return np.full(v.gain.shape, np.inf)
+    limits = goals.limits
+    scale = margins.PHASE_SCALE
+    bounds: dict[str, Callable[[], Floats]] = {
+        "bandwidth": lambda: _bandwidth(v, c, goals, level),
+        "snr": lambda: margins.raw_margin("snr", snr, limits["snr"]),
+        "dynamic_range": lambda: margins.raw_margin(
+            "dynamic_range", _dynamic_range(v, left, floor, goals), limits["dynamic_range"]
+        ),
+        "full_scale": lambda: _full_scale(v, left, goals) / limits["full_scale"] - 1.0,
+        "phase_margin": lambda: _phase_margin(v, left, c) / scale - limits["phase_margin"] / scale,
+        "peaking": lambda: 1.0 - _peaking(c) / limits["peaking"],
+        "slew": lambda: _slew(v, left, goals) / limits["slew"] - 1.0,
+        "offset": lambda: limits["offset"] / _offset(v, left) - 1.0,
+        "supply_current": lambda: np.full(v.gain.shape, np.inf),
+        "cost": lambda: np.full(v.gain.shape, np.inf),
+    }
+    return [bounds[name]() for name in limits]
+
+
+def _offset(v: View, left: Narrow) -> Floats:
+    """Offset [V] at least."""
+    return error_offset(v) + error_slope(v) * left.rf_low + v.dark_low * _gain_low(v, left)
 
 
 def _gain_low(v: View, left: Narrow) -> Floats:

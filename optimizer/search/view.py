@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.figures import output_limits
-from optimizer.search.boxes import Boxes, RangeMin, Run, run_of
+from optimizer.search.boxes import Boxes, RangeMin, Run, Span, run_of
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Space, total_cost
 
@@ -172,6 +172,7 @@ def view(index: Index, boxes: Boxes) -> View:
     x0, x1 = boxes.column(Boxes.X0), boxes.column(Boxes.X1)
     r0, r1 = boxes.column(Boxes.R0), boxes.column(Boxes.R1)
     c0, c1 = boxes.column(Boxes.C0), boxes.column(Boxes.C1)
+    x, r, c = Span.of(x0, x1), Span.of(r0, r1), Span.of(c0, c1)
     counts = index.counts[:, x1] - index.counts[:, x0]
     size = x1 - x0
     some = counts > 0
@@ -188,13 +189,13 @@ def view(index: Index, boxes: Boxes) -> View:
     possible = (amps.passes[o, x1] > amps.passes[o, x0]) & (
         index.diode_passes[d, x1] > index.diode_passes[d, x0]
     )
-    rise, fall = index.rising.least(x0, x1), index.falling.least(x0, x1)
+    rise, fall = index.rising.least(x), index.falling.least(x)
     prices = (
         space.diodes.price[d],
         np.where(extra, two, mixed),
-        index.resistors.price.least(r0, r1),
-        index.capacitors.price.least(c0, c1),
-        index.cost.least(x0, x1),
+        index.resistors.price.least(r),
+        index.capacitors.price.least(c),
+        index.cost.least(x),
     )
     return View(
         possible=possible,
@@ -219,8 +220,8 @@ def view(index: Index, boxes: Boxes) -> View:
         dark_high=np.where(some[BIASED], dark, 0.0),
         shunt_low=np.where(some[BIASED], 0.0, shunt),
         shunt_high=np.where(unbiased, shunt, 0.0),
-        cin_low=capacitance[d, index.bias_most.position(x0, x1)] + amps.node[o],
-        cin_high=capacitance[d, index.bias_least.position(x0, x1)] + amps.node[o],
+        cin_low=capacitance[d, index.bias_most.position(x)] + amps.node[o],
+        cin_high=capacitance[d, index.bias_least.position(x)] + amps.node[o],
         reference_node=amps.reference_node[o],
         rises=some[RISING],
         falls=counts[RISING] < size,
@@ -229,16 +230,16 @@ def view(index: Index, boxes: Boxes) -> View:
         divided=counts[DIVIDED] == size,
         buffered=buffered,
         on_rail=some[ON_RAIL],
-        source_low=index.source.least(x0, x1),
+        source_low=index.source.least(x),
         rf_low=index.resistors.value[r0],
         rf_high=index.resistors.value[r1 - 1],
-        cf_low=index.capacitors.value[c0] + index.resistors.parasitic.least(r0, r1),
-        cf_high=index.capacitors.value[c1 - 1] - index.resistors.surplus.least(r0, r1),
+        cf_low=index.capacitors.value[c0] + index.resistors.parasitic.least(r),
+        cf_high=index.capacitors.value[c1 - 1] - index.resistors.surplus.least(r),
         lag_low=space.low_passes[boxes.column(Boxes.L1) - 1],
         lag_high=space.low_passes[boxes.column(Boxes.L0)],
         min_gain=space.opamps.min_gain[o],
         buffers=space.opamps.buffers[o],
         slew_rate=space.opamps.slew_rate[o],
-        supply_current=np.where(extra, 2.0, 1.0) * space.opamps.cool[o] + index.current.least(x0, x1),
+        supply_current=np.where(extra, 2.0, 1.0) * space.opamps.cool[o] + index.current.least(x),
         cost=total_cost(prices),
     )

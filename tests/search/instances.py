@@ -140,9 +140,7 @@ def sampled(rng: np.random.Generator, space: Space, count: int) -> Choice:
     )
 
 
-def with_targets(
-    rng: np.random.Generator, request: Request, catalogs: Catalogs, *, keep: float
-) -> Request:
+def with_targets(rng: np.random.Generator, request: Request, catalogs: Catalogs, *, keep: float) -> Request:
     """`request` with targets at and around the figures of one random eligible setting.
 
     Each is stated with probability `keep`; most are eased a little, some are made harder.
@@ -161,9 +159,30 @@ def with_targets(
     return replace(request, targets=_around(rng, figures, keep))
 
 
+AROUND = (
+    "bandwidth",
+    "snr",
+    "dynamic_range",
+    "phase_margin",
+    "peaking",
+    "offset",
+    "supply_current",
+    "cost",
+)
+
+
 def _around(rng: np.random.Generator, figures: Mapping[str, NDArray[np.float64]], keep: float) -> Targets:
     stated: dict[str, float] = {}
-    for name in ("bandwidth", "snr", "dynamic_range", "phase_margin", "peaking", "offset", "supply_current", "cost"):
+    for name in (
+        "bandwidth",
+        "snr",
+        "dynamic_range",
+        "phase_margin",
+        "peaking",
+        "offset",
+        "supply_current",
+        "cost",
+    ):
         value = float(figures[name][0])
         if rng.random() > keep or not np.isfinite(value):
             continue

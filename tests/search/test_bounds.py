@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
-from functools import lru_cache
+from functools import cache
 
 import numpy as np
 import pytest
@@ -33,7 +33,7 @@ SEEDS = range(12)
 COUNT = 40_000
 
 
-@lru_cache(maxsize=None)
+@cache
 def eligible(seed: int) -> tuple[Index, Judged] | None:
     """Eligible random settings of one full space, targets near the figures of one of them."""
     rng = np.random.default_rng(seed)
