@@ -335,7 +335,7 @@ def steady_checks(bench: Bench, s: Settings, state: tuple[Floats, Floats]) -> di
 def min_gain_fails(bench: Bench, s: Settings) -> Bools:
     """Where the op-amp works below the noise gain at which it is stable, or cannot buffer its reference."""
     with np.errstate(divide="ignore", invalid="ignore"):
-        small = 1.0 + input_capacitance(bench, s) / s.cf < s.min_gain
+        small = 1.0 + rounded(input_capacitance(bench, s)) / s.cf < s.min_gain
     return np.asarray(small | (s.buffered & ~s.buffers))
 
 
@@ -346,9 +346,12 @@ def steady_state(s: Settings) -> tuple[Floats, Floats]:
 
 
 def dark_output_fails(bench: Bench, s: Settings, state: tuple[Floats, Floats]) -> Bools:
-    """Where the output without light is not the guard voltage inside both limits at a tolerance end."""
-    transresistance, offset = state
-    error = dc_error(s)
+    """Where the output without light is not the guard voltage inside both limits at a tolerance end.
+
+    `state`: transresistance [ohm] and offset [V]; they and the error are compared as rounded figures.
+    """
+    transresistance, offset = (rounded(value) for value in state)
+    error = rounded(dc_error(s))
     leaning = transresistance * s.responsivity * bench.weakest - error
     on_rail = (s.sign > 0.0) & ~s.divided if bench.dark_on_rail and bench.low == 0.0 else np.False_
     fails = np.zeros(np.shape(transresistance), dtype=bool)

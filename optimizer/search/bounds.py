@@ -35,6 +35,9 @@ Bools = NDArray[np.bool_]
 SLACK = 1e-7
 """How far margins are loosened against rounding: figures carry 9 digits, margins 1e-9."""
 
+ROUNDING = 2e-8
+"""Relative slack where a check compares figures rounded to 9 digits."""
+
 ROOT2 = float(np.sqrt(2.0))
 
 
@@ -96,7 +99,7 @@ def error_slope(v: View) -> Floats:
 
 def swing(v: View, bench: Bench, rf_low: Floats) -> Floats:
     """The largest swing [V] that any context of the box leaves for light, at the worse tolerance end."""
-    error = (error_offset(v) + error_slope(v) * rf_low) * (1.0 - 1e-9)
+    error = (error_offset(v) + error_slope(v) * rf_low) * (1.0 - ROUNDING)
     top, bottom = bench.ends[1], bench.ends[0]
     floor = np.maximum(v.vref_floor, np.where(v.on_rail, -np.inf, v.dark_floor + error / top))
     ceiling = np.minimum(v.vref_ceiling, np.where(v.on_rail, np.inf, v.dark_ceiling - error / top))
@@ -161,7 +164,7 @@ def narrow(v: View, goals: Goals, level: Floats) -> Narrow:
         decompensated = v.min_gain > 1.0
         cf_high = np.where(decompensated, np.minimum(cf_high, v.cin_high / (v.min_gain - 1.0)), cf_high)
     possible = v.possible & ~(v.buffered & ~v.buffers) & ((room >= 0.0) | v.on_rail)
-    loose = 1.0 + 1e-9
+    loose = 1.0 + ROUNDING
     rf_high, cf_high = rf_high * loose, cf_high * loose
     possible = possible & (rf_high >= v.rf_low) & (cf_high >= cf_low)
     return Narrow(v.rf_low, rf_high, cf_low, cf_high, room, possible)

@@ -55,12 +55,11 @@ class Crew:
     def hunt(self, goals: Goals, rules: Rules, pairs: feed.Pairs, *, first_only: bool = False) -> Found:
         """The best `rules.show` pairs of `pairs`; with `first_only` any that meet will do."""
         if not pairs.size:
-            return nothing(len(goals.limits))
-        found = (
-            self._alone(goals, rules, pairs, first_only)
-            if self.workers < 2
-            else self._shared(goals, rules, pairs)
-        )
+            found = nothing(len(goals.limits))
+        elif self.workers < 2:
+            found = self._alone(goals, rules, pairs, first_only)
+        else:
+            found = self._shared(goals, rules, pairs)
         self.evaluated += found.evaluated
         self.met.append(found)
         self.current = None

@@ -196,8 +196,10 @@ def _largest(space: Space, s: Settings) -> Ints:
     cin = s.capacitance + s.common + s.differential + space.bench.stray
     with np.errstate(divide="ignore"):
         allowed = np.where(s.min_gain > 1.0, cin / (s.min_gain - 1.0), np.inf) - parasitic
-    place = np.searchsorted(value, allowed * (1.0 - 1e-9), "right") - 1
-    return np.asarray(order[np.clip(place, 0, value.size - 1)])
+    place = np.clip(np.searchsorted(value, allowed * (1.0 + 1e-7), "right") - 1, 0, value.size - 1)
+    # the check compares a rounded capacitance: at its very edge one step down is the largest
+    over = min_gain_fails(space.bench, replace(s, cf=value[place] + parasitic))
+    return np.asarray(order[np.maximum(place - over, 0)])
 
 
 def _choice(pair: tuple[int, int], context: Ints, resistor: Ints, capacitor: Ints) -> Choice:

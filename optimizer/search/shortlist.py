@@ -27,7 +27,10 @@ Report = Callable[[Progress], None]
 
 
 class Interrupted(LuxsiftError):
-    """The user stopped the search; `outcome` holds what it had by then, not proven."""
+    """The user stopped the search; `outcome` holds what it had by then.
+
+    It is proven when only near misses and counts were still missing.
+    """
 
     def __init__(self, outcome: Outcome) -> None:
         self.outcome = outcome
@@ -67,7 +70,7 @@ def shortlist(
     try:
         return replace(_searched(work), seconds=time.perf_counter() - begun)
     except KeyboardInterrupt:
-        outcome = _outcome(work, work.crew.so_far(), None, proven=False)
+        outcome = _outcome(work, work.crew.so_far(), None, finished=False)
         raise Interrupted(replace(outcome, seconds=time.perf_counter() - begun)) from None
 
 
@@ -91,20 +94,20 @@ def _searched(work: Work) -> Outcome:
     met = work.crew.hunt(work.goals, Rules(ranking.by, ranking.show, 0.0), every)
     lacking = ranking.show - met.choice.opamp.size
     if not lacking:
-        return _outcome(work, met, None, proven=True)
+        return _outcome(work, met, None, finished=True)
     taken = np.isin(
         _numbers(space, every.opamp, every.diode), _numbers(space, met.choice.opamp, met.choice.diode)
     )
     near = work.crew.hunt(work.goals, Rules("margin", lacking, -1.0), every.take(~taken))
     blocking = () if met.choice.opamp.size else _blocking(work, every, near)
-    return replace(_outcome(work, met, near, proven=True), blocking=blocking)
+    return replace(_outcome(work, met, near, finished=True), blocking=blocking)
 
 
 def _numbers(space: Space, opamp: Ints, diode: Ints) -> Ints:
     return opamp * space.diodes.price.size + diode
 
 
-def _outcome(work: Work, met: Found, near: Found | None, *, proven: bool) -> Outcome:
+def _outcome(work: Work, met: Found, near: Found | None, *, finished: bool) -> Outcome:
     space, request = work.space, work.space.request
     missed = met.choice.take(np.zeros(0, dtype=np.int64)) if near is None else near.choice
     full = near is None and met.choice.opamp.size == request.ranking.show
@@ -115,7 +118,7 @@ def _outcome(work: Work, met: Found, near: Found | None, *, proven: bool) -> Out
         float(met.primary[-1]) if full else None,
     )
     counts: Mapping[str, int] = {}
-    if proven:
+    if finished:
         counts = reasons.dropped(work.index, work.goals, by=request.ranking.by, shown=shown)
     return Outcome(
         candidates=assemble.candidates(space, work.catalogs, met.choice),
@@ -124,7 +127,7 @@ def _outcome(work: Work, met: Found, near: Found | None, *, proven: bool) -> Out
         pairs=work.catalogs.opamps.size * work.catalogs.photodiodes.size,
         evaluated=work.crew.evaluated,
         seconds=0.0,
-        proven=proven,
+        proven=bool(work.crew.met),
         dropped=counts,
     )
 

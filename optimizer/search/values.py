@@ -52,6 +52,8 @@ def family_values(parts: Parts, row: int) -> Floats:
     if parts.text["series"][row] == "list":
         return np.unique([value for value, _ in parts.points["values"][row]])
     low, high = parts.number["from"][row], parts.number["to"][row]
+    if not (parts.text["series"][row] and np.isfinite(low) and np.isfinite(high)):
+        return np.zeros(0)  # a blank leaves it unknown what the family offers
     return np.asarray(series_values(str(parts.text["series"][row]), float(low), float(high)), dtype=float)
 
 
