@@ -13,7 +13,7 @@ from optimizer.errors import InputError, LuxsiftError, MissingExtraError, Output
 
 if TYPE_CHECKING:
     from optimizer.record import Record
-    from optimizer.request_types import Request
+    from optimizer.request.types import Request
 
     __version__: str
 

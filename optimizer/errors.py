@@ -33,7 +33,7 @@ class Problem:
             place += f", {self.column}"
         found = "" if self.cell is None else f"found {self.cell!r}, "
         remedy = f" ({self.remedy})" if self.remedy else ""
-        return _printable(f"{place}: {found}{self.rule}{remedy}")
+        return printable(f"{place}: {found}{self.rule}{remedy}")
 
 
 class InputError(LuxsiftError):
@@ -65,6 +65,21 @@ def did_you_mean(word: str, known: Iterable[str]) -> str:
     return f"did you mean {near!r}?" if near else ""
 
 
-def _printable(text: str) -> str:
+def reason(error: Exception) -> str:
+    """Return why the system refused, in its own words without number and file name."""
+    return getattr(error, "strerror", None) or str(error)
+
+
+def clean(text: object) -> str:
+    """Return `text` on one line, spaces made single ones, so that no name drives the terminal."""
+    return printable(" ".join(str(text).split()))
+
+
+def shortened(text: str, most: int) -> str:
+    """Return `text` cut to `most` characters, with dots where something was cut."""
+    return text if len(text) <= most else f"{text[: most - 3]}..."
+
+
+def printable(text: str) -> str:
     """Escape what a terminal would obey rather than show: names and remedies quote the user's input."""
     return "".join(sign if sign.isprintable() else sign.encode("unicode_escape").decode() for sign in text)

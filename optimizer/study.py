@@ -11,11 +11,12 @@ from pathlib import Path
 from optimizer.catalog import ReadOptions, read_catalogs
 from optimizer.catalog.parts import Catalogs, Parts, Source
 from optimizer.errors import InputError, Problem, did_you_mean
-from optimizer.request import Draft, examine
-from optimizer.request_force import in_force
-from optimizer.request_reading import Place
-from optimizer.request_types import Request, Space
-from optimizer.request_values import CATALOG_CURRENCY
+from optimizer.request.draft import Draft, examine
+from optimizer.request.in_force import in_force
+from optimizer.request.types import Request, Space
+from optimizer.request.values import CATALOG_CURRENCY
+from optimizer.toml.place import Place
+from optimizer.vocabulary import NAMES
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,14 +101,8 @@ def _unknown(key: str, names: Iterable[str], known: set[str], place: Place) -> I
 
 def _part_names(catalogs: Catalogs) -> Iterator[str]:
     """Yield every part as its name alone and as maker/part; of resistors and capacitors, the family."""
-    roles = (
-        (catalogs.opamps, "part"),
-        (catalogs.photodiodes, "part"),
-        (catalogs.resistors, "family"),
-        (catalogs.capacitors, "family"),
-    )
-    for parts, column in roles:
-        names = parts.text[column].tolist()
+    for parts in (catalogs.opamps, catalogs.photodiodes, catalogs.resistors, catalogs.capacitors):
+        names = parts.text[NAMES[parts.role]].tolist()
         makers = parts.text["maker"].tolist() if "maker" in parts.text else [""] * len(names)
         for name, maker in zip(names, makers, strict=True):
             yield name

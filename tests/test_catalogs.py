@@ -17,8 +17,8 @@ import pytest
 from scipy.constants import c, e, h
 from scipy.stats import spearmanr
 
-from optimizer.quantities import COLUMNS, read_price, read_quantity
-from optimizer.request_types import ROLES
+from optimizer.quantities import read_price, read_quantity
+from optimizer.vocabulary import COLUMNS, ROLES
 from tests.benchmarks.synthetic import write_catalogs
 
 SHIPPED = Path(__file__).parents[1] / "catalogs"

@@ -13,6 +13,7 @@ import pytest
 from optimizer.errors import InputError
 from optimizer.request import read_request
 from optimizer.study import load
+from tests.request.made import MINIMAL
 
 CATALOGS = {
     "opamps": """\
@@ -28,14 +29,8 @@ MD 1,Maker C,can-2,2.00,800 nm:0.5 A/W; 900 nm:0.6 A/W,50 pF
     "capacitors": "family,maker,series,from,to,price\nclass 1,Maker D,E12,1 pF,1 nF,0.02\n",
 }
 
-REQUEST = """\
-[light]
-wavelength = "850 nm"
-weakest = "30 nW"
-strongest = "3 uW"
-[supply]
-high = "5 V"
-[catalogs]
+REQUEST = f"""\
+{MINIMAL}[catalogs]
 opamps = ["parts/opamps.csv"]
 photodiodes = ["parts/photodiodes.csv"]
 resistors = ["parts/resistors.csv"]

@@ -6,8 +6,8 @@ import math
 
 import pytest
 
-from optimizer.kinds import KINDS
 from optimizer.quantities import read_quantity
+from optimizer.quantities.kinds import KINDS
 from optimizer.request_types import ROLES, Targets
 from optimizer.vocabulary import COLUMNS, TARGETS, VOCABULARY, Column, figure_kind
 

@@ -11,11 +11,11 @@ from optimizer.catalog.checks import refuse_unordered
 from optimizer.catalog.parts import Points
 from optimizer.catalog.ranges import read_range_end
 from optimizer.catalog.source_map import tidy
-from optimizer.columns import NO_EFFECT, STATUSES, refuse_impossible
 from optimizer.errors import did_you_mean
 from optimizer.quantities import QuantityError, read_price, read_quantity
 from optimizer.series import SERIES
 from optimizer.vocabulary import Column
+from optimizer.vocabulary.allowed import NO_EFFECT, STATUSES, refuse_impossible
 
 Price = tuple[Points, tuple[str, str] | None]
 UNKNOWN = frozenset({"", "-", "N/A", "n/a"})

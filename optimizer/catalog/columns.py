@@ -27,10 +27,9 @@ from optimizer.catalog.source_map import SourceMap
 from optimizer.catalog.table import Table
 from optimizer.errors import Problem
 from optimizer.quantities import QuantityError
-from optimizer.vocabulary import COLUMNS
+from optimizer.vocabulary import COLUMNS, NAMES
 
 T = TypeVar("T")
-NAMES = {"opamps": "part", "photodiodes": "part", "resistors": "family", "capacitors": "family"}
 
 
 @dataclass(slots=True)

@@ -8,13 +8,12 @@ from collections.abc import Mapping
 import numpy as np
 from numpy.typing import NDArray
 
-from optimizer.catalog.columns import NAMES
 from optimizer.catalog.parts import Floats, Parts, Points
 from optimizer.catalog.rows import Rows
-from optimizer.columns import NO_EFFECT, SINGLE_VALUE, single_kind
 from optimizer.errors import Problem
 from optimizer.quantities import read_quantity
-from optimizer.vocabulary import COLUMNS, Column
+from optimizer.vocabulary import COLUMNS, NAMES, Column
+from optimizer.vocabulary.allowed import NO_EFFECT, SINGLE_VALUE, single_kind
 
 # Source: the SI Brochure, 9th edition (2019), exact value of the elementary charge [C]
 _ELEMENTARY_CHARGE = 1.602176634e-19

@@ -7,11 +7,11 @@ from collections import defaultdict
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
-from optimizer.catalog.columns import NAMES
 from optimizer.catalog.parts import LeftOut
 from optimizer.catalog.prices import unit_price
 from optimizer.catalog.rows import Rows
 from optimizer.errors import Problem
+from optimizer.vocabulary import NAMES
 
 
 @dataclass(slots=True)

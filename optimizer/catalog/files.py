@@ -2,36 +2,23 @@
 
 from __future__ import annotations
 
-import hashlib
 from pathlib import Path, PurePath
 
 from optimizer.catalog.headers import known_names, split_unit
 from optimizer.catalog.sheet import read_sheet
 from optimizer.catalog.source_map import SourceMap
 from optimizer.catalog.table import Table, read_table
-from optimizer.catalog.text import Bytes, decode
-from optimizer.errors import InputError, Problem, did_you_mean
+from optimizer.catalog.text import decode
+from optimizer.errors import did_you_mean
+from optimizer.input_file import InputFile, read_input
 
 
-def read_bytes(path: Path, file: str) -> Bytes:
-    """Return the file's bytes with their SHA-256; raises InputError where it cannot be read."""
-    try:
-        data = path.read_bytes()
-    except FileNotFoundError:
-        raise InputError(
-            [Problem(file, None, None, None, "there is no such file", _neighbour(path))]
-        ) from None
-    except IsADirectoryError:
-        raise InputError(
-            [Problem(file, None, None, None, "this is a folder, expected a catalog file")]
-        ) from None
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or str(error)
-        raise InputError([Problem(file, None, None, None, f"the file cannot be read: {reason}")]) from None
-    return Bytes(file, data, hashlib.sha256(data).hexdigest())
+def read_catalog_file(path: Path, file: str) -> InputFile:
+    """Read a file of the catalogs' folder; raises InputError where it cannot be read."""
+    return read_input(path, file, expected="a catalog file", hint=_neighbour)
 
 
-def cut(source: Bytes, roles: tuple[str, ...], source_map: SourceMap) -> Table:
+def cut(source: InputFile, roles: tuple[str, ...], source_map: SourceMap) -> Table:
     """Cut a catalog file for one of these roles into a Table; raises InputError, MissingExtraError."""
     name = PurePath(source.file).name
     if name.lower().endswith(".xlsx"):
@@ -41,9 +28,9 @@ def cut(source: Bytes, roles: tuple[str, ...], source_map: SourceMap) -> Table:
     return read_table(text, source.file, lambda header: header in known or split_unit(header)[0] in known)
 
 
-def _neighbour(path: Path) -> str:
+def _neighbour(folder: Path, wanted: str) -> str:
     try:
-        names = sorted(entry.name for entry in path.parent.iterdir() if entry.is_file())
+        names = sorted(entry.name for entry in folder.iterdir() if entry.is_file())
     except (OSError, ValueError):
         return "its folder does not exist either"
-    return did_you_mean(path.name, names)
+    return did_you_mean(wanted, names)

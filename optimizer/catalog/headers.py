@@ -12,10 +12,11 @@ from optimizer.catalog.cells import Style
 from optimizer.catalog.ledger import Stated
 from optimizer.catalog.source_map import ColumnMap, FileMap, SourceMap
 from optimizer.catalog.table import Table
-from optimizer.currencies import currency_code
 from optimizer.errors import Problem, did_you_mean
 from optimizer.quantities import KINDS, QuantityError, read_quantity
+from optimizer.quantities.currencies import currency_code
 from optimizer.vocabulary import COLUMNS, Column
+from optimizer.vocabulary.allowed import value_kind
 
 _WITH_UNIT = re.compile(r"([^(\[]*[^(\[ ]) ?[(\[] ?([^()\[\]]*[^()\[\] ]) ?[)\]]")
 _NEAR = 0.8
@@ -53,12 +54,6 @@ def known_names(roles: Sequence[str], file_map: FileMap) -> frozenset[str]:
     names = {name for role in roles for name in COLUMNS[role]}
     mapped = {spec.header for spec in file_map.columns.values() if spec.header}
     return frozenset(names | mapped | set(file_map.ignore))
-
-
-def value_kind(column: Column) -> str | None:
-    """Return the kind of a column's quantities (the second of pairs), None where it holds none."""
-    kind = column.kind.rsplit(":", maxsplit=1)[-1]
-    return kind if kind in KINDS else None
 
 
 def bind(table: Table, role: str, source_map: SourceMap) -> Bound:

@@ -10,19 +10,18 @@ from types import MappingProxyType
 
 import numpy as np
 
-from optimizer.catalog.columns import NAMES
 from optimizer.catalog.duplicates import groups, sort_out
-from optimizer.catalog.files import cut, read_bytes
-from optimizer.catalog.headers import split_unit, value_kind
+from optimizer.catalog.files import cut, read_catalog_file
+from optimizer.catalog.headers import split_unit
 from optimizer.catalog.ledger import settle
 from optimizer.catalog.parts import LeftOut
-from optimizer.catalog.reader import ROLES, FileResult, ReadOptions, Run
+from optimizer.catalog.reader import FileResult, ReadOptions, Run
 from optimizer.catalog.rows import Rows
 from optimizer.catalog.source_toml import read_source_map
-from optimizer.columns import single_kind
 from optimizer.errors import InputError, Problem
 from optimizer.quantities import show
-from optimizer.vocabulary import COLUMNS, Column
+from optimizer.vocabulary import COLUMNS, NAMES, ROLES, Column
+from optimizer.vocabulary.allowed import single_kind, value_kind
 
 # What every request needs to know of a part, and what some requests do (contract: "Unknown is unknown").
 _ALWAYS: Mapping[str, tuple[str, ...]] = MappingProxyType(
@@ -159,8 +158,8 @@ def _read(file: str, role: str) -> tuple[str, Run, FileResult | None]:
 def _likely_roles(file: str) -> list[str]:
     """Return the role that the file's name and its headers speak for; several where they tie."""
     path = Path(file)
-    source = read_bytes(path, file)
-    source_map = read_source_map(path, file, read_bytes)
+    source = read_catalog_file(path, file)
+    source_map = read_source_map(path, file)
     table = cut(source, ROLES, source_map)
     mapped = source_map.of(path.name).columns
     found = {split_unit(header)[0] for header in table.header} | set(mapped)

@@ -27,7 +27,7 @@ class Parts:
 
     `text`: column -> array of str ('' where blank). `number`: column -> array of float in SI,
     NaN = unknown. A stated `none` is the value that has no effect: second_pole, bias_doubling,
-    dark_doubling, shunt_resistance = inf; noise_corner, rise_time, offset_drift, dark_current = 0.
+    shunt_resistance = inf; noise_corner, rise_time, offset_drift, dark_current = 0.
     `points`: column -> one tuple of (x, y) a row, () = unknown; a single capacitance is ((0, C),);
     a single price is ((1, price),). `assumed`: column -> bool array, True where a blank was filled
     by [assume] or by the defaults of open_loop_gain, second_pole, current_noise.

@@ -9,7 +9,7 @@ from pathlib import Path
 from optimizer.catalog.columns import Reading, read_columns
 from optimizer.catalog.defaults import finish
 from optimizer.catalog.duplicates import sort_out
-from optimizer.catalog.files import cut, read_bytes
+from optimizer.catalog.files import cut, read_catalog_file
 from optimizer.catalog.headers import Bound, bind
 from optimizer.catalog.ledger import Stated, settle
 from optimizer.catalog.parts import Catalogs, LeftOut, Parts, Source
@@ -18,8 +18,7 @@ from optimizer.catalog.source_map import FileMap, SourceMap
 from optimizer.catalog.source_toml import read_source_map
 from optimizer.catalog.table import Table
 from optimizer.errors import InputError, Problem
-
-ROLES = ("opamps", "photodiodes", "resistors", "capacitors")
+from optimizer.vocabulary import ROLES
 
 
 @dataclass(frozen=True, slots=True)
@@ -113,7 +112,7 @@ class Run:
 
     def _file(self, role: str, written: str) -> FileResult | None:
         path = self.options.folder / written
-        source = read_bytes(path, written)
+        source = read_catalog_file(path, written)
         source_map = self._map(path, written)
         if source_map is None:
             return None
@@ -129,7 +128,7 @@ class Run:
         """Return the source.toml of the file's folder, read once a run; None where it is unreadable."""
         if path.parent not in self.maps:
             self.maps[path.parent] = None  # stays so where reading raises, so that it is said once
-            source_map = read_source_map(path, written, read_bytes)
+            source_map = read_source_map(path, written)
             self.problems += source_map.problems
             if source_map.currency:
                 self.stated.append(

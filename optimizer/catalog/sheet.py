@@ -8,13 +8,13 @@ from collections.abc import Iterable
 from itertools import islice
 
 from optimizer.catalog.table import Table, build_table, no_rows, sheet_record
-from optimizer.catalog.text import Bytes
 from optimizer.errors import InputError, MissingExtraError, Problem
+from optimizer.input_file import InputFile
 
 _MOST_ROWS = 1_048_576  # of one sheet, by the file format
 
 
-def read_sheet(source: Bytes) -> Table:
+def read_sheet(source: InputFile) -> Table:
     """Cut the first sheet into a Table; lines are its row numbers, and decimals have a point.
 
     Raises InputError where it is no workbook or has no rows, MissingExtraError without openpyxl.
@@ -27,7 +27,7 @@ def read_sheet(source: Bytes) -> Table:
     return build_table(source.file, header_line, header, records, delimiter=",")
 
 
-def _rows(source: Bytes) -> list[tuple[int, tuple[str, ...]]]:
+def _rows(source: InputFile) -> list[tuple[int, tuple[str, ...]]]:
     try:
         from openpyxl import load_workbook
     except ImportError:

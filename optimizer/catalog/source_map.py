@@ -5,10 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 
-from optimizer.catalog.text import Bytes
 from optimizer.errors import Problem
-
-KeyPath = tuple[str | int, ...]
+from optimizer.input_file import InputFile
+from optimizer.toml.lines import KeyPath
+from optimizer.toml.place import Place
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,16 +38,20 @@ class FileMap:
 class SourceMap:
     """One source.toml, or the defaults where there is none (`source` is None).
 
-    `lines` holds the line of each key, as far as it is known.
+    `place` finds the line of a key.
     """
 
-    file: str
-    lines: Mapping[KeyPath, int] = field(default_factory=dict)
-    source: Bytes | None = None
+    place: Place
+    source: InputFile | None = None
     currency: str | None = None
     encoding: str = "utf-8"
     files: Mapping[str, FileMap] = field(default_factory=dict)
     problems: tuple[Problem, ...] = ()
+
+    @property
+    def file(self) -> str:
+        """The name of the source.toml, beside that of the catalog as the request writes it."""
+        return self.place.file
 
     def of(self, name: str) -> FileMap:
         """Return what is said about the catalog file of this name."""
@@ -55,23 +59,7 @@ class SourceMap:
 
     def complaint(self, path: KeyPath, value: object, rule: str, remedy: str = "") -> Problem:
         """Return the problem of the key at this path; `value` is what was found (None: not shown)."""
-        cell = None if value is None else str(value)
-        return Problem(self.file, line_of(path, self.lines), dotted(path), cell, rule, remedy)
-
-
-def line_of(path: KeyPath, lines: Mapping[KeyPath, int]) -> int | None:
-    """Return the line of a key, or of the nearest table around it; None where nothing is known."""
-    known = (lines[path[:end]] for end in range(len(path), 0, -1) if path[:end] in lines)
-    return next(known, None)
-
-
-def dotted(path: KeyPath) -> str:
-    """Write a key path as TOML does.
-
-    >>> dotted(("file", "opamps.csv", "ignore"))
-    'file."opamps.csv".ignore'
-    """
-    return ".".join(str(key) if str(key).replace("_", "").isalnum() else f'"{key}"' for key in path)
+        return self.place.problem(path, None if value is None else str(value), rule, remedy)
 
 
 def tidy(text: str) -> str:

@@ -2,24 +2,27 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
 from pathlib import Path, PurePath
 from typing import Any
 
-from optimizer.catalog.source_map import ColumnMap, FileMap, KeyPath, SourceMap, tidy
-from optimizer.catalog.text import Bytes, is_text_encoding
-from optimizer.columns import STATUSES
-from optimizer.currencies import CURRENCIES
+from optimizer.catalog.files import read_catalog_file
+from optimizer.catalog.source_map import ColumnMap, FileMap, SourceMap, tidy
+from optimizer.catalog.text import is_text_encoding
 from optimizer.errors import Problem, did_you_mean
-from optimizer.request_lines import key_lines
-from optimizer.request_text import decode, parse
+from optimizer.input_file import InputFile
+from optimizer.quantities.currencies import CURRENCIES
+from optimizer.toml.lines import KeyPath, key_lines
+from optimizer.toml.place import Place
+from optimizer.toml.text import decode, parse
 from optimizer.vocabulary import COLUMNS
+from optimizer.vocabulary.allowed import STATUSES
 
 NAME = "source.toml"
 
 
-def read_source_map(path: Path, written: str, read: Callable[[Path, str], Bytes]) -> SourceMap:
+def read_source_map(path: Path, written: str) -> SourceMap:
     """Read the source.toml beside the catalog at `path`, which the request writes as `written`.
 
     What is wrong in it is in `problems`; raises InputError where it cannot be read at all.
@@ -27,11 +30,11 @@ def read_source_map(path: Path, written: str, read: Callable[[Path, str], Bytes]
     beside = path.parent / NAME
     file = PurePath(written).with_name(NAME).as_posix()
     if not beside.exists():
-        return SourceMap(file)
-    source = read(beside, file)
+        return SourceMap(Place(file))
+    source = read_catalog_file(beside, file)
     text = decode(source.data, file)
     data = parse(text, file)
-    walker = _Walker(SourceMap(file, key_lines(text)), beside.parent)
+    walker = _Walker(SourceMap(Place(file, key_lines(text))), beside.parent)
     return walker.whole(data, source)
 
 
@@ -43,7 +46,7 @@ class _Walker:
     folder: Path
     problems: list[Problem] = field(default_factory=list)
 
-    def whole(self, data: Mapping[str, Any], source: Bytes) -> SourceMap:
+    def whole(self, data: Mapping[str, Any], source: InputFile) -> SourceMap:
         self._known((), data, ("currency", "encoding", "file"))
         currency = self._text(("currency",), data.get("currency"))
         if currency is not None and currency not in CURRENCIES:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from pathlib import PurePath
@@ -12,6 +13,7 @@ from optimizer.errors import InputError, Problem
 
 _DELIMITERS = (",", ";", "\t")
 _BLANK = ' "\r\n'
+_DECIMAL_COMMA = re.compile(r"[0-9],[0-9]|^[+-]?,[0-9]").search
 _DELIMITER_NAMES = {",": "comma", ";": "semicolon", "\t": "tab"}
 
 
@@ -20,7 +22,8 @@ class Table:
     """One catalog file, cut into cells.
 
     `rows` hold a cell for each header, spaces tidied; `lines` the line (1 = first) that each row
-    starts on. `broken` are the rows that could not be cut so, one Problem each.
+    starts on. `broken` are the rows that could not be cut so, one Problem each. `decimal_comma`: the
+    file is cut at semicolons, and some cell has a comma between digits.
     """
 
     file: str
@@ -81,7 +84,8 @@ def build_table(
     good = [record for record, fault in faults if not fault]
     rows = tuple(record.cells for record in good)
     lines = tuple(record.line for record in good)
-    return Table(file, header, header_line, rows, lines, tuple(broken), decimal_comma=delimiter == ";")
+    comma = delimiter == ";" and any(_DECIMAL_COMMA(cell) for cells in rows for cell in cells if "," in cell)
+    return Table(file, header, header_line, rows, lines, tuple(broken), decimal_comma=comma)
 
 
 def sheet_record(line: int, cells: tuple[str, ...]) -> _Record:

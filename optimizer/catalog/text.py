@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import codecs
 import re
-from dataclasses import dataclass
 
 from optimizer.errors import InputError, Problem
+from optimizer.input_file import InputFile
 
 _MARKS = (  # the longer ones first: the mark of UTF-32 begins as that of UTF-16 does
     (codecs.BOM_UTF32_LE, "utf-32"),
@@ -19,16 +19,7 @@ _LINE_END = re.compile(rb"\r\n|\r|\n")
 _INVISIBLE = ("\u200b", "\u2060", "\ufeff")
 
 
-@dataclass(frozen=True, slots=True)
-class Bytes:
-    """One input file as it lies on the disk; `file` is its name as the request writes it."""
-
-    file: str
-    data: bytes
-    sha256: str
-
-
-def decode(source: Bytes, encoding: str) -> str:
+def decode(source: InputFile, encoding: str) -> str:
     """Return the text in the stated encoding, without byte-order mark and invisible characters.
 
     Raises InputError that names the encoding met, or the line of the first stray byte or NUL.
@@ -64,7 +55,7 @@ def _is_codec(name: str) -> bool:
     return True
 
 
-def _refuse_other_mark(source: Bytes, encoding: str) -> None:
+def _refuse_other_mark(source: InputFile, encoding: str) -> None:
     met = next((name for mark, name in _MARKS if source.data.startswith(mark)), None)
     stated = codecs.lookup(encoding).name
     if met is None or stated.startswith(met):
@@ -74,7 +65,7 @@ def _refuse_other_mark(source: Bytes, encoding: str) -> None:
     raise InputError([Problem(source.file, 1, None, None, rule, remedy)])
 
 
-def _stray(source: Bytes, encoding: str, at: int) -> Problem:
+def _stray(source: InputFile, encoding: str, at: int) -> Problem:
     line = len(_LINE_END.findall(source.data, 0, at)) + 1
     byte = source.data[at : at + 1]
     rule = f"this byte is not {codecs.lookup(encoding).name.upper()} text"
@@ -86,7 +77,7 @@ def _stray(source: Bytes, encoding: str, at: int) -> Problem:
     return Problem(source.file, line, None, f"0x{byte.hex().upper()}", rule, remedy)
 
 
-def _nul(source: Bytes, text: str) -> Problem:
+def _nul(source: InputFile, text: str) -> Problem:
     line = len(_LINE_END.findall(text[: text.index("\x00")].encode("utf-8", "replace"))) + 1
     rule = "a NUL character, which no text has"
     remedy = 'for UTF-16 without a byte-order mark state encoding = "utf-16-le" in source.toml'

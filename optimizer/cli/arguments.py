@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import Any, NoReturn
 
 from optimizer.errors import InputError, Problem, did_you_mean
-from optimizer.request_types import RANKINGS
+from optimizer.request.types import RANKINGS
 
 COMMAND_LINE = "command line"
 SHORTLIST = ("--by", "--show", "--choose", "--save", "--csv", "--workers", "--quiet")

@@ -3,19 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 
-from optimizer.errors import InputError, LuxsiftError, Problem
+from optimizer.errors import InputError, LuxsiftError, Problem, clean, shortened
 
 ALIKE, MOST = 5, 60
+LONGEST_NAME, LONGEST_CELL, LONGEST_WORDS = 120, 60, 400
 
 
 def error_lines(error: LuxsiftError) -> list[str]:
     """The lines to print for `error`, free of control characters."""
     if not isinstance(error, InputError):
-        return [printable(f"luxsift: {error}")]
+        return [clean(f"luxsift: {error}")]
     many = len(error.problems)
     heading = "luxsift: 1 problem" if many == 1 else f"luxsift: {many:,} problems"
-    return [heading, *(printable(f"  {line}") for line in _shortened(error.problems))]
+    return [heading, *(f"  {line}" for line in _shortened(error.problems))]
 
 
 def _shortened(problems: Sequence[Problem]) -> Iterator[str]:
@@ -28,17 +30,22 @@ def _shortened(problems: Sequence[Problem]) -> Iterator[str]:
             rest = sum(len(group) for group in list(groups.values())[index:])
             yield f"... and {rest:,} more"
             return
-        yield from (str(problem) for problem in alike[:ALIKE])
+        yield from (str(_brief(problem)) for problem in alike[:ALIKE])
         shown += min(len(alike), ALIKE)
         if len(alike) > ALIKE:
-            yield f"... and {len(alike) - ALIKE:,} more like these{_place(alike[0])}"
+            yield f"... and {len(alike) - ALIKE:,} more like these in {_place(_brief(alike[0]))}"
 
 
 def _place(problem: Problem) -> str:
-    return f" in {problem.file}" + (f", {problem.column}" if problem.column else "")
+    return clean(f"{problem.file}, {problem.column}" if problem.column else problem.file)
 
 
-def printable(line: str) -> str:
-    """`line` on one line and free of control characters, so that no cell drives the terminal."""
-    flat = line.replace("\r", " ").replace("\n", " ").replace("\t", " ")
-    return "".join(char if char.isprintable() else "?" for char in flat)
+def _brief(problem: Problem) -> Problem:
+    """The problem with its long texts cut: a cell may hold a whole file where a quote is left open."""
+    return replace(
+        problem,
+        column=None if problem.column is None else shortened(problem.column, LONGEST_NAME),
+        cell=None if problem.cell is None else shortened(problem.cell, LONGEST_CELL),
+        rule=shortened(problem.rule, LONGEST_WORDS),
+        remedy=shortened(problem.remedy, LONGEST_WORDS),
+    )

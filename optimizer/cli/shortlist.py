@@ -11,10 +11,10 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from optimizer.cli.arguments import COMMAND_LINE, ShortlistOptions, shortlist_options
-from optimizer.cli.messages import printable
+from optimizer.cli.messages import LONGEST_WORDS
 from optimizer.cli.output import write, write_lines
 from optimizer.cli.progress import watch
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, OutputError, Problem, clean, shortened
 
 if TYPE_CHECKING:
     from optimizer.record import Record
@@ -146,10 +146,13 @@ def _tell_left_out(study: Study, options: ShortlistOptions) -> None:
     if options.quiet or not rows:
         return
     lines = [f"luxsift: left out of the catalogs as source.toml says: {several(len(rows), 'row')}"]
-    lines += [f"  {entry.file}, line {entry.row}: {entry.reason}" for entry in rows[:LISTED]]
+    lines += [
+        f"  {clean(entry.file)}, line {entry.row}: {shortened(clean(entry.reason), LONGEST_WORDS)}"
+        for entry in rows[:LISTED]
+    ]
     if len(rows) > LISTED:
         lines.append(f"  ... and {len(rows) - LISTED:,} more (luxsift inspect lists them)")
-    write(sys.stderr, "".join(f"{printable(line)}\n" for line in lines))
+    write(sys.stderr, "".join(f"{line}\n" for line in lines))
 
 
 def _tell_interrupted(study: Study, outcome: Outcome, last: Progress | None) -> None:

@@ -12,7 +12,7 @@ from shlex import quote
 
 from optimizer.cli.arguments import COMMAND_LINE
 from optimizer.cli.output import write
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, OutputError, Problem, reason
 
 STARTER = ("request.toml", "source.toml", "opamps.csv", "photodiodes.csv", "resistors.csv", "capacitors.csv")
 
@@ -54,7 +54,6 @@ def _write_all(folder: Path, contents: Mapping[str, bytes]) -> None:
     except (OSError, ValueError) as error:
         for path in written:
             path.unlink(missing_ok=True)
-        reason = getattr(error, "strerror", None) or str(error)
         raise OutputError(
-            f"{folder}: cannot write the starter files: {reason}; nothing was written"
+            f"{folder}: cannot write the starter files: {reason(error)}; nothing was written"
         ) from error

@@ -24,7 +24,7 @@ def build(study: Study, outcome: Outcome, chosen: int | None = 1) -> Record:
     `chosen` is the rank of the row to mark; without candidates nothing is chosen.
     Raises InputError where `chosen` is no rank of a candidate.
     """
-    from optimizer.request_force import in_force
+    from optimizer.request.in_force import in_force
 
     shown = len(outcome.candidates)
     if shown and chosen is not None and not 1 <= chosen <= shown:
@@ -80,8 +80,10 @@ def plain(value: Any) -> Any:
 
 
 def _currency(study: Study) -> str | None:
+    from optimizer.request.values import CATALOG_CURRENCY
+
     stated: str = study.request.currency
-    return study.catalogs.currency or (None if stated == "catalog currency" else stated)
+    return study.catalogs.currency or (None if stated == CATALOG_CURRENCY else stated)
 
 
 def _left_out(study: Study) -> list[dict[str, Any]]:

@@ -10,7 +10,7 @@ from collections.abc import Mapping
 from pathlib import Path
 from typing import Any, NoReturn
 
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, OutputError, Problem, reason
 from optimizer.record.check import document_problems
 from optimizer.record.model import Record
 
@@ -39,7 +39,7 @@ def write_text(path: str | Path, text: str) -> None:
             temporary.chmod(stat.S_IMODE(target.stat().st_mode))
         os.replace(temporary, target)
     except OSError as error:
-        raise OutputError(f"{path}: cannot be written: {_reason(error)}; nothing was changed") from error
+        raise OutputError(f"{path}: cannot be written: {reason(error)}; nothing was changed") from error
     finally:
         temporary.unlink(missing_ok=True)
 
@@ -57,7 +57,7 @@ def check_writable(path: str | Path) -> None:
         if target.exists() and not os.access(target, os.W_OK):
             raise OutputError(f"{path}: cannot be written: the file is read-only")
     except (OSError, ValueError) as error:
-        raise OutputError(f"{path}: cannot be written: {_reason(error)}") from error
+        raise OutputError(f"{path}: cannot be written: {reason(error)}") from error
 
 
 def read(path: str | Path) -> Record:
@@ -86,7 +86,7 @@ def _text(path: str | Path) -> str:
     except UnicodeDecodeError as error:
         _refuse(path, f"expected a record in UTF-8; byte {error.start} is not")
     except (OSError, ValueError) as error:
-        _refuse(path, f"the record cannot be read: {_reason(error)}")
+        _refuse(path, f"the record cannot be read: {reason(error)}")
 
 
 def _parse(path: str | Path, text: str) -> Any:
@@ -105,7 +105,3 @@ def _no_constant(name: str) -> NoReturn:
 
 def _refuse(path: str | Path, rule: str) -> NoReturn:
     raise InputError([Problem(str(path), None, None, None, rule)]) from None
-
-
-def _reason(error: Exception) -> str:
-    return getattr(error, "strerror", None) or str(error)

@@ -10,7 +10,7 @@ from optimizer.quantities import show
 from optimizer.vocabulary import VOCABULARY
 
 if TYPE_CHECKING:
-    from optimizer.record.model import Record
+    import pandas as pd
 
 SHOWN = ("bandwidth", "snr", "dynamic_range", "supply_current", "cost")
 KINDS = {
@@ -30,12 +30,8 @@ CHOICE = (
 )
 
 
-def notebook(record: Record) -> str:
-    """An HTML table of the candidates, or of the near misses where nothing meets the request."""
-    met = bool(record.candidates)
-    table = record.table if met else record.near_miss_table
-    what = "meet the request" if met else "near misses: nothing meets the request"
-    caption = f"{record.data['name']}: {len(table)} {what}"
+def notebook(table: pd.DataFrame, caption: str) -> str:
+    """A table of `Record.table`'s columns as HTML under its caption, the columns that fit a page."""
     names = [*CHOICE, *SHOWN, "limiting", "margin"]
     body = table[names].to_html(index=False, formatters=_formatters(), escape=True, na_rep="-")
     return f"<p>{escape(caption)}</p>\n{body}"

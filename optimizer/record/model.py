@@ -45,4 +45,7 @@ class Record:
     def _repr_html_(self) -> str:
         from optimizer.record.html import notebook
 
-        return notebook(self)
+        if self.candidates:
+            return notebook(self.table, f"{self.data['name']}: {len(self.candidates)} meet the request")
+        what = "near misses: nothing meets the request"
+        return notebook(self.near_miss_table, f"{self.data['name']}: {len(self.near_misses)} {what}")

@@ -10,41 +10,28 @@ from optimizer.vocabulary import TARGETS, VOCABULARY
 if TYPE_CHECKING:
     import pandas as pd
 
-TEXT = (
-    "photodiode",
-    "opamp",
-    "photodiode_maker",
-    "opamp_maker",
-    "wiring",
-    "reference",
-    "resistor_family",
-    "capacitor_family",
-    "limiting",
-    "missed",
-    "assumed",
-    "linear_model",
-)
-CHOICE = (
-    "rank",
-    "photodiode",
-    "opamp",
-    "photodiode_maker",
-    "opamp_maker",
-    "wiring",
-    "reference",
-    "reference_voltage",
-    "divider_top",
-    "divider_bottom",
-    "buffered",
-    "extra_package",
-    "feedback_resistance",
-    "resistor_family",
-    "feedback_capacitance",
-    "capacitor_family",
-    "low_pass",
-)
-VERDICT = ("limiting", "margin")
-NOTES = ("missed", "assumed", "linear_model")
+# What stands in front of the figures and behind them: column -> its type in a DataFrame.
+CHOICE: Mapping[str, str] = {
+    "rank": "int64",
+    "photodiode": "object",
+    "opamp": "object",
+    "photodiode_maker": "object",
+    "opamp_maker": "object",
+    "wiring": "object",
+    "reference": "object",
+    "reference_voltage": "float64",
+    "divider_top": "float64",
+    "divider_bottom": "float64",
+    "buffered": "bool",
+    "extra_package": "bool",
+    "feedback_resistance": "float64",
+    "resistor_family": "object",
+    "feedback_capacitance": "float64",
+    "capacitor_family": "object",
+    "low_pass": "float64",
+}
+VERDICT: Mapping[str, str] = {"limiting": "object", "margin": "float64"}
+NOTES: Mapping[str, str] = dict.fromkeys(("missed", "assumed", "linear_model"), "object")
 
 
 def columns(request: Mapping[str, Any]) -> tuple[str, ...]:
@@ -78,6 +65,5 @@ def frame(candidates: Sequence[Mapping[str, Any]], request: Mapping[str, Any]) -
 
     names = columns(request)
     table = pd.DataFrame([flat(candidate) for candidate in candidates], columns=list(names))
-    flags = {"buffered": "bool", "extra_package": "bool", "rank": "int64"}
-    kinds = {name: flags.get(name, "object" if name in TEXT else "float64") for name in names}
-    return table.astype(kinds)
+    types = {**CHOICE, **VERDICT, **NOTES}
+    return table.astype({name: types.get(name, "float64") for name in names})

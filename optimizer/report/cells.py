@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from optimizer.errors import clean
 from optimizer.quantities import show
 from optimizer.report.layout import Column
-from optimizer.report.words import clean, figure, margin_words
+from optimizer.report.words import figure, margin_words
 
 Candidate = Mapping[str, Any]
 ASSUMED = "*"

@@ -7,11 +7,12 @@ from typing import Any
 
 from rich.text import Text
 
+from optimizer.errors import clean
 from optimizer.quantities import show
 from optimizer.report.cells import named
 from optimizer.report.layout import Column, fit, lines
 from optimizer.report.paragraphs import paragraph
-from optimizer.report.words import beside, clean, figure, margin_words, side
+from optimizer.report.words import beside, figure, margin_words, side
 
 
 def chosen_lines(record: Mapping[str, Any], width: int) -> list[Text]:

@@ -7,14 +7,17 @@ from typing import TYPE_CHECKING
 
 from rich.text import Text
 
+from optimizer.errors import clean, shortened
 from optimizer.report.layout import Column, fit, lines
 from optimizer.report.paragraphs import styled
-from optimizer.report.words import clean, count, several
+from optimizer.report.words import count, several
 
 if TYPE_CHECKING:
     from optimizer.catalog.inspect import Inspection
 
 LISTED = 20
+LONGEST = 400  # characters of one reason, which quotes the cell
+LINES = 10  # of one part that stands many times
 ROLES = {  # one, many
     "opamps": ("op-amp", "op-amps"),
     "photodiodes": ("photodiode", "photodiodes"),
@@ -79,9 +82,10 @@ def _blanks(found: Inspection, width: int) -> list[Text]:
 def _suspicions(found: Inspection, width: int) -> list[Text]:
     return _listed(
         f"Unusual values: {count(len(found.suspicions))}, which may be true (nothing is refused for them)",
+        len(found.suspicions),
         [
             (f"line {unusual.row}", unusual.column, clean(unusual.value), clean(unusual.reason))
-            for unusual in found.suspicions
+            for unusual in found.suspicions[:LISTED]
         ],
         width,
     )
@@ -90,10 +94,8 @@ def _suspicions(found: Inspection, width: int) -> list[Text]:
 def _duplicates(found: Inspection, width: int) -> list[Text]:
     return _listed(
         f"On several lines: {several(len(found.duplicates), 'part')}",
-        [
-            (clean(same.name), clean(same.maker), f"lines {', '.join(map(str, same.rows))}")
-            for same in found.duplicates
-        ],
+        len(found.duplicates),
+        [(clean(same.name), clean(same.maker), _lines(same.rows)) for same in found.duplicates[:LISTED]],
         width,
     )
 
@@ -101,10 +103,15 @@ def _duplicates(found: Inspection, width: int) -> list[Text]:
 def _left_out(found: Inspection, width: int) -> list[Text]:
     return _listed(
         f"Left out as source.toml says: {several(len(found.left_out), 'row')}",
-        [(f"line {entry.row}", clean(entry.reason)) for entry in found.left_out],
+        len(found.left_out),
+        [(f"line {entry.row}", shortened(clean(entry.reason), LONGEST)) for entry in found.left_out],
         width,
-        most=len(found.left_out),
     )
+
+
+def _lines(rows: Sequence[int]) -> str:
+    more = f" and {count(len(rows) - LINES)} more" if len(rows) > LINES else ""
+    return f"lines {', '.join(map(str, rows[:LINES]))}{more}"
 
 
 def _unused(found: Inspection, width: int) -> list[Text]:
@@ -113,15 +120,14 @@ def _unused(found: Inspection, width: int) -> list[Text]:
     return styled(f"Headers not used: {', '.join(map(clean, found.unused))}.", width, indent=INDENT)
 
 
-def _listed(title: str, rows: Sequence[tuple[str, ...]], width: int, *, most: int = LISTED) -> list[Text]:
-    """A title over the first `most` of `rows`; empty without any."""
+def _listed(title: str, whole: int, rows: Sequence[tuple[str, ...]], width: int) -> list[Text]:
+    """A title over `rows`, and how many more there are in the `whole` list; empty without any."""
     if not rows:
         return []
-    shown = rows[:most]
-    table = tuple(Column("", cells, gives=True) for cells in zip(*shown, strict=True))
+    table = tuple(Column("", cells, gives=True) for cells in zip(*rows, strict=True))
     out = [*styled(title, width), *_table(table, width)]
-    if len(rows) > most:
-        out.append(Text(f"{INDENT}... and {count(len(rows) - most)} more like these"))
+    if whole > len(rows):
+        out.append(Text(f"{INDENT}... and {count(whole - len(rows))} more like these"))
     return out
 
 

@@ -15,20 +15,23 @@ from optimizer.report.words import count
 if TYPE_CHECKING:
     from optimizer.search.result import Progress
 
-PROVEN = "The ranking below is proven; near misses and counts were not finished:"
+PROVEN = "The ranking above is proven; near misses and counts were not finished."
+NONE_PROVEN = "Nothing meets the request, which is proven; near misses and counts were not finished."
 OPEN = "Best so far; each row meets the request, but the ranking is NOT proven, better ones may exist:"
+NONE_YET = "Nothing found so far meets the request, which proves nothing yet."
 
 
 def interrupted(record: Record, last: Progress | None, width: int) -> list[Text]:
     """What had been proved at the `last` report of the search, and the best rows found by then."""
-    data, seconds = record.data, record.data["search"]["seconds"]
+    data, rows = record.data, record.candidates
+    seconds, proven = data["search"]["seconds"], data["search"]["proven"]
     out = styled(f"luxsift: interrupted after {seconds:.3g} s; nothing was saved.", width, "bold")
-    out += styled(_proved(last), width)
-    rows = data["candidates"]
-    if not rows:
-        return out + styled("Nothing found so far meets the request, which proves nothing yet.", width)
-    table = ranked_table(rows, data["request"], width) + footnotes(rows, data["request"], width)
-    return out + styled(PROVEN if data["search"]["proven"] else OPEN, width) + table
+    table = (
+        ranked_table(rows, data["request"], width) + footnotes(rows, data["request"], width) if rows else []
+    )
+    if proven:
+        return out + table + styled(PROVEN if rows else NONE_PROVEN, width)
+    return out + styled(_proved(last), width) + styled(OPEN if rows else NONE_YET, width) + table
 
 
 def _proved(last: Progress | None) -> str:

@@ -7,10 +7,11 @@ from typing import Any
 
 from rich.text import Text
 
+from optimizer.errors import clean
 from optimizer.quantities import KINDS, show
 from optimizer.report.cells import ASSUMED, LINEAR
 from optimizer.report.paragraphs import styled
-from optimizer.report.words import clean, count, several, spoken
+from optimizer.report.words import count, several, spoken
 from optimizer.vocabulary import COLUMNS
 
 ORDERS = {

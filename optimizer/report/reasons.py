@@ -7,9 +7,10 @@ from typing import Any
 
 from rich.text import Text
 
+from optimizer.errors import clean
 from optimizer.report.layout import Column, fit, lines
 from optimizer.report.paragraphs import styled
-from optimizer.report.words import clean, count, several
+from optimizer.report.words import count, several
 
 ASSUMABLE = (
     "Blanks may be filled by [assume] lines in the request; luxsift inspect says what each would admit."

@@ -17,12 +17,6 @@ SCALES = (
 )
 
 
-def clean(text: object) -> str:
-    """`text` on one line and free of control characters, so that no catalog cell drives the terminal."""
-    flat = " ".join(str(text).split())
-    return "".join(char if char.isprintable() else "?" for char in flat)
-
-
 def count(number: int) -> str:
     """A count with thousands separated: '59,990'."""
     return f"{number:,}"

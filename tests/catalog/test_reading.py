@@ -66,6 +66,37 @@ def test_decimal_commas_of_a_semicolon_file(folder: Folder) -> None:
     assert catalogs.photodiodes.number["rise_time"].tolist() == [2.5e-9]
 
 
+def test_decimal_points_of_a_semicolon_file(folder: Folder) -> None:
+    """Without a comma between digits anywhere a point is a point, three digits behind it or not."""
+    row = GOOD["opamps"] | {"price": "1.250", "supply_min": "1.024 V", "maker": "Maker, A"}
+    folder.rows("opamps", row, delimiter=";")
+    opamps = folder.read().opamps
+    assert opamps.number["supply_min"].tolist() == [1.024]
+    assert opamps.points["price"] == (((1.0, 1.25),),)
+
+
+def test_a_semicolon_file_of_both_styles_is_refused_at_the_ambiguous_cells_only(folder: Folder) -> None:
+    rows = [
+        named("opamps", 1) | {"supply_min": "1.024 V"},
+        named("opamps", 2) | {"supply_min": "1,024 V", "gbw": "1.5 MHz"},
+        named("opamps", 3) | {"supply_min": "2.7 V", "offset_voltage": ",5 mV"},
+    ]
+    folder.rows("opamps", *rows, delimiter=";")
+    problem = folder.problem()
+    assert (problem.row, problem.column, problem.cell) == (2, "supply_min", "1.024 V")
+    assert problem.remedy == "write '1024' or '1,024'"
+    folder.rows("opamps", *rows[1:], delimiter=";")
+    opamps = folder.read().opamps
+    assert opamps.number["supply_min"].tolist() == [1.024, 2.7]
+    assert opamps.number["gbw"].tolist() == [1.5e6, 10e6]
+    assert opamps.number["offset_voltage"].tolist() == [500e-6, 0.5e-3]
+
+
+def test_a_lone_leading_comma_is_a_decimal_comma_too(folder: Folder) -> None:
+    folder.rows("opamps", GOOD["opamps"] | {"offset_voltage": ",5 mV"}, delimiter=";")
+    assert folder.read().opamps.number["offset_voltage"].tolist() == [0.5e-3]
+
+
 def test_stray_spaces_of_every_kind(folder: Folder) -> None:
     text = OPAMPS.replace("Maker A", "\u00a0 Maker\u202f A \t").replace("10 MHz", "\u200b10\u00a0MHz ")
     text = text.replace("part,maker", " part ,\u00a0maker").replace("ZQ100", ' "ZQ100"')

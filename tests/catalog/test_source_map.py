@@ -185,7 +185,7 @@ WRONG = [
     ),
     (FILE + "duplicates = true", 2, 'file."opamps.csv".duplicates', "True", ["'error' or 'cheapest'"]),
     (FILE + 'ignore = "Image"', 2, 'file."opamps.csv".ignore', "Image", ["a list of headers"]),
-    (FILE + "ignore = [1]", 2, 'file."opamps.csv".ignore.0', "1", ["text in quotes"]),
+    (FILE + "ignore = [1]", 2, 'file."opamps.csv".ignore', "1", ["text in quotes"]),
     (
         FILE + 'status = { New = "activ" }',
         2,

@@ -56,6 +56,20 @@ def test_long_lists_are_shortened_and_counted(file: Path) -> None:
     assert "... and 7 more like these" in said(file, rows)
 
 
+def test_a_part_on_very_many_lines_names_the_first_of_them(file: Path) -> None:
+    text = said(file, GOOD * 1000)
+    assert "lines 2, 3, 4, 5, 6, 7, 8, 9, 10, 11 and 990 more" in text
+    assert "999" not in text
+
+
+def test_a_very_long_bad_cell_is_left_out_in_few_words(file: Path) -> None:
+    (file.parent / "source.toml").write_text('[file."photodiodes.csv"]\nbad_rows = "leave out"\n')
+    text = said(file, GOOD + GOOD.replace("10 pF", "9" * 50_000 + " x"))
+    assert "Left out as source.toml says: 1 row" in text
+    assert "..." in text
+    assert len(text) < 3000
+
+
 def test_duplicates_make_a_file_unusable(file: Path, capsys: pytest.CaptureFixture[str]) -> None:
     text = said(file, GOOD + GOOD)
     assert "UNUSABLE" in text

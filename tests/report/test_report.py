@@ -148,7 +148,11 @@ def test_an_interrupted_search_claims_no_more_than_was_proved() -> None:
     assert "Nothing had been proved yet." in nothing
     assert "proves nothing yet" in nothing
     done = joined(to_text(interrupted(record(outcome(proven=True)), last, 80), colour=False))
-    assert "The ranking below is proven" in done
+    assert done.strip().endswith("The ranking above is proven; near misses and counts were not finished.")
+    assert "YZD-21" in done
+    assert "open" not in done
+    none = joined(to_text(interrupted(record(outcome((), (), proven=True)), last, 80), colour=False))
+    assert "Nothing meets the request, which is proven" in none
 
 
 @pytest.mark.parametrize(

@@ -4,10 +4,11 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from optimizer.errors import clean
 from optimizer.record.build import plain
 from optimizer.report.cautions import cautions
 from optimizer.report.reasons import WORDS, reason_lines
-from optimizer.report.words import beside, clean, margin_words, percent, spoken
+from optimizer.report.words import beside, margin_words, percent, spoken
 from tests.made_up import record
 
 DATA = record().data
