@@ -7,7 +7,7 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from optimizer.request_types import Request
+from optimizer.request.types import Request
 
 Floats = NDArray[np.float64]
 

@@ -11,7 +11,7 @@ import numpy as np
 
 from optimizer.catalog.parts import Catalogs, LeftOut, Parts, Source
 from optimizer.record import Record, build
-from optimizer.request_types import Light, Ranking, Request, Supply, Targets
+from optimizer.request.types import Light, Ranking, Request, Supply, Targets
 from optimizer.search.result import Candidate, Outcome, Reference, TargetValue
 from optimizer.study import Study
 

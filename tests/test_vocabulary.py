@@ -8,7 +8,7 @@ import pytest
 
 from optimizer.quantities import read_quantity
 from optimizer.quantities.kinds import KINDS
-from optimizer.request_types import ROLES, Targets
+from optimizer.request.types import ROLES, Targets
 from optimizer.vocabulary import COLUMNS, TARGETS, VOCABULARY, Column, figure_kind
 
 FIGURES = """bandwidth snr dynamic_range phase_margin peaking offset full_scale slew supply_current cost

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import FIGURES, evaluate
-from optimizer.request_types import WIRINGS
+from optimizer.request.types import WIRINGS
 from optimizer.search.result import Candidate, Reference, TargetValue
 from optimizer.search.space import Choice, Space, settings
 

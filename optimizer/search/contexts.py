@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.physics import reference
-from optimizer.request_types import WIRINGS, Request
+from optimizer.request.types import WIRINGS, Request
 from optimizer.search.values import Level
 
 Floats = NDArray[np.float64]

@@ -5,8 +5,9 @@ from __future__ import annotations
 import multiprocessing
 import signal
 import time
-from collections.abc import Callable
-from concurrent.futures import ProcessPoolExecutor
+from collections.abc import Callable, Iterator, Sequence
+from concurrent.futures import Future, ProcessPoolExecutor
+from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -71,6 +72,7 @@ class Crew:
             return self.met[0]
         if self.current is None:
             return nothing(len(self.index.space.limits))
+        self.evaluated += self.current.evaluated
         return gathered(self.current)
 
     def _alone(self, goals: Goals, rules: Rules, pairs: feed.Pairs, first_only: bool) -> Found:
@@ -104,25 +106,50 @@ class Crew:
         shares = [share for share in shares if share.size]
         pool = ProcessPoolExecutor(len(shares), mp_context=context, initializer=_ignore_interrupts)
         try:
-            jobs = [pool.submit(_share, self.index, goals, rules, share) for share in shares]
-            parts = []
-            for done, job in enumerate(jobs, start=1):
-                parts.append(job.result())
-                if self.progress is not None:
-                    count = sum(share.size for share in shares[:done])
-                    self.progress(Progress(pairs.size, count, sum(p.evaluated for p in parts), None))
+            with _interrupts_held():
+                jobs = [pool.submit(_share, self.index, goals, rules, share) for share in shares]
+            return merged(self.index.space, self._awaited(jobs, shares, pairs.size), rules.show)
         except KeyboardInterrupt:
             for process in list(getattr(pool, "_processes", {}).values()):
                 process.terminate()
             raise
         finally:
             pool.shutdown(wait=False, cancel_futures=True)
-        return merged(self.index.space, parts, rules.show)
+
+    def _awaited(
+        self, jobs: Sequence[Future[Found]], shares: Sequence[feed.Pairs], total: int
+    ) -> list[Found]:
+        """The findings of all workers, with progress as each is done."""
+        parts: list[Found] = []
+        for done, job in enumerate(jobs, start=1):
+            parts.append(job.result())
+            if self.progress is not None:
+                count = sum(share.size for share in shares[:done])
+                self.progress(Progress(total, count, sum(p.evaluated for p in parts), None))
+        return parts
+
+
+@contextmanager
+def _interrupts_held() -> Iterator[None]:
+    """Ctrl-C waits: one that arrives while a process is being made would be lost.
+
+    Only where signals can be held back, and in the main thread, which alone receives them.
+    """
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_UNBLOCK, {signal.SIGINT})
 
 
 def _ignore_interrupts() -> None:
     """Ctrl-C reaches every process of the terminal; the parent alone acts on it."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+    if hasattr(signal, "pthread_sigmask"):
+        signal.pthread_sigmask(signal.SIG_UNBLOCK, {signal.SIGINT})
 
 
 def _share(index: Index, goals: Goals, rules: Rules, pairs: feed.Pairs) -> Found:

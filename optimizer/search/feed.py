@@ -13,6 +13,7 @@ from optimizer.search import hunt as hunting
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.hunt import Hunt, Rules
+from optimizer.search.upper import bound
 from optimizer.search.view import Index, view
 
 Floats = NDArray[np.float64]
@@ -20,7 +21,7 @@ Ints = NDArray[np.int64]
 
 FIRST = 1024
 LARGEST = 65536
-_BLOCK = 65536
+_BLOCK = 16384
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,12 +61,26 @@ def pairs_of(index: Index, opamps: Ints, diodes: Ints, *, by: str) -> Pairs:
     return Pairs(opamp[order], diode[order], floor[order])
 
 
+def by_snr(index: Index, goals: Goals, pairs: Pairs) -> Pairs:
+    """The pairs that may meet the request, by falling bound on their snr; the floor is minus that bound."""
+    floor = np.full(pairs.size, np.inf)
+    for begin in range(0, pairs.size, _BLOCK):
+        part = slice(begin, begin + _BLOCK)
+        v = view(index, whole(index.space, pairs.opamp[part], pairs.diode[part]))
+        said = bound(v, goals, np.zeros(v.gain.size))
+        floor[part] = np.where(said.possible, -said.snr, np.inf)
+    order = np.argsort(floor, kind="stable")[: int((floor < np.inf).sum())]
+    return Pairs(pairs.opamp[order], pairs.diode[order], floor[order])
+
+
 def run(
     index: Index, goals: Goals, rules: Rules, *, pairs: Pairs, watch: Callable[[Hunt, int], bool]
 ) -> Hunt:
     """Hunt through `pairs`; `watch(hunt, pairs taken in)` is asked after every batch whether to stop."""
     hunt = hunting.start(index, goals, rules)
-    ranked = rules.by in ("cost", "supply_current")
+    if rules.by == "snr":
+        pairs = by_snr(index, goals, pairs)
+    ranked = rules.by != "margin"
     taken = 0
     for chunk in _rising(pairs) if ranked else _sampled(pairs):
         bar = hunt.incumbents.bar

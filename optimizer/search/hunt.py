@@ -8,7 +8,7 @@ which are evaluated exactly. So the result does not depend on the order of the w
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -29,7 +29,8 @@ Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
 BATCH = 4096
-_PROBES = 4
+FRONT = 16384
+_PROBES = 1
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,11 +61,16 @@ class Pool:
 
     def join(self, other: Pool) -> Pool:
         """Both pools in one."""
-        return Pool(
-            Boxes(np.concatenate([self.boxes.rows, other.boxes.rows])),
-            np.concatenate([self.key, other.key]),
-            np.concatenate([self.priority, other.priority]),
-        )
+        return joined([self, other])
+
+
+def joined(pools: Sequence[Pool]) -> Pool:
+    """All boxes of `pools` in one pool."""
+    return Pool(
+        Boxes(np.concatenate([pool.boxes.rows for pool in pools])),
+        np.concatenate([pool.key for pool in pools]),
+        np.concatenate([pool.priority for pool in pools]),
+    )
 
 
 @dataclass(slots=True)
@@ -101,39 +107,54 @@ def start(index: Index, goals: Goals, rules: Rules) -> Hunt:
 
 def add(hunt: Hunt, opamp: Ints, diode: Ints) -> None:
     """Take pairs into the hunt."""
+    added = []
     for begin in range(0, opamp.size, BATCH):
         part = slice(begin, begin + BATCH)
         boxes = whole(hunt.index.space, opamp[part], diode[part])
-        _admit(hunt, boxes, np.full(len(boxes), -np.inf))
+        added.append(_admitted(hunt, boxes, np.full(len(boxes), -np.inf)))
+    hunt.pool = joined([hunt.pool, *added])
 
 
 def drain(hunt: Hunt, stop_at: float, enough: Callable[[], bool]) -> None:
     """Split boxes, the most promising first, until none is left up to primary figure `stop_at`.
 
-    `enough` is asked after every batch, and ends the work when it says so.
+    The best boxes are worked on apart from the others, so that a large pool is not touched at every
+    step. `enough` is asked after every batch, and ends the work when it says so.
     """
-    while hunt.pool.priority.size:
-        hunt.pool = hunt.pool.take(_alive(hunt, hunt.pool))
-        size = hunt.pool.priority.size
-        if not size or hunt.pool.key[:, 0].min() > stop_at:
-            return
-        count = min(BATCH // 2, size)
-        first = np.argpartition(hunt.pool.priority, count - 1)[:count]
-        rest = np.ones(size, dtype=bool)
-        rest[first] = False
-        chosen = hunt.pool.take(first)
-        hunt.pool = hunt.pool.take(rest)
-        _admit(hunt, halves(hunt.index, chosen.boxes), np.tile(chosen.key[:, 0], 2))
+    front = Pool.empty(hunt.pool.key.shape[1])
+    while True:
+        if not front.priority.size:
+            hunt.pool = hunt.pool.take(_alive(hunt, hunt.pool))
+            if not hunt.pool.priority.size or hunt.pool.key[:, 0].min() > stop_at:
+                return
+            front, hunt.pool = _best(hunt.pool, FRONT)
+        front = front.take(_alive(hunt, front))
+        chosen, front = _best(front, BATCH // 2)
+        if chosen.priority.size:
+            children = halves(hunt.index, chosen.boxes)
+            front = front.join(_admitted(hunt, children, np.tile(chosen.key[:, 0], 2)))
+        if front.priority.size > 4 * FRONT:
+            front, rest = _best(front, FRONT)
+            hunt.pool = hunt.pool.join(rest)
         if enough():
+            hunt.pool = hunt.pool.join(front)
             return
+
+
+def _best(pool: Pool, count: int) -> tuple[Pool, Pool]:
+    """The `count` boxes of least priority, and the others."""
+    if pool.priority.size <= count:
+        return pool, pool.take(np.zeros(0, dtype=np.int64))
+    order = np.argpartition(pool.priority, count - 1)
+    return pool.take(order[:count]), pool.take(order[count:])
 
 
 def _pairs(hunt: Hunt, boxes: Boxes) -> Ints:
     return boxes.column(Boxes.OPAMP) * hunt.index.space.diodes.price.size + boxes.column(Boxes.DIODE)
 
 
-def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats) -> None:
-    """Bound `boxes`, evaluate the single ones that are left, and pool the others."""
+def _admitted(hunt: Hunt, boxes: Boxes, inherited: Floats) -> Pool:
+    """Bound `boxes`, evaluate the single ones that are left, and return the others."""
     hunt.bounded += len(boxes)
     v = view(hunt.index, boxes)
     level = _level(hunt, boxes, (v.cost, v.supply_current), inherited)
@@ -150,7 +171,7 @@ def _admit(hunt: Hunt, boxes: Boxes, inherited: Floats) -> None:
     lone = single(pool.boxes)
     if lone.any():
         _evaluate(hunt, pool.take(lone))
-    hunt.pool = hunt.pool.join(pool.take(~lone))
+    return pool.take(~lone)
 
 
 def _probed(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:

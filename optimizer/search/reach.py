@@ -9,8 +9,8 @@ coefficients are positive), so over a rectangle of them it holds somewhere only 
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import replace
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,7 +29,7 @@ from optimizer.search.space import Choice, Space, own_code, settings
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
-_BLOCK = 65536
+_BLOCK = 16384
 _QUANTILES = (
     (0.0, 1.0),
     (0.0, 0.0),
@@ -60,9 +60,10 @@ def _worst(code: Ints, fails: dict[str, Bools]) -> Ints:
 def furthest(space: Space, opamp: Ints, diode: Ints) -> Ints:
     """The check reached by the setting of each pair that gets furthest, PASSES where one is eligible."""
     reach = np.full(opamp.size, -1)
+    groups = _groups(space)
     for begin in range(0, opamp.size, _BLOCK):
         part = slice(begin, begin + _BLOCK)
-        reach[part] = _witnessed(space, opamp[part], diode[part])
+        reach[part] = _witnessed(space, groups, opamp[part], diode[part])
     open_ = np.flatnonzero(reach < PASSES)
     final = _no_further(space, opamp[open_], diode[open_], reach[open_])
     for row in open_[~final]:
@@ -70,15 +71,15 @@ def furthest(space: Space, opamp: Ints, diode: Ints) -> Ints:
     return reach
 
 
-def _witnessed(space: Space, opamp: Ints, diode: Ints) -> Ints:
+def _witnessed(space: Space, groups: Sequence[Group], opamp: Ints, diode: Ints) -> Ints:
     """The best of a few likely settings of each pair."""
     reach = np.full(opamp.size, -1)
     for resistor, capacitor in _likely(space):
-        for group in range(int(space.contexts.group[-1]) + 1):
+        for group in groups:
             open_ = np.flatnonzero(reach < PASSES)
             if not open_.size:
                 return reach
-            context = _likely_context(space, opamp[open_], diode[open_], group)
+            context = group.likely(opamp[open_], diode[open_])
             same = np.ones(open_.size, dtype=np.int64)
             choice = Choice(opamp[open_], diode[open_], context, resistor * same, capacitor * same, 0 * same)
             reach[open_] = np.maximum(reach[open_], first_failed(space, choice))
@@ -93,22 +94,50 @@ def _likely(space: Space) -> Iterator[tuple[int, int]]:
         yield int(resistors[int(r * (resistors.size - 1))]), int(capacitors[int(c * (capacitors.size - 1))])
 
 
-def _likely_context(space: Space, opamp: Ints, diode: Ints, group: int) -> Ints:
-    """The context of `group` that both parts pass, nearest the middle of the output's range."""
-    members = np.flatnonzero(space.contexts.group == group)
+@dataclass(frozen=True, slots=True)
+class Group:
+    """The contexts of one wiring and kind of reference; by part, the first and last place that it passes.
+
+    `wanted` is each op-amp's place nearest the middle of its output's range.
+    """
+
+    members: Ints
+    wanted: Ints
+    opamp_first: Ints
+    opamp_last: Ints
+    diode_first: Ints
+    diode_last: Ints
+
+    def likely(self, opamp: Ints, diode: Ints) -> Ints:
+        """The context that both parts of each pair pass (if there is one) nearest to the wanted one."""
+        low = np.maximum(self.opamp_first[opamp], self.diode_first[diode])
+        high = np.minimum(self.opamp_last[opamp], self.diode_last[diode])
+        return np.asarray(self.members[np.clip(self.wanted[opamp], np.minimum(low, high), high)])
+
+
+def _groups(space: Space) -> list[Group]:
+    """All groups of contexts."""
     o, bench = space.opamps, space.bench
     middle = 0.5 * (bench.low + o.output_low + bench.high - o.output_high)
     if bench.converter is not None:
         middle = np.clip(middle, bench.converter[0], bench.converter[1])
-    wanted = np.searchsorted(space.contexts.vref[members], middle[opamp])
-    passes = space.opamp_verdicts.code[:, members] == PASSES
-    allows = space.diode_verdicts.code[:, members] == PASSES
-    low = np.maximum(passes.argmax(axis=1)[opamp], allows.argmax(axis=1)[diode])
-    last = members.size - 1
-    high = np.minimum(
-        last - passes[:, ::-1].argmax(axis=1)[opamp], last - allows[:, ::-1].argmax(axis=1)[diode]
-    )
-    return members[np.clip(np.clip(wanted, 0, last), np.minimum(low, high), high)]
+    groups = []
+    for number in range(int(space.contexts.group[-1]) + 1):
+        members = np.flatnonzero(space.contexts.group == number)
+        last = members.size - 1
+        passes = space.opamp_verdicts.code[:, members] == PASSES
+        allows = space.diode_verdicts.code[:, members] == PASSES
+        groups.append(
+            Group(
+                members,
+                np.clip(np.searchsorted(space.contexts.vref[members], middle), 0, last),
+                passes.argmax(axis=1),
+                last - passes[:, ::-1].argmax(axis=1),
+                allows.argmax(axis=1),
+                last - allows[:, ::-1].argmax(axis=1),
+            )
+        )
+    return groups
 
 
 def _no_further(space: Space, opamp: Ints, diode: Ints, reach: Ints) -> Bools:

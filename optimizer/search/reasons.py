@@ -20,7 +20,7 @@ from optimizer.search.view import Index, view
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
-_BLOCK = 65536
+_BLOCK = 262144
 _MISSING = CHECKS.index("missing")
 
 

@@ -12,7 +12,7 @@ from optimizer.catalog import unit_price
 from optimizer.catalog.parts import Parts
 from optimizer.figures import CHECKS, Bench, output_limits
 from optimizer.physics import loop, noise, output, photodiode
-from optimizer.request_types import Request
+from optimizer.request.types import Request
 from optimizer.search.contexts import Contexts
 from optimizer.vocabulary import COLUMNS
 

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.errors import LuxsiftError
-from optimizer.request_types import Request
+from optimizer.request.types import Request
 from optimizer.search import assemble, feed, impossible, reasons
 from optimizer.search.bounds import Goals
 from optimizer.search.crew import Crew, Found

@@ -12,7 +12,7 @@ from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import Bench, Settings
 from optimizer.physics.constants import ZERO_CELSIUS
-from optimizer.request_types import Request
+from optimizer.request.types import Request
 from optimizer.search import contexts as context_room
 from optimizer.search import roles, values
 

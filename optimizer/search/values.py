@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from optimizer.catalog import unit_price
 from optimizer.catalog.parts import Parts
-from optimizer.request_types import Request, Space
+from optimizer.request.types import Request, Space
 from optimizer.series import values as series_values
 
 Floats = NDArray[np.float64]

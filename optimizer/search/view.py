@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -167,79 +168,104 @@ def _amps(space: Space) -> Amps:
 
 def view(index: Index, boxes: Boxes) -> View:
     """The intervals of `boxes`."""
-    space, amps = index.space, index.amps
+    column = boxes.column
+    x = Span.of(column(Boxes.X0), column(Boxes.X1))
+    r = Span.of(column(Boxes.R0), column(Boxes.R1))
+    c = Span.of(column(Boxes.C0), column(Boxes.C1))
+    counts = index.counts[:, column(Boxes.X1)] - index.counts[:, column(Boxes.X0)]
+    size = column(Boxes.X1) - column(Boxes.X0)
+    return View(
+        **_of_opamps(index, column(Boxes.OPAMP)),
+        **_of_contexts(index, boxes, x, counts),
+        **_of_passives(index, boxes, r),
+        **_of_totals(index, boxes, (x, r, c), counts),
+        rises=counts[RISING] > 0,
+        falls=counts[RISING] < size,
+        divided=counts[DIVIDED] == size,
+        buffered=counts[BUFFERED] == size,
+        on_rail=counts[ON_RAIL] > 0,
+    )
+
+
+def _of_opamps(index: Index, o: Ints) -> dict[str, Any]:
+    """What the op-amp fixes."""
+    amps, opamps = index.amps, index.space.opamps
+    return {
+        "gain": opamps.dc_gain[o],
+        "dominant": amps.dominant[o],
+        "second": amps.second[o],
+        "both": amps.both[o],
+        "voltage_noise": opamps.voltage_noise[o] ** 2,
+        "noise_corner": opamps.noise_corner[o],
+        "current_noise": opamps.current_noise[o],
+        "bias": opamps.bias[o],
+        "vos": opamps.vos[o],
+        "lower": amps.lower[:, o],
+        "upper": amps.upper[:, o],
+        "vref_floor": amps.vref_floor[o],
+        "vref_ceiling": amps.vref_ceiling[o],
+        "dark_floor": amps.dark_floor[o],
+        "dark_ceiling": amps.dark_ceiling[o],
+        "reference_node": amps.reference_node[o],
+        "min_gain": opamps.min_gain[o],
+        "buffers": opamps.buffers[o],
+        "slew_rate": opamps.slew_rate[o],
+    }
+
+
+def _of_contexts(index: Index, boxes: Boxes, x: Span, counts: Ints) -> dict[str, Any]:
+    """What the diode is in the contexts of the box, and where Vref can be."""
+    amps, diodes = index.amps, index.space.diodes
     o, d = boxes.column(Boxes.OPAMP), boxes.column(Boxes.DIODE)
     x0, x1 = boxes.column(Boxes.X0), boxes.column(Boxes.X1)
-    r0, r1 = boxes.column(Boxes.R0), boxes.column(Boxes.R1)
-    c0, c1 = boxes.column(Boxes.C0), boxes.column(Boxes.C1)
-    x, r, c = Span.of(x0, x1), Span.of(r0, r1), Span.of(c0, c1)
-    counts = index.counts[:, x1] - index.counts[:, x0]
-    size = x1 - x0
-    some = counts > 0
-    unbiased = counts[BIASED] < size
-    buffered = counts[BUFFERED] == size
-    lone = ~space.opamps.spare[o]
-    extra = buffered & lone
-    one, two = space.opamps.single[o], space.opamps.double[o]
-    # a steep price break can make two packages cheaper than one
-    mixed = np.where(some[BUFFERED] & lone, np.minimum(one, two), one)
-    capacitance = space.diodes.capacitance
+    biased, unbiased = counts[BIASED] > 0, counts[BIASED] < x1 - x0
     # a diode of unknown shunt or dark current fails in the wirings that need it: elsewhere it is 0
-    shunt, dark = np.nan_to_num(space.diodes.shunt[d]), np.nan_to_num(space.diodes.dark[d])
-    possible = (amps.passes[o, x1] > amps.passes[o, x0]) & (
-        index.diode_passes[d, x1] > index.diode_passes[d, x0]
-    )
-    rise, fall = index.rising.least(x), index.falling.least(x)
+    shunt, dark = np.nan_to_num(diodes.shunt[d]), np.nan_to_num(diodes.dark[d])
+    passes = amps.passes[o, x1] > amps.passes[o, x0]
+    return {
+        "possible": passes & (index.diode_passes[d, x1] > index.diode_passes[d, x0]),
+        "responsivity": diodes.responsivity[d],
+        "pole": diodes.pole[d],
+        "dark_low": np.where(unbiased, 0.0, dark),
+        "dark_high": np.where(biased, dark, 0.0),
+        "shunt_low": np.where(biased, 0.0, shunt),
+        "shunt_high": np.where(unbiased, shunt, 0.0),
+        "cin_low": diodes.capacitance[d, index.bias_most.position(x)] + amps.node[o],
+        "cin_high": diodes.capacitance[d, index.bias_least.position(x)] + amps.node[o],
+        "rise_from": index.rising.least(x),
+        "fall_from": -index.falling.least(x),
+        "source_low": index.source.least(x),
+    }
+
+
+def _of_passives(index: Index, boxes: Boxes, r: Span) -> dict[str, Any]:
+    """Rf, Cf with the resistor's parasitic, and the low-pass, from least to most."""
+    column, resistors, capacitors = boxes.column, index.resistors, index.capacitors
+    return {
+        "rf_low": resistors.value[column(Boxes.R0)],
+        "rf_high": resistors.value[column(Boxes.R1) - 1],
+        "cf_low": capacitors.value[column(Boxes.C0)] + resistors.parasitic.least(r),
+        "cf_high": capacitors.value[column(Boxes.C1) - 1] - resistors.surplus.least(r),
+        "lag_low": index.space.low_passes[column(Boxes.L1) - 1],
+        "lag_high": index.space.low_passes[column(Boxes.L0)],
+    }
+
+
+def _of_totals(index: Index, boxes: Boxes, spans: tuple[Span, Span, Span], counts: Ints) -> dict[str, Any]:
+    """Cost and supply current, at least."""
+    x, r, c = spans
+    o, opamps = boxes.column(Boxes.OPAMP), index.space.opamps
+    lone = ~opamps.spare[o]
+    extra = lone & (counts[BUFFERED] == boxes.column(Boxes.X1) - boxes.column(Boxes.X0))
+    one, two = opamps.single[o], opamps.double[o]
+    # a steep price break can make two packages cheaper than one
+    mixed = np.where(lone & (counts[BUFFERED] > 0), np.minimum(one, two), one)
     prices = (
-        space.diodes.price[d],
+        index.space.diodes.price[boxes.column(Boxes.DIODE)],
         np.where(extra, two, mixed),
         index.resistors.price.least(r),
         index.capacitors.price.least(c),
         index.cost.least(x),
     )
-    return View(
-        possible=possible,
-        gain=space.opamps.dc_gain[o],
-        dominant=amps.dominant[o],
-        second=amps.second[o],
-        both=amps.both[o],
-        voltage_noise=space.opamps.voltage_noise[o] ** 2,
-        noise_corner=space.opamps.noise_corner[o],
-        current_noise=space.opamps.current_noise[o],
-        bias=space.opamps.bias[o],
-        vos=space.opamps.vos[o],
-        lower=amps.lower[:, o],
-        upper=amps.upper[:, o],
-        vref_floor=amps.vref_floor[o],
-        vref_ceiling=amps.vref_ceiling[o],
-        dark_floor=amps.dark_floor[o],
-        dark_ceiling=amps.dark_ceiling[o],
-        responsivity=space.diodes.responsivity[d],
-        pole=space.diodes.pole[d],
-        dark_low=np.where(unbiased, 0.0, dark),
-        dark_high=np.where(some[BIASED], dark, 0.0),
-        shunt_low=np.where(some[BIASED], 0.0, shunt),
-        shunt_high=np.where(unbiased, shunt, 0.0),
-        cin_low=capacitance[d, index.bias_most.position(x)] + amps.node[o],
-        cin_high=capacitance[d, index.bias_least.position(x)] + amps.node[o],
-        reference_node=amps.reference_node[o],
-        rises=some[RISING],
-        falls=counts[RISING] < size,
-        rise_from=rise,
-        fall_from=-fall,
-        divided=counts[DIVIDED] == size,
-        buffered=buffered,
-        on_rail=some[ON_RAIL],
-        source_low=index.source.least(x),
-        rf_low=index.resistors.value[r0],
-        rf_high=index.resistors.value[r1 - 1],
-        cf_low=index.capacitors.value[c0] + index.resistors.parasitic.least(r),
-        cf_high=index.capacitors.value[c1 - 1] - index.resistors.surplus.least(r),
-        lag_low=space.low_passes[boxes.column(Boxes.L1) - 1],
-        lag_high=space.low_passes[boxes.column(Boxes.L0)],
-        min_gain=space.opamps.min_gain[o],
-        buffers=space.opamps.buffers[o],
-        slew_rate=space.opamps.slew_rate[o],
-        supply_current=np.where(extra, 2.0, 1.0) * space.opamps.cool[o] + index.current.least(x),
-        cost=total_cost(prices),
-    )
+    current = np.where(extra, 2.0, 1.0) * opamps.cool[o] + index.current.least(x)
+    return {"supply_current": current, "cost": total_cost(prices)}

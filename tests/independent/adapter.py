@@ -14,7 +14,7 @@ import numpy as np
 
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import CHECKS, evaluate
-from optimizer.request_types import Ambient, Converter, Divider, Light, Request, Space, Supply, Targets
+from optimizer.request.types import Ambient, Converter, Divider, Light, Request, Space, Supply, Targets
 from optimizer.search import plain
 from optimizer.search import space as spaces
 from optimizer.search.roles import PASSES

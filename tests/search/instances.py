@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 from optimizer import study
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import evaluate
-from optimizer.request_types import RANKINGS, Ambient, Converter, Request, Targets
+from optimizer.request.types import RANKINGS, Ambient, Converter, Request, Targets
 from optimizer.search import space as spaces
 from optimizer.search.plain import judge
 from optimizer.search.roles import PASSES

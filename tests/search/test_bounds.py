@@ -14,7 +14,7 @@ import pytest
 from numpy.typing import NDArray
 
 from optimizer.figures import evaluate
-from optimizer.request_types import Targets
+from optimizer.request.types import Targets
 from optimizer.search import bounds, split, upper
 from optimizer.search import space as spaces
 from optimizer.search import view as views

@@ -14,7 +14,7 @@ from hypothesis import strategies as st
 from optimizer import search
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import CHECKS
-from optimizer.request_types import RANKINGS, Request
+from optimizer.request.types import RANKINGS, Request
 from optimizer.search import assemble, keys, plain
 from optimizer.search import space as spaces
 from optimizer.search.result import Candidate
