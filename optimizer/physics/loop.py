@@ -97,17 +97,25 @@ def bandwidth(loop: Loop, *, diode: Floats, low_pass: Floats) -> Floats:
 
 
 def crossover(amp: Amplifier, loop: Loop) -> Floats:
-    """Angular frequency [rad/s] where the loop gain A/NG is one; NaN where A0 <= NG(0).
+    """Angular frequency [rad/s] where the loop gain A/NG is one; NaN where A0 <= NG(0)."""
+    k = crossover_polynomial(amp, loop.dc_noise_gain, loop.total, loop.feedback)
+    return np.asarray(np.sqrt(single_positive_root(*k)))
 
-    |A/NG|^2 falls through one exactly once: the coefficients below change sign once (Descartes).
+
+def crossover_polynomial(
+    amp: Amplifier, dc_noise_gain: Floats, total: Floats, feedback: Floats
+) -> tuple[Floats, Floats, Floats, Floats]:
+    """k0, k1, k2, k3 of the polynomial in w^2 whose root is the crossover: k3 x^3 + k2 x^2 + k1 x - k0.
+
+    |A/NG|^2 falls through one exactly once: the coefficients change sign once (Descartes). `total` =
+    Rf (Cin + Cf) and `feedback` = Rf Cf [s].
     """
     a2, b2 = amp.dominant**2, amp.second**2
-    g2, t2 = loop.dc_noise_gain**2, loop.total**2
+    g2, t2 = dc_noise_gain**2, total**2
     gain2 = amp.dc_gain**2
-    k0 = gain2 - g2
-    k1 = g2 * (a2 + b2) + t2 - gain2 * loop.feedback**2
+    k1 = g2 * (a2 + b2) + t2 - gain2 * feedback**2
     k2 = g2 * a2 * b2 + (a2 + b2) * t2
-    return np.asarray(np.sqrt(single_positive_root(k0, k1, k2, a2 * b2 * t2)))
+    return gain2 - g2, k1, k2, a2 * b2 * t2
 
 
 def phase_margin(amp: Amplifier, loop: Loop) -> Floats:

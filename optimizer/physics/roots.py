@@ -17,26 +17,41 @@ _CROSSING_STEPS = 500
 def single_positive_root(k0: Floats, k1: Floats, k2: Floats, k3: Floats) -> Floats:
     """The positive root of k3 x^3 + k2 x^2 + k1 x - k0 with k0 > 0 and k2, k3 >= 0; NaN where k0 <= 0.
 
-    k1 must be positive where k2 and k3 are 0.
-
-    The polynomial is convex for x > 0 and has one positive root, so Newton's method from above falls
-    onto it monotonically, whatever the sign of k1 (Cardano's formula cancels there).
+    k1 must be positive where k2 and k3 are 0. The polynomial is convex for x > 0 and has one positive
+    root, so Newton's method from above falls onto it monotonically, whatever the sign of k1 (Cardano's
+    formula cancels there).
     """
+    x = root_from_above((k0, k1, k2, k3), 0)
+    for _ in range(_NEWTON_STEPS):
+        new = _newton(x, (k0, k1, k2, k3))
+        if not np.any(np.abs(new - x) > 1e-14 * x):
+            return new
+        x = new
+    return x
+
+
+def root_from_above(k: tuple[Floats, Floats, Floats, Floats], steps: int) -> Floats:
+    """An upper bound on that root: a start from above and `steps` of Newton's method; `k`: k0 to k3."""
+    k0, k1, k2, k3 = k
     with np.errstate(divide="ignore", invalid="ignore"):
         drop = np.maximum(-k1, 0.0)
         quadratic = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
-        x = np.where(k2 > 0.0, quadratic, np.inf)
         cubic = np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf)
         linear = np.where(k1 > 0.0, k0 / k1, np.inf)
-        x = np.where(k0 > 0.0, np.minimum(np.minimum(x, cubic), linear), np.nan)
-        for _ in range(_NEWTON_STEPS):
-            value = ((k3 * x + k2) * x + k1) * x - k0
-            slope = (3.0 * k3 * x + 2.0 * k2) * x + k1
-            step = np.where(slope > 0.0, value / slope, 0.0)
-            x = x - step
-            if not np.any(np.abs(step) > 1e-14 * x):
-                break
+        x = np.minimum(np.minimum(np.where(k2 > 0.0, quadratic, np.inf), cubic), linear)
+    x = np.where(k0 > 0.0, x, np.nan)
+    for _ in range(steps):
+        x = _newton(x, k)
     return np.asarray(x)
+
+
+def _newton(x: Floats, k: tuple[Floats, Floats, Floats, Floats]) -> Floats:
+    """One step of Newton's method, not taken where the slope or the value is not positive."""
+    k0, k1, k2, k3 = k
+    value = ((k3 * x + k2) * x + k1) * x - k0
+    slope = (3.0 * k3 * x + 2.0 * k2) * x + k1
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return np.asarray(x - np.where((slope > 0.0) & (value > 0.0), value / slope, 0.0))
 
 
 def _shifted(coefficients: list[Floats], h: Floats) -> list[Floats]:

@@ -26,7 +26,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.figures import Bench
-from optimizer.physics.constants import BOLTZMANN, ELEMENTARY_CHARGE
+from optimizer.physics import noise
 from optimizer.search.view import View
 
 Floats = NDArray[np.float64]
@@ -270,16 +270,16 @@ def noise_floor(v: View, left: Narrow, c: Coefficients, bench: Bench) -> Floor:
             per_volt * (flat + flicker) + v.voltage_noise * (left.cf_low + v.reference_node) ** 2 * rising
         )
         amplifier = amplifier + np.where(v.buffered, buffer, 0.0)
-        charge = 2.0 * ELEMENTARY_CHARGE
-        steady = charge * (v.responsivity * bench.background + v.dark_low) + v.current_noise
-        thermal = 4.0 * BOLTZMANN * bench.kelvin
-        rest = (steady + thermal * v.shunt_low) * flat + amplifier
+        steady = noise.shot_current(v.responsivity * bench.background + v.dark_low) + v.current_noise
+        steady = steady + noise.thermal_conductance_current(v.shunt_low, bench.kelvin)
+        rest = steady * flat + amplifier
         if bench.converter is not None:
             floor, ceiling, bits = bench.converter
-            rest = rest + ((ceiling - floor) / 2.0**bits) ** 2 / 12.0 / left.rf_high**2
-        dark = rest + thermal / left.rf_high * flat
-    shot = charge * v.responsivity * bench.weakest * flat
-    return Floor(flat, rising, dark, dark + shot, thermal * flat)
+            rest = rest + noise.quantisation(ceiling - floor, bits) / left.rf_high**2
+        per_conductance = noise.thermal_conductance_current(1.0, bench.kelvin) * flat
+        dark = rest + per_conductance / left.rf_high
+    shot = noise.shot_current(v.responsivity * bench.weakest) * flat
+    return Floor(flat, rising, dark, dark + shot, per_conductance)
 
 
 def _reciprocal(value: Floats) -> Floats:

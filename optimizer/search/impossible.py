@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from optimizer.physics.constants import ELEMENTARY_CHARGE
+from optimizer.physics import noise
 from optimizer.quantities import show
 from optimizer.search.bounds import ROOT2
 from optimizer.search.roles import PASSES
@@ -76,7 +76,7 @@ def _converter(space: Space) -> Iterator[str]:
     if bench.converter is None:
         return
     floor, ceiling, bits = bench.converter
-    step = (ceiling - floor) / 2.0**bits / np.sqrt(12.0)
+    step = float(np.sqrt(noise.quantisation(ceiling - floor, bits)))
     usable = max(_widest(space) - bench.guard, 0.0)
     if step <= 0.0 or usable <= 0.0:
         return
@@ -109,7 +109,7 @@ def _shot_noise(space: Space) -> Iterator[str]:
     slowest = ROOT2 / w + a * b / (a + b) * (1.0 + ROOT2) + space.low_passes.max()
     band = float(np.min(1.0 / (4.0 * slowest)))
     current = float(sensible.max()) * bench.weakest
-    shot = 2.0 * ELEMENTARY_CHARGE * float(sensible.max()) * (bench.weakest + bench.background) * band
+    shot = float(noise.shot_current(sensible.max() * (bench.weakest + bench.background))) * band
     best = 20.0 * np.log10(current) - 10.0 * np.log10(shot)
     if best < snr - 1e-6:
         yield (

@@ -10,6 +10,8 @@ from numpy.typing import NDArray
 
 from optimizer import margins
 from optimizer.figures import rounded
+from optimizer.physics.loop import Amplifier, crossover_polynomial
+from optimizer.physics.roots import root_from_above
 from optimizer.search.bounds import (
     SLACK,
     Coefficients,
@@ -30,6 +32,7 @@ from optimizer.search.view import View
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 
+_NEWTON_STEPS = 5
 _STEPS = 5
 """Bisections between level and comfort that place the bound on the bandwidth margin."""
 
@@ -182,28 +185,14 @@ def _phase_margin(v: View, left: Narrow, c: Coefficients) -> Floats:
 def _crossover(v: View, loop: tuple[Floats, Floats, Floats], above: bool) -> Floats:
     """The crossover [rad/s] of one loop (g, Rf (Cin + Cf), Rf Cf), from above or from below.
 
-    Newton's method on a convex polynomial with one positive root: each step from above stays above;
-    the line between a point below and one above cuts the axis below the root.
+    Newton's method from above stays above; the chord from 0 to a point above cuts the axis below the
+    root, since the polynomial is convex.
     """
-    g, t, f = loop
-    a2, b2, t2 = v.dominant**2, v.second**2, t * t
-    k0 = np.maximum(v.gain**2 - g * g, 0.0)
-    k1 = g * g * (a2 + b2) + t2 - (v.gain * f) ** 2
-    k2 = g * g * a2 * b2 + (a2 + b2) * t2
-    k3 = a2 * b2 * t2
-    drop = np.maximum(-k1, 0.0)
-    x = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
-    x = np.minimum(
-        x, np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf)
-    )
-    x = np.minimum(x, np.where(k1 > 0.0, k0 / k1, np.inf))
-    for _ in range(5):
-        value = ((k3 * x + k2) * x + k1) * x - k0
-        slope = (3.0 * k3 * x + 2.0 * k2) * x + k1
-        x = x - np.where((slope > 0.0) & (value > 0.0), value / slope, 0.0)
-    x = np.where(np.isfinite(x), x, 0.0)
+    k = crossover_polynomial(Amplifier(v.gain, v.dominant, v.second), *loop)
+    k0, k1, k2, k3 = k
+    x = np.nan_to_num(root_from_above(k, _NEWTON_STEPS), posinf=0.0)
     if above:
         return np.sqrt(x * (1.0 + 1e-9))
     value = np.maximum(((k3 * x + k2) * x + k1) * x - k0, 0.0)
-    secant = np.where(value + k0 > 0.0, x * (k0 / (value + k0)), x)
-    return np.sqrt(np.maximum(secant * (1.0 - 1e-9), 0.0))
+    chord = np.where(value + k0 > 0.0, x * (k0 / (value + k0)), x)
+    return np.sqrt(np.maximum(chord * (1.0 - 1e-9), 0.0))
