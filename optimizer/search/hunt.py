@@ -9,7 +9,7 @@ which are evaluated exactly. So the result does not depend on the order of the w
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,7 +18,8 @@ from optimizer.figures import rounded
 from optimizer.search import keys
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes, Span, settings_of, single, whole
-from optimizer.search.plain import Judged, judge
+from optimizer.search.incumbents import Incumbents, improve
+from optimizer.search.plain import judge
 from optimizer.search.roles import PASSES
 from optimizer.search.split import filled, halves, narrowed
 from optimizer.search.upper import Bound, bound
@@ -74,17 +75,6 @@ def joined(pools: Sequence[Pool]) -> Pool:
 
 
 @dataclass(slots=True)
-class Incumbents:
-    """The best setting found of each pair, in slots; `slot_of` is by pair, -1 where none was found."""
-
-    slot_of: NDArray[np.int32]
-    judged: Judged | None = None
-    key: Floats = field(default_factory=lambda: np.zeros((0, 0)))
-    shown: Ints = field(default_factory=lambda: np.zeros(0, dtype=np.int64))
-    bar: Floats | None = None
-
-
-@dataclass(slots=True)
 class Hunt:
     """One search in progress."""
 
@@ -94,7 +84,6 @@ class Hunt:
     incumbents: Incumbents
     pool: Pool
     evaluated: int = 0
-    bounded: int = 0
 
 
 def start(index: Index, goals: Goals, rules: Rules) -> Hunt:
@@ -102,7 +91,7 @@ def start(index: Index, goals: Goals, rules: Rules) -> Hunt:
     space = index.space
     pairs = space.opamps.gbw.size * space.diodes.price.size
     width = 2 + len(goals.limits) + 6
-    return Hunt(index, goals, rules, Incumbents(np.full(pairs, -1, dtype=np.int32)), Pool.empty(width))
+    return Hunt(index, goals, rules, Incumbents.of(pairs), Pool.empty(width))
 
 
 def add(hunt: Hunt, opamp: Ints, diode: Ints) -> None:
@@ -155,7 +144,6 @@ def _pairs(hunt: Hunt, boxes: Boxes) -> Ints:
 
 def _admitted(hunt: Hunt, boxes: Boxes, inherited: Floats) -> Pool:
     """Bound `boxes`, evaluate the single ones that are left, and return the others."""
-    hunt.bounded += len(boxes)
     v = view(hunt.index, boxes)
     level = _level(hunt, boxes, (v.cost, v.supply_current), inherited)
     limits = bound(v, hunt.goals, level)
@@ -276,66 +264,4 @@ def _evaluate(hunt: Hunt, pool: Pool) -> None:
     judged = judge(index.space, choice, hunt.rules.by)
     good = (judged.reach == PASSES) & (judged.vector[:, 0] >= hunt.rules.least)
     if good.any():
-        _improve(hunt, judged.take(good))
-
-
-def _improve(hunt: Hunt, judged: Judged) -> None:
-    """Take the best of `judged` for each pair into the incumbents, and move the bar."""
-    incumbents, space = hunt.incumbents, hunt.index.space
-    key = keys.within_pair(space, judged.choice, judged.columns)
-    pair = judged.choice.opamp * space.diodes.price.size + judged.choice.diode
-    order = keys.order(np.column_stack([pair, key]))
-    first = order[np.r_[True, np.diff(pair[order]) != 0]]
-    slots = incumbents.slot_of[pair[first]]
-    better = slots < 0
-    known = ~better
-    if known.any():
-        better[known] = keys.less(key[first[known]], incumbents.key[slots[known]])
-    first, slots = first[better], slots[better]
-    if not first.size:
-        return
-    fresh = slots < 0
-    before = 0 if incumbents.judged is None else incumbents.judged.reach.size
-    slots[fresh] = before + np.arange(int(fresh.sum()), dtype=slots.dtype)
-    incumbents.slot_of[pair[first]] = slots
-    _store(incumbents, (slots, fresh), judged.take(first), key[first])
-    _raise_bar(hunt, slots.astype(np.int64))
-
-
-def _store(incumbents: Incumbents, places: tuple[NDArray[np.int32], Bools], new: Judged, key: Floats) -> None:
-    slots, fresh = places
-    if incumbents.judged is None:
-        incumbents.judged, incumbents.key = new, key
-        return
-    old = incumbents.judged
-    for column, values in zip(_arrays(old), _arrays(new), strict=True):
-        column[slots[~fresh]] = values[~fresh]
-    incumbents.key[slots[~fresh]] = key[~fresh]
-    if fresh.any():
-        incumbents.judged = _joined(old, new.take(fresh))
-        incumbents.key = np.concatenate([incumbents.key, key[fresh]])
-
-
-def _arrays(judged: Judged) -> tuple[NDArray[np.generic], ...]:
-    return (*judged.choice.columns(), judged.reach, judged.margin_columns, *judged.columns)
-
-
-def _joined(left: Judged, right: Judged) -> Judged:
-    columns = [np.concatenate(both) for both in zip(_arrays(left), _arrays(right), strict=True)]
-    from optimizer.search.space import Choice
-
-    return Judged(Choice(*columns[:6]), columns[6], columns[7], *columns[8:])
-
-
-def _raise_bar(hunt: Hunt, changed: Ints) -> None:
-    """The last row shown, after the incumbents at slots `changed` improved."""
-    incumbents, space = hunt.incumbents, hunt.index.space
-    if incumbents.judged is None:
-        return
-    slots = np.union1d(incumbents.shown, changed)
-    some = incumbents.judged.take(slots)
-    key = keys.between_pairs(space, some.choice, some.columns)
-    order = keys.order(key)[: hunt.rules.show]
-    incumbents.shown = slots[order]
-    if order.size == hunt.rules.show:
-        incumbents.bar = key[order[-1]]
+        improve(index.space, hunt.incumbents, judged.take(good), show=hunt.rules.show)
