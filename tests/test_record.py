@@ -13,6 +13,7 @@ import pytest
 
 from optimizer.errors import InputError, OutputError
 from optimizer.record import build, read, write, write_text
+from optimizer.search.result import Outcome
 from tests import made_up
 from tests.made_up import CANDIDATE, DIVIDER, FIGURES, MISS, REQUEST, outcome, record, study
 
@@ -238,4 +239,53 @@ def test_notebook_table_escapes_names_and_shows_units() -> None:
 
 
 def test_notebook_shows_near_misses_where_nothing_meets() -> None:
-    assert "near misses" in record(outcome((), (MISS,)))._repr_html_()
+    html = record(outcome((), (MISS,)))._repr_html_()
+    assert "nothing meets the request; 1 near miss" in html
+    assert "YZD-30" in html
+
+
+# At a prompt
+
+
+@pytest.mark.parametrize(
+    ("result", "said"),
+    [
+        (outcome(), "1 meets the request, the first limited by full_scale"),
+        (outcome((CANDIDATE,) * 3, (MISS,)), "3 meet the request, the first limited by full_scale"),
+        (outcome(proven=False), "1 meets the request, the first limited by full_scale, not proven"),
+        (
+            outcome((), (MISS, MISS)),
+            "nothing meets the request; 2 near misses, the nearest limited by dynamic_range",
+        ),
+        (outcome((), ()), "nothing meets the request, no pair is eligible"),
+        (outcome((), (), impossible=("snr: shot noise",)), "no part could meet the request"),
+    ],
+)
+def test_repr_is_one_line(result: Outcome, said: str) -> None:
+    assert repr(record(result)) == f"<Record {REQUEST.name}: {said}>"
+
+
+def test_repr_stays_short_and_on_one_line_whatever_the_name() -> None:
+    awkward = replace(REQUEST, name="a\n\x1b[31m" + "b" * 5000)
+    assert repr(record(request=awkward)).isprintable()
+    assert len(repr(record(request=awkward))) < 160
+
+
+def test_print_shows_the_summary_over_a_table_that_fits_a_prompt() -> None:
+    bare = replace(CANDIDATE, photodiode="YZD\x1b[31m", feedback_capacitance=0.0, capacitor_family=None)
+    first, head, *rows = str(record(outcome((CANDIDATE, bare), (MISS,)))).split("\n")
+    assert first.endswith("2 meet the request, the first limited by full_scale")
+    assert head.split() == ["rank", "photodiode", "op-amp", "Rf", "Cf", "bandwidth", "SNR", "cost",
+                            "limiting", "margin"]  # fmt: skip
+    said = ["1", "YZD-21", "YZA-14", "1", "Mohm", "4.7", "pF", "24.1", "kHz", "48.1", "dB", "3.21"]
+    assert rows[0].split() == [*said, "full_scale", "10", "%"]
+    assert "none" in rows[1].split()
+    assert all(line.isprintable() for line in rows)
+    assert max(len(line) for line in (head, *rows)) <= 100
+
+
+def test_print_shows_near_misses_where_nothing_meets_and_no_table_without_rows() -> None:
+    assert "YZD-30" in str(record(outcome((), (MISS,))))
+    none = record(outcome((), ()))
+    assert f"<Record {none}>" == repr(none)
+    assert "<table" not in none._repr_html_()

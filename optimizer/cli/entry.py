@@ -35,7 +35,7 @@ def _guarded(words: list[str]) -> int:
         write(sys.stderr, "\n".join(error_lines(error)) + "\n")
         return BAD_INPUT
     except KeyboardInterrupt:
-        write(sys.stderr, "luxsift: interrupted before anything was decided\n")
+        write(sys.stderr, "luxsift: interrupted; nothing was decided or written\n")
         return INTERRUPTED
     except SystemExit as end:  # argparse has printed its help
         return int(end.code or 0)

@@ -2,13 +2,24 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+import os
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
+from pathlib import Path
 
+from optimizer.cli.arguments import COMMAND_LINE
 from optimizer.errors import InputError, LuxsiftError, Problem, clean, shortened
 
 ALIKE, MOST = 5, 60
 LONGEST_NAME, LONGEST_CELL, LONGEST_WORDS = 120, 60, 400
+
+
+class StudyError(InputError):
+    """Problems of a request, its catalogs and the options; `request` is the request's path as typed."""
+
+    def __init__(self, problems: Iterable[Problem], request: str) -> None:
+        super().__init__(problems)
+        self.request = request
 
 
 def error_lines(error: LuxsiftError) -> list[str]:
@@ -17,7 +28,20 @@ def error_lines(error: LuxsiftError) -> list[str]:
         return [clean(f"luxsift: {error}")]
     many = len(error.problems)
     heading = "luxsift: 1 problem" if many == 1 else f"luxsift: {many:,} problems"
+    if isinstance(error, StudyError):
+        heading += where_from(error.request, {problem.file for problem in error.problems})
     return [heading, *(f"  {line}" for line in _shortened(error.problems))]
+
+
+def where_from(request: str, files: Iterable[str]) -> str:
+    """Words for a heading over `files`, which a request names as seen from its own folder; '' where that
+    is the working directory, or where none of them is a catalog so named.
+    """
+    own, folder = Path(request), Path(request).parent
+    named = [file for file in files if file not in (COMMAND_LINE, str(own)) and not Path(file).is_absolute()]
+    if not named or os.path.samefile(folder, os.curdir):
+        return ""
+    return f"; catalogs are named as seen from the folder {clean(folder)}"
 
 
 def _shortened(problems: Sequence[Problem]) -> Iterator[str]:

@@ -11,7 +11,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from optimizer.cli.arguments import COMMAND_LINE, ShortlistOptions, shortlist_options
-from optimizer.cli.messages import LONGEST_WORDS
+from optimizer.cli.messages import LONGEST_WORDS, StudyError, where_from
 from optimizer.cli.output import write, write_lines
 from optimizer.cli.progress import watch
 from optimizer.errors import InputError, OutputError, Problem, clean, shortened
@@ -23,6 +23,10 @@ if TYPE_CHECKING:
 
 MEETS, NOTHING_MEETS, INTERRUPTED = 0, 1, 130
 LISTED = 20
+CUT_SHORT = (
+    "luxsift: interrupted after the search, while its answer was being written; "
+    "a file is written whole or not at all\n"
+)
 
 
 def shortlist(parsed: argparse.Namespace) -> int:
@@ -37,9 +41,13 @@ def shortlist(parsed: argparse.Namespace) -> int:
         with watch(quiet=options.quiet) as watcher:
             outcome = search(study.request, study.catalogs, workers=options.workers, progress=watcher)
     except Interrupted as stop:
-        _tell_interrupted(study, stop.outcome, watcher.last)
+        _tell_interrupted(study, stop.outcome, watcher.last, options.workers)
         return INTERRUPTED
-    return _answer(study, outcome, options)
+    try:
+        return _answer(study, outcome, options)
+    except KeyboardInterrupt:
+        write(sys.stderr, CUT_SHORT)
+        return INTERRUPTED
 
 
 def _load(options: ShortlistOptions, problems: list[Problem]) -> Study:
@@ -57,7 +65,7 @@ def _load(options: ShortlistOptions, problems: list[Problem]) -> Study:
         inputs += [study.request.path.parent / file for file in files]
     problems += _output_problems(options, inputs)
     if problems or study is None:
-        raise InputError(problems)
+        raise StudyError(problems, options.request)
     return study
 
 
@@ -145,7 +153,8 @@ def _tell_left_out(study: Study, options: ShortlistOptions) -> None:
     rows = study.catalogs.left_out
     if options.quiet or not rows:
         return
-    lines = [f"luxsift: left out of the catalogs as source.toml says: {several(len(rows), 'row')}"]
+    heading = f"luxsift: left out of the catalogs as source.toml says: {several(len(rows), 'row')}"
+    lines = [heading + where_from(options.request, {entry.file for entry in rows})]
     lines += [
         f"  {clean(entry.file)}, line {entry.row}: {shortened(clean(entry.reason), LONGEST_WORDS)}"
         for entry in rows[:LISTED]
@@ -155,10 +164,10 @@ def _tell_left_out(study: Study, options: ShortlistOptions) -> None:
     write(sys.stderr, "".join(f"{line}\n" for line in lines))
 
 
-def _tell_interrupted(study: Study, outcome: Outcome, last: Progress | None) -> None:
+def _tell_interrupted(study: Study, outcome: Outcome, last: Progress | None, workers: int) -> None:
     from optimizer.record import build
     from optimizer.report.interrupted import interrupted
     from optimizer.report.terminal import width_of
 
     record = build(study, outcome, None)
-    write_lines(sys.stderr, interrupted(record, last, width_of(sys.stderr)))
+    write_lines(sys.stderr, interrupted(record, last, width_of(sys.stderr), workers=workers))

@@ -5,14 +5,14 @@ from __future__ import annotations
 import argparse
 import os
 import sys
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from importlib.resources import files
 from pathlib import Path
 from shlex import quote
 
 from optimizer.cli.arguments import COMMAND_LINE
 from optimizer.cli.output import write
-from optimizer.errors import InputError, OutputError, Problem, reason
+from optimizer.errors import InputError, OutputError, Problem, clean, reason
 
 STARTER = ("request.toml", "source.toml", "opamps.csv", "photodiodes.csv", "resistors.csv", "capacitors.csv")
 
@@ -25,10 +25,15 @@ def start(parsed: argparse.Namespace) -> int:
         raise InputError(conflicts)
     source = files("optimizer").joinpath("starter")
     _write_all(folder, {name: source.joinpath(name).read_bytes() for name in STARTER})
-    request = folder / "request.toml"
-    text = f"Wrote {', '.join(STARTER)} in {folder} (all parts and makers are invented).\n"
-    write(sys.stdout, f"{text}Next: luxsift shortlist {quote(str(request))}\n")
+    write(sys.stdout, "".join(f"{line}\n" for line in _said(folder)))
     return 0
+
+
+def _said(folder: Path) -> Iterator[str]:
+    yield f"Wrote {len(STARTER)} files; all parts and makers in them are invented:"
+    yield from (f"  {clean(folder / name)}" for name in STARTER)
+    yield "Next, type:"
+    yield f"  luxsift shortlist {quote(str(folder / STARTER[0]))}"
 
 
 def _conflicts(folder: Path) -> list[Problem]:
@@ -51,9 +56,11 @@ def _write_all(folder: Path, contents: Mapping[str, bytes]) -> None:
             with (folder / name).open("xb") as file:
                 written.append(folder / name)
                 file.write(content)
-    except (OSError, ValueError) as error:
+    except BaseException as error:  # Ctrl-C too
         for path in written:
             path.unlink(missing_ok=True)
+        if not isinstance(error, OSError | ValueError):
+            raise
         raise OutputError(
             f"{folder}: cannot write the starter files: {reason(error)}; nothing was written"
         ) from error

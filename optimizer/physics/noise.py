@@ -3,7 +3,7 @@
 White parts are integrals of |N/D|^2 of rational functions (the recursion of K. J. Astrom,
 Introduction to Stochastic Control Theory, Academic Press 1970, chapter 5, theorem 5.2, here run on
 the reversed polynomials, so that absent poles are plain zeros). Flicker parts are sums of residues
-in w^2, with Gauss-Legendre quadrature where two poles nearly coincide.
+in w^2; where two poles nearly coincide, Gauss-Legendre quadrature or interpolation takes over.
 """
 
 from __future__ import annotations
@@ -21,8 +21,11 @@ from optimizer.physics.roots import cubic_roots
 Floats = NDArray[np.float64]
 Complexes = NDArray[np.complex128]
 
-_NEARLY_COINCIDENT = 1e5
-"""A residue this large loses as many digits; beyond it the integral is done by quadrature."""
+_NEARLY_COINCIDENT = 5e-3
+"""Relative distance of two poles in w^2 below which residues lose too many digits (they lose its square)."""
+
+_SPREAD = 1e-2
+"""Relative spacing of the places between which integrals near a coincidence are interpolated."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -103,21 +106,32 @@ def flicker_band(loop: Loop, low_pass: Floats, start: float) -> Band:
     e1, e2, e3, tau = (np.broadcast_to(v, shape).ravel() for v in (loop.e1, loop.e2, loop.e3, low_pass))
     real, first, second = cubic_roots(e1, e2, e3)
     z = np.stack([(real * real).astype(complex), first * first, second * second, (tau * tau).astype(complex)])
-    flat, rising, sound = _residues(z, (2.0 * np.pi * start) ** 2)
-    # a resonance brings a pair together on the negative axis, where quadrature would be no better
+    x0 = (2.0 * np.pi * start) ** 2
+    flat, rising = _residues(z, x0)
+    # the pair of a resonance meets on the negative axis, without loss and beyond quadrature; there only
+    # the low-pass can come too near the real pole
     resonant = np.abs(np.imag(first)) > np.abs(np.real(first))
-    poor = ~sound & ~resonant
-    if poor.any():
-        flat[poor], rising[poor] = _quadrature(z[:, poor], (2.0 * np.pi * start) ** 2)
+    low_pass_near = resonant & (_gap(z, 0, 3) < _NEARLY_COINCIDENT)
+    pairs = [(i, j) for i in range(4) for j in range(i)]
+    near = ~resonant & (np.min([_gap(z, i, j) for i, j in pairs], axis=0) < _NEARLY_COINCIDENT)
+    for rows, method in ((near, _quadrature), (low_pass_near, _interpolated)):
+        if rows.any():
+            flat[rows], rising[rows] = method(z[:, rows], x0)
     return Band(flat.reshape(shape), rising.reshape(shape))
 
 
-def _residues(z: Complexes, x0: float) -> tuple[Floats, Floats, NDArray[np.bool_]]:
-    """Half the integrals from x0 of 1/(x P) and 1/P, P = product of (1 + z x); and where they are sound."""
+def _gap(z: Complexes, i: int, j: int) -> Floats:
+    """Relative distance of two poles; infinite where one of them is absent."""
+    larger = np.maximum(np.abs(z[i]), np.abs(z[j]))
+    present = (z[i] != 0.0) & (z[j] != 0.0)
+    return np.where(present, np.abs(z[i] - z[j]) / np.where(present, larger, 1.0), np.inf)
+
+
+def _residues(z: Complexes, x0: float) -> tuple[Floats, Floats]:
+    """Half the integrals from x0 of 1/(x P) and 1/P, P the product of (1 + z x), poles well apart."""
     count = z.shape[0]
     flat = np.zeros(z.shape[1])
     rising = np.zeros(z.shape[1])
-    worst = np.zeros(z.shape[1])
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         for i in range(count):
             present = z[i] != 0.0
@@ -128,9 +142,27 @@ def _residues(z: Complexes, x0: float) -> tuple[Floats, Floats, NDArray[np.bool_
             ratio = np.where(present, 1.0 / (z[i] * x0), 1.0)
             flat += np.where(present, np.real(weight * np.log1p(ratio)), 0.0)
             rising -= np.where(present, np.real(weight / z[i] * np.log(x0 + 1.0 / z[i])), 0.0)
-            worst = np.fmax(worst, np.where(present, np.abs(weight), 0.0))
-    sound = (worst < _NEARLY_COINCIDENT) & np.isfinite(flat) & np.isfinite(rising)
-    return 0.5 * flat, 0.5 * rising, sound
+    return 0.5 * flat, 0.5 * rising
+
+
+def _interpolated(z: Complexes, x0: float) -> tuple[Floats, Floats]:
+    """The same with the low-pass (the last pole) at or near the real pole (the first).
+
+    The integrals are analytic in the low-pass's z, so they are taken at a few places around and
+    interpolated (Lagrange) to where it is.
+    """
+    places = _SPREAD * np.array([-3.0, -2.0, -1.0, 1.0, 2.0, 3.0])
+    wanted = np.real(z[3] / z[0]) - 1.0
+    flat = np.zeros(z.shape[1])
+    rising = np.zeros(z.shape[1])
+    for place in places:
+        others = places[places != place]
+        weight = np.prod([(wanted - other) / (place - other) for other in others], axis=0)
+        moved = np.concatenate([z[:3], z[:1] * (1.0 + place)])
+        at_flat, at_rising = _residues(moved, x0)
+        flat += weight * at_flat
+        rising += weight * at_rising
+    return flat, rising
 
 
 def _quadrature(z: Complexes, x0: float) -> tuple[Floats, Floats]:

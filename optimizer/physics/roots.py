@@ -24,7 +24,7 @@ def single_positive_root(k0: Floats, k1: Floats, k2: Floats, k3: Floats) -> Floa
     x = root_from_above((k0, k1, k2, k3), 0)
     for _ in range(_NEWTON_STEPS):
         new = _newton(x, (k0, k1, k2, k3))
-        if not np.any(np.abs(new - x) > 1e-14 * x):
+        if not np.any(new < x * (1.0 - 1e-14)):
             return new
         x = new
     return x
@@ -33,7 +33,7 @@ def single_positive_root(k0: Floats, k1: Floats, k2: Floats, k3: Floats) -> Floa
 def root_from_above(k: tuple[Floats, Floats, Floats, Floats], steps: int) -> Floats:
     """An upper bound on that root: a start from above and `steps` of Newton's method; `k`: k0 to k3."""
     k0, k1, k2, k3 = k
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         drop = np.maximum(-k1, 0.0)
         quadratic = (drop + np.sqrt(drop * drop + 4.0 * k2 * k0)) / (2.0 * k2)
         cubic = np.where(k3 > 0.0, np.maximum(np.cbrt(2.0 * k0 / k3), np.sqrt(2.0 * drop / k3)), np.inf)
@@ -138,9 +138,9 @@ def cubic_roots(e1: Floats, e2: Floats, e3: Floats) -> tuple[Floats, Complexes, 
     with np.errstate(divide="ignore", invalid="ignore"):
         c = np.where(r < 0.0, -q / r, p)
         b = np.where(np.abs(r) < 0.5, 1.0 + r, (c - p) / r)
-    half = np.sqrt((b * b - 4.0 * c).astype(np.complex128)) / 2.0
-    first = -0.5 * b - half
-    second = np.where(np.imag(half) == 0.0, c / first, -0.5 * b + half)
+        half = np.sqrt((b * b - 4.0 * c).astype(np.complex128)) / 2.0
+        first = -0.5 * b - half
+        second = np.where(np.imag(half) == 0.0, c / first, -0.5 * b + half)
     return r * e1, np.asarray(first * e1), np.asarray(second * e1)
 
 

@@ -12,7 +12,7 @@ if TYPE_CHECKING:
 FORMAT = "luxsift-shortlist/1"
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, repr=False)
 class Record:
     """What one run decided: `data` is the JSON document that `--save` writes, in SI units."""
 
@@ -42,10 +42,22 @@ class Record:
 
         return frame(self.near_misses, self.data["request"])
 
-    def _repr_html_(self) -> str:
-        from optimizer.record.html import notebook
+    def __repr__(self) -> str:
+        from optimizer.record.views import summary
 
-        if self.candidates:
-            return notebook(self.table, f"{self.data['name']}: {len(self.candidates)} meet the request")
-        what = "near misses: nothing meets the request"
-        return notebook(self.near_miss_table, f"{self.data['name']}: {len(self.near_misses)} {what}")
+        return f"<Record {summary(self.data)}>"
+
+    def __str__(self) -> str:
+        from optimizer.record.views import as_text
+
+        return as_text(self.data, self._shown)
+
+    def _repr_html_(self) -> str:
+        from optimizer.record.views import as_html
+
+        return as_html(self.data, self._shown)
+
+    @property
+    def _shown(self) -> pd.DataFrame:
+        """What to look at first: the candidates, or the near misses where nothing meets."""
+        return self.table if self.candidates else self.near_miss_table

@@ -15,15 +15,19 @@ ASSUMED = "*"
 LINEAR = "^"
 
 
-def choice_columns(
-    rows: Sequence[Candidate], request: Mapping[str, Any], *, narrow: bool = False
-) -> list[Column]:
-    """What each row buys: parts, wiring, reference and feedback; `narrow` folds the wiring's name."""
+def part_columns(rows: Sequence[Candidate], *, narrow: bool = False) -> list[Column]:
+    """The parts of each row and how they are wired; `narrow` folds the wiring's name."""
     wirings = [row["wiring"].replace("-", "-\n") if narrow else row["wiring"] for row in rows]
-    columns = [
+    return [
         Column("photodiode", tuple(_names(rows, "photodiode")), gives=True),
         Column("op-amp", tuple(_names(rows, "opamp")), gives=True),
         Column("wiring", tuple(wirings)),
+    ]
+
+
+def value_columns(rows: Sequence[Candidate], request: Mapping[str, Any]) -> list[Column]:
+    """The values around the parts: reference, feedback, and the low-pass where one may be chosen."""
+    columns = [
         Column("Vref", tuple(_reference(row) for row in rows), right=True),
         Column("Rf", tuple(_resistance(row) for row in rows), right=True),
         Column("Cf", tuple(_capacitance(row) for row in rows), right=True),
@@ -34,12 +38,9 @@ def choice_columns(
 
 
 def figure_columns(
-    rows: Sequence[Candidate], request: Mapping[str, Any], *, narrow: bool = False, tall: bool = True
+    rows: Sequence[Candidate], request: Mapping[str, Any], *, tall: bool = True
 ) -> list[Column]:
-    """What each row does: the figures, and the limiting target with its margin in words.
-
-    `narrow` folds the limiting target onto two lines, `tall` the longer headings.
-    """
+    """The figures of each row; `tall` folds the longer headings."""
 
     def cells(name: str) -> tuple[str, ...]:
         return tuple(_marked_figure(row, name, request) for row in rows)
@@ -50,8 +51,13 @@ def figure_columns(
         Column("dynamic\nrange" if tall else "dyn. range", cells("dynamic_range"), right=True),
         Column("supply\ncurrent" if tall else "supply", cells("supply_current"), right=True),
         Column("cost", cells("cost"), right=True),
-        Column("limiting target", tuple(limiting(row, "\n" if narrow else " ") for row in rows)),
     ]
+
+
+def limiting_column(rows: Sequence[Candidate], *, narrow: bool = False) -> Column:
+    """The limiting target of each row with its margin; `narrow` folds it onto two lines."""
+    texts = tuple(limiting(row, "\n" if narrow else " ") for row in rows)
+    return Column("limiting target", texts, gives=True)
 
 
 def limiting(row: Candidate, joint: str = " ") -> str:

@@ -74,7 +74,7 @@ def _targets(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> 
         Column("target", tuple(names)),
         Column("value", tuple(value for value, _limit in pairs), right=True),
         Column("limit", tuple(limits)),
-        Column("margin", tuple(_margin(t, row["limiting"], comfort) for t in row["targets"])),
+        Column("margin", tuple(_margin(t, row["limiting"], comfort) for t in row["targets"]), gives=True),
     )
     widths = fit(columns, width - 2)
     out = [Text("  " + line, "bold") for line in lines(columns, widths, -1)]

@@ -61,12 +61,12 @@ def _blanks(found: Inspection, width: int) -> list[Text]:
     if not short:
         return []
     table = (
-        Column("blank in", tuple(column.column for column in short)),
+        Column("blank in", tuple(column.column for column in short), gives=True),
         Column("parts", tuple(count(column.unknown) for column in short), right=True),
         Column("known", tuple(count(column.known) for column in short), right=True),
         Column("a blank is", tuple(column.default or "unknown" for column in short), gives=True),
         Column(
-            "[assume] would admit",
+            "[assume]\nwould admit",
             tuple("" if column.admits is None else count(column.admits) for column in short),
             right=True,
         ),

@@ -19,10 +19,17 @@ PROVEN = "The ranking above is proven; near misses and counts were not finished.
 NONE_PROVEN = "Nothing meets the request, which is proven; near misses and counts were not finished."
 OPEN = "Best so far; each row meets the request, but the ranking is NOT proven, better ones may exist:"
 NONE_YET = "Nothing found so far meets the request, which proves nothing yet."
+LOST = (
+    "Nothing is proven yet, and what the workers had found by then is lost; one worker alone would show the "
+    "best rows so far."
+)
 
 
-def interrupted(record: Record, last: Progress | None, width: int) -> list[Text]:
-    """What had been proved at the `last` report of the search, and the best rows found by then."""
+def interrupted(record: Record, last: Progress | None, width: int, *, workers: int = 1) -> list[Text]:
+    """What had been proved at the `last` report of the search, and the best rows found by then.
+
+    Several `workers` hand over what they found at their end only.
+    """
     data, rows = record.data, record.candidates
     seconds, proven = data["search"]["seconds"], data["search"]["proven"]
     out = styled(f"luxsift: interrupted after {seconds:.3g} s; nothing was saved.", width, "bold")
@@ -31,6 +38,8 @@ def interrupted(record: Record, last: Progress | None, width: int) -> list[Text]
     )
     if proven:
         return out + table + styled(PROVEN if rows else NONE_PROVEN, width)
+    if workers > 1 and not rows:
+        return out + styled(LOST, width)
     return out + styled(_proved(last), width) + styled(OPEN if rows else NONE_YET, width) + table
 
 

@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
-import textwrap
+import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 from rich.cells import cell_len, chop_cells
 
+from optimizer.report.paragraphs import UNBROKEN
+
 GAP = 2
+WORDS = re.compile(r"(?<= )(?=[^ ])")
+JOINTS = re.compile(r"(?<=\w[-_])(?=\w)")
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,12 +64,31 @@ def lines(columns: Sequence[Column], widths: Sequence[int], row: int) -> Iterato
 
 
 def _folded(text: str, width: int) -> list[str]:
-    """`text` in lines no wider than `width`: parted at spaces and hyphens, inside a word at need."""
-    folded: list[str] = []
-    for line in text.split("\n"):
-        pieces = textwrap.wrap(line, width) if cell_len(line) > width else [line]
-        folded += [part for piece in pieces for part in (chop_cells(piece, width) or [""])]
-    return folded
+    """`text` in lines no wider than `width`: parted at spaces; inside a word that is wider at its hyphens
+    and underscores, at need anywhere.
+    """
+    whole = (piece for line in text.split("\n") for piece in _wrapped(line, width))
+    return [line.replace(UNBROKEN, " ") for line in whole]
+
+
+def _wrapped(line: str, width: int) -> list[str]:
+    if cell_len(line) <= width:
+        return [line]
+    wrapped = [""]
+    for piece in _pieces(line, width):
+        if cell_len((wrapped[-1] + piece).rstrip()) <= width:
+            wrapped[-1] += piece
+            continue
+        word = piece.rstrip()
+        *full, last = chop_cells(word, width) or [""]
+        wrapped += [*full, last + piece[len(word) :]]
+    return [part.rstrip() for part in wrapped if part.strip()] or [""]
+
+
+def _pieces(line: str, width: int) -> Iterator[str]:
+    """The words with the space behind each, those wider than a line in parts."""
+    for word in WORDS.split(line):
+        yield from [word] if cell_len(word.rstrip()) <= width else JOINTS.split(word)
 
 
 def _padded(text: str, width: int, right: bool) -> str:

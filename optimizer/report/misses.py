@@ -7,7 +7,7 @@ from typing import Any
 
 from rich.text import Text
 
-from optimizer.report.paragraphs import paragraph
+from optimizer.report.paragraphs import paragraph, styled
 from optimizer.report.table import ranked_table
 from optimizer.report.words import beside, margin_words, side
 
@@ -23,31 +23,49 @@ def near_miss_lines(record: Mapping[str, Any], width: int) -> list[Text]:
     plural = "pairs that miss" if len(rows) > 1 else "pair that misses"
     title = f"Near misses: {len(rows)} eligible {plural} a target{nearest}"
     request = record["request"]
-    table = ranked_table(rows, request, width, note=lambda row: missed_notes(row, request, width - 6))
-    return [Text(title, "bold"), *table]
+    table = ranked_table(rows, request, width, note=lambda row, room: missed_notes(row, request, room))
+    return [*styled(title, width, "bold"), *table]
 
 
 def missed_notes(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> list[str]:
     """Every missed target of one near miss with value, limit and by how much, folded to `width`."""
-    missed = sorted((t for t in row["targets"] if t["margin"] < 0), key=lambda t: float(t["margin"]))
-    parts = [_missed(target, request) for target in missed]
-    return paragraph("; ".join(parts), width)
+    return paragraph("; ".join(_missed(target, request) for target in _worst_first(row)), width)
 
 
 def blocking_lines(record: Mapping[str, Any], width: int) -> list[Text]:
-    """Which single target, if dropped, would let something through; only where nothing meets."""
+    """What stands in the way where nothing meets: the single targets that, if dropped, would let something
+    through, and the targets that the nearest miss misses.
+    """
     if record["candidates"] or record["search"].get("impossible"):
         return []
-    names: Sequence[str] = record["search"].get("blocking", ())
-    if names:
-        text = f"Dropping this one target would let something through: {names[0]}."
-        if len(names) > 1:
-            text = f"Dropping any one of these targets would let something through: {', '.join(names)}."
-    elif record["near_misses"]:
-        text = "No single target, if dropped, would let something through: at least two must give."
-    else:
+    misses = record["near_misses"]
+    if not misses:
         text = "No pair is eligible, so no target stands in the way: see below why they dropped out."
-    return [Text(line) for line in paragraph(text, width)]
+        return styled(text, width)
+    blocking = _blocking(record["search"].get("blocking", ()))
+    return styled(blocking, width) + styled(_nearest(_worst_first(misses[0])), width)
+
+
+def _blocking(names: Sequence[str]) -> str:
+    if not names:
+        return "No single target, if dropped, would let something through."
+    which = "this one target" if len(names) == 1 else "any one of these targets"
+    return f"Dropping {which} would let something through: {', '.join(names)}."
+
+
+def _nearest(missed: Sequence[Mapping[str, Any]]) -> str:
+    names = [target["name"] for target in missed]
+    if len(names) == 1:
+        return f"The nearest miss misses {names[0]} alone."
+    return (
+        f"The nearest miss misses {', '.join(names[:-1])} and {names[-1]}: it is the setting whose worst "
+        "miss is smallest, which tends to spread the miss over several targets."
+    )
+
+
+def _worst_first(row: Mapping[str, Any]) -> list[Mapping[str, Any]]:
+    """The targets that `row` misses."""
+    return sorted((t for t in row["targets"] if t["margin"] < 0), key=lambda t: float(t["margin"]))
 
 
 def _missed(target: Mapping[str, Any], request: Mapping[str, Any]) -> str:

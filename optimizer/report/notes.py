@@ -14,6 +14,7 @@ from optimizer.report.paragraphs import styled
 from optimizer.report.words import count, several, spoken
 from optimizer.vocabulary import COLUMNS
 
+RANKS_NAMED = 8  # numbers of one footnote; beyond, the rows are only counted
 ORDERS = {
     "cost": "lowest cost first",
     "margin": "largest margin first",
@@ -96,16 +97,18 @@ def _ranks(rows: Sequence[Mapping[str, Any]], name: str) -> str:
     ranks = [row["rank"] for row in rows if name in row["assumed"]]
     if len(ranks) == len(rows) > 1:
         return "every row"
-    return f"row {ranks[0]}" if len(ranks) == 1 else f"rows {', '.join(_runs(ranks))}"
+    runs = _runs(ranks)
+    if sum(run.count("-") + 1 for run in runs) > RANKS_NAMED:
+        return f"in {count(len(ranks))} rows"
+    return f"row {ranks[0]}" if len(ranks) == 1 else f"rows {', '.join(runs)}"
 
 
 def _runs(ranks: Sequence[int]) -> list[str]:
-    """Rising numbers with runs of three or more written '2-8'."""
+    """Rising numbers one by one, with runs of three or more written '2-8'."""
     runs: list[list[int]] = []
     for rank in ranks:
         if runs and rank == runs[-1][-1] + 1:
             runs[-1].append(rank)
         else:
             runs.append([rank])
-    texts = (f"{run[0]}-{run[-1]}" if len(run) > 2 else ", ".join(map(str, run)) for run in runs)
-    return list(texts)
+    return [text for run in runs for text in ([f"{run[0]}-{run[-1]}"] if len(run) > 2 else map(str, run))]

@@ -8,7 +8,7 @@ from itertools import pairwise
 
 from rich.text import Text
 
-UNBROKEN = "\u00a0"  # stands for the space between a number and its unit while a paragraph is folded
+UNBROKEN = "\u00a0"  # stands for the space between a number and its unit while text is folded
 NUMBER = re.compile(r"\(?-?[0-9.,]+")
 BODIES = ("IEC", "ISO", "EN")
 
@@ -34,6 +34,6 @@ def _bound(text: str) -> str:
     words = text.split(" ")
     joined = words[0]
     for before, word in pairwise(words):
-        unit = NUMBER.fullmatch(before) and len(word) <= 6
+        unit = NUMBER.fullmatch(before) and not before.endswith(",") and len(word) <= 6
         joined += (UNBROKEN if unit or before.lstrip("(") in BODIES else " ") + word
     return joined

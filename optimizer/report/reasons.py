@@ -9,7 +9,7 @@ from rich.text import Text
 
 from optimizer.errors import clean
 from optimizer.report.layout import Column, fit, lines
-from optimizer.report.paragraphs import styled
+from optimizer.report.paragraphs import UNBROKEN, styled
 from optimizer.report.words import count, several
 
 ASSUMABLE = (
@@ -63,7 +63,7 @@ def _rows(dropped: Mapping[str, int]) -> list[tuple[str, int, str]]:
     rows = [(key, n, WORDS.get(key, unknown)) for key, n in dropped.items() if not _is_blank(key)]
     if blanks:
         counted = sorted(blanks.items(), key=lambda item: (-item[1], item[0]))
-        columns = ", ".join(f"{clean(column)} {count(n)}" for column, n in counted)
+        columns = ", ".join(f"{clean(column)}{UNBROKEN}{count(n)}" for column, n in counted)
         rows.append(
             (MISSING, sum(blanks.values()), f"a value that a target or check needs is blank: {columns}")
         )

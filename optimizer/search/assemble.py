@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,6 +15,9 @@ from optimizer.search.result import Candidate, Reference, TargetValue
 from optimizer.search.space import Choice, Space, settings
 
 Floats = NDArray[np.float64]
+
+Used = tuple[int, tuple[str, ...]]
+"""A family's catalog row, and the columns of it that a setting uses."""
 
 LINEAR_MODEL = ("dynamic_range", "output_noise_dark")
 """Figures that are only the linear model's where the dark output rests on the rail."""
@@ -94,12 +97,10 @@ def _assumed(space: Space, catalogs: Catalogs, choice: Choice, row: int) -> tupl
     unused |= _needless(space)
     names = _filled("opamp", catalogs.opamps, o, unused)
     names |= _filled("photodiode", catalogs.photodiodes, d, unused)
-    names |= _family_filled(
-        "resistor", catalogs.resistors, space.resistors.names, int(space.resistors.family[r])
-    )
-    if space.capacitors.family[c] >= 0:
-        family = int(space.capacitors.family[c])
-        names |= _family_filled("capacitor", catalogs.capacitors, space.capacitors.names, family)
+    for row_of, used in _families(space, x, r, c):
+        parts = catalogs.resistors if row_of == "resistor" else catalogs.capacitors
+        for family, columns in used:
+            names |= {f"{row_of}.{n}" for n in columns if n in parts.assumed and parts.assumed[n][family]}
     return tuple(sorted(names))
 
 
@@ -125,6 +126,16 @@ def _filled(role: str, parts: Parts, row: int, unused: set[str]) -> set[str]:
     return {f"{role}.{name}" for name, mask in parts.assumed.items() if mask[row] and name not in unused}
 
 
-def _family_filled(role: str, parts: Parts, names: tuple[str, ...], family: int) -> set[str]:
-    row = int(np.flatnonzero(parts.text["family"] == names[family])[0])
-    return _filled(role, parts, row, {"board_area", "tolerance", "tempco"})
+def _families(space: Space, context: int, resistor: int, capacitor: int) -> Iterator[tuple[str, list[Used]]]:
+    """By role, the catalog rows of the families of a setting and the columns that its figures use."""
+    x, r, c = space.contexts, space.resistors, space.capacitors
+    offered = ("price", "from", "to")
+    resistors: list[Used] = [(r.rows[int(r.family[resistor])], (*offered, "parasitic_capacitance"))]
+    capacitors: list[Used] = []
+    if c.family[capacitor] >= 0:
+        capacitors.append((c.rows[int(c.family[capacitor])], offered))
+    if x.divided[context]:
+        resistors.append((int(x.resistors[context]), offered))
+        capacitors.append((int(x.bypass[context]), offered))
+    yield "resistor", resistors
+    yield "capacitor", capacitors

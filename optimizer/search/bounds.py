@@ -107,8 +107,11 @@ def swing(v: View, bench: Bench, rf_low: Floats) -> Floats:
     stop = np.minimum(v.fall_from, ceiling)
     up = np.minimum(v.upper[0] - start * bottom, v.upper[1] - start * top)
     down = np.minimum(stop * bottom - v.lower[0], stop * top - v.lower[1])
-    up = np.where(v.rises & (start <= ceiling + 1e-9 * (1.0 + np.abs(ceiling))), up, -np.inf)
-    down = np.where(v.falls & (stop >= floor - 1e-9 * (1.0 + np.abs(floor))), down, -np.inf)
+    near = 1e-9 * (1.0 + np.abs(v.upper[1]))
+    rises = v.rises & (start <= ceiling + near) & (floor <= v.rise_to + near)
+    falls = v.falls & (stop >= floor - near) & (ceiling >= v.fall_to - near)
+    up = np.where(rises, up, -np.inf)
+    down = np.where(falls, down, -np.inf)
     return np.maximum(up, down)
 
 

@@ -22,8 +22,9 @@ class Contexts:
     """One element a context: `wiring` (index into WIRINGS), `divided`, `vref` [V] at nominal, ...
 
     `top`, `bottom` [ohm] (NaN on ground), `source` = R1 || R2 [ohm] (0 on ground), `current` [A]
-    and `cost` of the divider, `bias` = reverse bias [V] at nominal. `group` numbers the runs of one
-    wiring and one kind of reference; inside a group Vref rises.
+    and `cost` of the divider, `resistors` and `bypass` the catalog rows of its families (-1 on ground),
+    `bias` = reverse bias [V] at nominal. `group` numbers the runs of one wiring and one kind of
+    reference; inside a group Vref rises.
     """
 
     wiring: Ints
@@ -37,6 +38,8 @@ class Contexts:
     source: Floats
     current: Floats
     cost: Floats
+    resistors: Ints
+    bypass: Ints
     bias: Floats
     group: Ints
 
@@ -56,15 +59,19 @@ def declared(request: Request, levels: Sequence[Level]) -> int:
 def build(request: Request, levels: Sequence[Level]) -> Contexts:
     """All contexts that can exist: reverse bias above 0 where biased, dividers that can be bought."""
     supply, space = request.supply, request.space
-    rows: list[tuple[int, float, float, float]] = []
+    rows: list[tuple[float, ...]] = []
     for wiring, name in enumerate(WIRINGS):
         if name not in space.wirings:
             continue
         if "ground" in space.references:
-            rows.append((wiring, np.nan, np.nan, 0.0))
+            rows.append((wiring, np.nan, np.nan, 0.0, -1, -1))
         if "divider" in space.references:
-            rows.extend((wiring, v.top, v.bottom, v.cost) for v in levels if np.isfinite(v.cost))
-    table = np.array(rows, dtype=float).reshape(-1, 4)
+            rows.extend(
+                (wiring, v.top, v.bottom, v.cost, v.resistors, v.bypass)
+                for v in levels
+                if np.isfinite(v.cost)
+            )
+    table = np.array(rows, dtype=float).reshape(-1, 6)
     wirings, top, bottom, cost = table[:, 0].astype(np.int64), table[:, 1], table[:, 2], table[:, 3]
     divided = np.isfinite(top)
     vref = np.where(divided, reference.divided(supply.high, supply.low, top, bottom), 0.0)
@@ -86,6 +93,8 @@ def build(request: Request, levels: Sequence[Level]) -> Contexts:
         source=np.where(divided, reference.parallel(top, bottom), 0.0)[keep],
         current=np.where(divided, reference.current(supply.high, supply.low, top, bottom), 0.0)[keep],
         cost=cost[keep],
+        resistors=table[keep, 4].astype(np.int64),
+        bypass=table[keep, 5].astype(np.int64),
         bias=bias[keep],
         group=group[: int(keep.sum())],
     )

@@ -52,6 +52,7 @@ class Crew:
     last: float = 0.0
     met: list[Found] = field(default_factory=list)
     current: Hunt | None = None
+    parts: list[Found] = field(default_factory=list)
 
     def hunt(self, goals: Goals, rules: Rules, pairs: feed.Pairs, *, first_only: bool = False) -> Found:
         """The best `rules.show` pairs of `pairs`; with `first_only` any that meet will do."""
@@ -70,6 +71,8 @@ class Crew:
         """What had been found when the work stopped; of the hunt for pairs that meet only."""
         if self.met:
             return self.met[0]
+        if self.parts:
+            return merged(self.index.space, self.parts, self.index.space.request.ranking.show)
         if self.current is None:
             return nothing(len(self.index.space.limits))
         self.evaluated += self.current.evaluated
@@ -120,13 +123,13 @@ class Crew:
         self, jobs: Sequence[Future[Found]], shares: Sequence[feed.Pairs], total: int
     ) -> list[Found]:
         """The findings of all workers, with progress as each is done."""
-        parts: list[Found] = []
+        self.parts = []
         for done, job in enumerate(jobs, start=1):
-            parts.append(job.result())
+            self.parts.append(job.result())
             if self.progress is not None:
                 count = sum(share.size for share in shares[:done])
-                self.progress(Progress(total, count, sum(p.evaluated for p in parts), None))
-        return parts
+                self.progress(Progress(total, count, sum(p.evaluated for p in self.parts), None))
+        return self.parts
 
 
 @contextmanager

@@ -51,6 +51,17 @@ def _widest(space: Space) -> float:
     return float(min(spans))
 
 
+def _swing(space: Space) -> float:
+    """The largest signal [V] that any output range leaves; one that rests on the rail starts from there."""
+    bench = space.bench
+    if not (bench.dark_on_rail and bench.low == 0.0):
+        return _widest(space) - 2.0 * bench.guard
+    tops = [bench.high * end for end in bench.ends]
+    if bench.converter is not None and not bench.converter_follows:
+        tops.append(bench.converter[1])
+    return max(_widest(space), min(tops)) - bench.guard
+
+
 def _window(space: Space) -> Iterator[str]:
     bench = space.bench
     if bench.converter is not None and not bench.converter_follows:
@@ -77,7 +88,7 @@ def _converter(space: Space) -> Iterator[str]:
         return
     floor, ceiling, bits = bench.converter
     step = float(np.sqrt(noise.quantisation(ceiling - floor, bits)))
-    usable = max(_widest(space) - bench.guard, 0.0)
+    usable = max(_swing(space), 0.0)
     if step <= 0.0 or usable <= 0.0:
         return
     best = 20.0 * np.log10(usable * bench.weakest / (bench.strongest + bench.background) / step)

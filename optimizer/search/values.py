@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from collections.abc import Set as AbstractSet
 from dataclasses import dataclass
+from decimal import Decimal
 from math import gcd
 
 import numpy as np
@@ -21,11 +24,13 @@ Ints = NDArray[np.int64]
 class Passives:
     """Choices of one passive, grouped by family, rising within each.
 
-    `family` is an index into `names` (sorted by name), `value` in ohm or F, `parasitic` in F, `price`
-    a piece at the build quantity. `declared` counts them before cheaper twins were dropped.
+    `family` is an index into `names` (sorted by name, then maker) and `rows` (their catalog rows),
+    `value` in ohm or F, `parasitic` in F, `price` a piece at the build quantity. `declared` counts
+    them before any was dropped.
     """
 
     names: tuple[str, ...]
+    rows: tuple[int, ...]
     family: Ints
     value: Floats
     parasitic: Floats
@@ -40,11 +45,16 @@ class Passives:
 
 @dataclass(frozen=True, slots=True)
 class Level:
-    """One divider: resistors `top` and `bottom` [ohm] and what the parts cost (NaN: not to be had)."""
+    """One divider: resistors `top` and `bottom` [ohm], what the parts cost (NaN: not to be had), and
+
+    the catalog rows of the families that the resistors and the bypass come from (-1: none).
+    """
 
     top: float
     bottom: float
     cost: float
+    resistors: int = -1
+    bypass: int = -1
 
 
 def family_values(parts: Parts, row: int) -> Floats:
@@ -91,52 +101,63 @@ def capacitors(parts: Parts, request: Request) -> Passives:
     if request.space.no_capacitor:
         family, value, price = np.r_[-1, family], np.r_[0.0, value], np.r_[0.0, price]
         declared += 1
-    return Passives(every.names, family, value, np.zeros(value.size), price, declared)
+    return Passives(every.names, every.rows, family, value, np.zeros(value.size), price, declared)
 
 
 def _collect(parts: Parts, request: Request, span: tuple[float, float]) -> Passives:
     name, maker = parts.text["family"], parts.text["maker"]
-    rows = sorted(admitted(parts, request.space), key=lambda row: (str(name[row]), str(maker[row])))
     prices = unit_price(parts.points["price"], request.quantity)
     parasitic = parts.number.get("parasitic_capacitance", np.zeros(parts.size))
-    names: list[str] = []
-    columns: list[tuple[Floats, int]] = []
-    declared = 0
-    for row in rows:
-        values = family_values(parts, row)
-        values = values[(values >= span[0]) & (values <= span[1])]
-        declared += values.size
-        if values.size and np.isfinite(prices[row]):
-            columns.append((values, row))
-            names.append(str(parts.text["family"][row]))
-    family = np.concatenate([np.full(v.size, i) for i, (v, _) in enumerate(columns)] or [np.zeros(0, int)])
-    chosen = np.array([row for _, row in columns], dtype=int)[family]
-    value = np.concatenate([v for v, _ in columns] or [np.zeros(0)])
-    return Passives(tuple(names), family, value, parasitic[chosen], prices[chosen], declared)
+    inside = [
+        v[(v >= span[0]) & (v <= span[1])] for v in (family_values(parts, r) for r in range(parts.size))
+    ]
+    rows = [r for r in admitted(parts, request.space) if inside[r].size and np.isfinite(prices[r])]
+    rows.sort(key=lambda r: (str(name[r]), str(maker[r])))
+    family = np.repeat(np.arange(len(rows)), [inside[r].size for r in rows]).astype(np.int64)
+    chosen = np.array(rows, dtype=np.int64)[family]
+    return Passives(
+        names=tuple(str(name[r]) for r in rows),
+        rows=tuple(rows),
+        family=family,
+        value=np.concatenate([np.zeros(0), *(inside[r] for r in rows)]),
+        parasitic=parasitic[chosen],
+        price=prices[chosen],
+        declared=sum(v.size for v in inside),
+    )
 
 
 def divider_levels(request: Request, resistor_parts: Parts, capacitor_parts: Parts) -> list[Level]:
     """One divider a ratio, the largest pair of it, by rising Vref; cost NaN where no family offers it."""
     divider = request.space.divider
-    offered = _cheapest(resistor_parts, request)
-    bypass = _cheapest(capacitor_parts, request)
-    capacitor = min((cost for values, cost in bypass if divider.bypass in values), default=np.nan)
+    resistor_offers = _offers(resistor_parts, request)
+    capacitor, bypass = _cheapest(_offers(capacitor_parts, request), {divider.bypass})
     levels = []
     for top, bottom in _ratios(series_values(divider.series, divider.low, divider.high)):
-        pair = min((cost for values, cost in offered if top in values and bottom in values), default=np.nan)
-        levels.append(Level(top, bottom, 2.0 * pair + capacitor))
+        piece, row = _cheapest(resistor_offers, {top, bottom})
+        levels.append(Level(top, bottom, 2.0 * piece + capacitor, row, bypass))
     return levels
 
 
-def _cheapest(parts: Parts, request: Request) -> list[tuple[frozenset[float], float]]:
+def _offers(parts: Parts, request: Request) -> list[tuple[float, int, frozenset[float]]]:
+    """Price a piece, catalog row and values of each admitted family, cheapest first (ties: by name)."""
     prices = unit_price(parts.points["price"], request.quantity)
     rows = [row for row in admitted(parts, request.space) if np.isfinite(prices[row])]
-    return [(frozenset(family_values(parts, row).tolist()), float(prices[row])) for row in rows]
+    rows.sort(key=lambda row: (prices[row], str(parts.text["family"][row]), str(parts.text["maker"][row])))
+    return [(float(prices[row]), row, frozenset(family_values(parts, row).tolist())) for row in rows]
+
+
+def _cheapest(
+    offers: Sequence[tuple[float, int, frozenset[float]]], wanted: AbstractSet[float]
+) -> tuple[float, int]:
+    """Price and row of the cheapest family that offers all of `wanted`; NaN and -1 where none does."""
+    return next(((price, row) for price, row, values in offers if wanted <= values), (float("nan"), -1))
 
 
 def _ratios(values: Floats) -> list[tuple[float, float]]:
     """(R1, R2) with the largest sum for each exact R2/R1, by rising ratio."""
-    digits = [round(float(v) * 1000.0) for v in values]
+    decimals = [Decimal(repr(float(v))) for v in values]
+    shift = max((-int(d.as_tuple().exponent) for d in decimals), default=0)
+    digits = [int(d.scaleb(max(shift, 0))) for d in decimals]
     best: dict[tuple[int, int], tuple[int, float, float]] = {}
     for n1, v1 in zip(digits, values, strict=True):
         for n2, v2 in zip(digits, values, strict=True):

@@ -49,7 +49,9 @@ class Index:
     amps: Amps
     diode_passes: NDArray[np.int32]
     rising: RangeMin
+    rising_most: RangeMin
     falling: RangeMin
+    falling_least: RangeMin
     bias_least: RangeMin
     bias_most: RangeMin
     cost: RangeMin
@@ -93,7 +95,9 @@ class View:
     rises: Bools
     falls: Bools
     rise_from: Floats
+    rise_to: Floats
     fall_from: Floats
+    fall_to: Floats
     divided: Bools
     buffered: Bools
     on_rail: Bools
@@ -126,7 +130,9 @@ def lay_out(space: Space) -> Index:
         amps=_amps(space),
         diode_passes=_passes(space.diode_verdicts.code),
         rising=RangeMin.of(np.where(x.sign > 0, x.vref, np.inf)),
+        rising_most=RangeMin.of(np.where(x.sign > 0, -x.vref, np.inf)),
         falling=RangeMin.of(np.where(x.sign < 0, -x.vref, np.inf)),
+        falling_least=RangeMin.of(np.where(x.sign < 0, x.vref, np.inf)),
         bias_least=RangeMin.of(x.bias),
         bias_most=RangeMin.of(-x.bias),
         cost=RangeMin.of(x.cost),
@@ -233,7 +239,9 @@ def _of_contexts(index: Index, boxes: Boxes, x: Span, counts: Ints) -> dict[str,
         "cin_low": diodes.capacitance[d, index.bias_most.position(x)] + amps.node[o],
         "cin_high": diodes.capacitance[d, index.bias_least.position(x)] + amps.node[o],
         "rise_from": index.rising.least(x),
+        "rise_to": -index.rising_most.least(x),
         "fall_from": -index.falling.least(x),
+        "fall_to": index.falling_least.least(x),
         "source_low": index.source.least(x),
     }
 

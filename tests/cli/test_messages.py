@@ -2,7 +2,12 @@
 
 from __future__ import annotations
 
-from optimizer.cli.messages import ALIKE, LONGEST_CELL, LONGEST_WORDS, MOST, error_lines
+from pathlib import Path
+
+import pytest
+
+from optimizer.cli import main
+from optimizer.cli.messages import ALIKE, LONGEST_CELL, LONGEST_WORDS, MOST, StudyError, error_lines
 from optimizer.errors import InputError, OutputError, Problem
 
 
@@ -29,6 +34,44 @@ def test_problems_of_many_kinds_are_capped_and_counted() -> None:
     lines = error_lines(InputError(many))
     assert len(lines) == MOST + 2
     assert lines[-1].strip() == f"... and {1000 - MOST} more"
+
+
+def heading(file: str, request: str) -> str:
+    return error_lines(StudyError([Problem(file, 3, "gbw", "x", "expected a frequency")], request))[0]
+
+
+def test_the_folder_that_catalogs_are_named_from_stands_above_where_it_is_another(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (tmp_path / "receiver").mkdir()
+    monkeypatch.chdir(tmp_path)
+    said = "luxsift: 1 problem; catalogs are named as seen from the folder receiver"
+    assert heading("opamps.csv", "receiver/request.toml") == said
+    assert heading("../catalogs/opamps.csv", "receiver/request.toml") == said
+    for file, request in (
+        ("opamps.csv", "request.toml"),
+        ("opamps.csv", str(tmp_path / "request.toml")),
+        ("opamps.csv", "receiver/../request.toml"),
+        ("receiver/request.toml", "receiver/request.toml"),
+        ("command line", "receiver/request.toml"),
+        (str(tmp_path / "opamps.csv"), "receiver/request.toml"),
+    ):
+        assert heading(file, request) == "luxsift: 1 problem"
+
+
+def test_a_problem_in_a_catalog_of_another_folder_is_told_with_that_folder(
+    request_file: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    opamps = request_file.parent / "opamps.csv"
+    opamps.write_text(opamps.read_text().replace("350 kHz", "fast", 1))
+    monkeypatch.chdir(request_file.parent.parent)
+    assert main(["shortlist", f"{request_file.parent.name}/request.toml"]) == 2
+    first, second = capsys.readouterr().err.splitlines()
+    assert first.endswith(f"catalogs are named as seen from the folder {request_file.parent.name}")
+    assert second.startswith("  opamps.csv, line 2, gbw: found 'fast'")
+    monkeypatch.chdir(request_file.parent)
+    assert main(["shortlist", "request.toml"]) == 2
+    assert capsys.readouterr().err.splitlines()[0] == "luxsift: 1 problem"
 
 
 def test_other_errors_are_one_line() -> None:

@@ -102,7 +102,28 @@ def test_interrupted_before_the_search(request_file: Path, answer: Answer, capsy
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr("optimizer.study.load", stop)
         assert main(["shortlist", str(request_file)]) == 130
-    assert "interrupted before anything was decided" in capsys.readouterr().err
+    assert "interrupted; nothing was decided or written" in capsys.readouterr().err
+
+
+def test_interrupted_after_the_search(
+    request_file: Path, answer: Answer, capsys: Captured, monkeypatch: pytest.MonkeyPatch, tmp_path: Path
+) -> None:
+    def stop(*_args: object) -> None:
+        raise KeyboardInterrupt
+
+    answer(outcome())
+    monkeypatch.setattr(os, "fsync", stop)
+    assert main(["shortlist", str(request_file), "--save", str(tmp_path / "r.json")]) == 130
+    err = capsys.readouterr().err
+    assert "interrupted after the search, while its answer was being written" in err
+    assert "nothing was decided" not in err
+    assert not (tmp_path / "r.json").exists()
+
+
+def test_interrupted_workers_are_told_of(request_file: Path, answer: Answer, capsys: Captured) -> None:
+    answer(Interrupted(outcome((), (), proven=False)))
+    assert main(["shortlist", str(request_file), "--workers", "2"]) == 130
+    assert "what the workers had found by then is lost" in " ".join(capsys.readouterr().err.split())
 
 
 @pytest.mark.parametrize(
@@ -262,7 +283,7 @@ def test_rows_left_out_are_listed(
     opamps.write_text(opamps.read_text().replace("350 kHz", "fast", 1))
     assert main(["shortlist", str(request_file)]) == 0
     out, err = capsys.readouterr()
-    assert "left out of the catalogs as source.toml says: 1 row\n" in err
+    assert "left out of the catalogs as source.toml says: 1 row; catalogs are named as seen from" in err
     assert "opamps.csv, line 2" in err
     assert "Left out of the catalogs as source.toml says: 1 row, opamps.csv (1)." in " ".join(out.split())
 

@@ -23,9 +23,17 @@ def test_what_start_writes_is_read_without_a_problem(tmp_path: Path) -> None:
     assert sorted(os.listdir(tmp_path / "new" / "folder")) == sorted(STARTER)
 
 
-def test_start_names_the_next_command(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    main(["start", str(tmp_path / "a folder")])
-    assert f"luxsift shortlist '{tmp_path}/a folder/request.toml'" in capsys.readouterr().out
+def test_start_names_one_file_a_line_and_the_next_command(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    main(["start", "a folder"])
+    first, *files, label, command = capsys.readouterr().out.splitlines()
+    assert "invented" in first
+    assert files == [f"  a folder/{name}" for name in STARTER]
+    assert label == "Next, type:"
+    assert command == "  luxsift shortlist 'a folder/request.toml'"
+    assert max(map(len, (first, *files, label, command))) <= 60
 
 
 def test_start_writes_here_when_no_folder_is_named(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -66,6 +74,22 @@ def test_a_write_that_fails_half_way_leaves_nothing(
     monkeypatch.setattr(Path, "open", fail)
     assert main(["start", str(tmp_path)]) == 2
     assert "No space left on device; nothing was written" in capsys.readouterr().err
+    assert os.listdir(tmp_path) == []
+
+
+def test_an_interrupt_half_way_leaves_nothing(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    opened = Path.open
+
+    def stop(path: Path, mode: str = "r", *rest: object) -> object:
+        if path.name == "photodiodes.csv" and mode == "xb":
+            raise KeyboardInterrupt
+        return opened(path, mode)
+
+    monkeypatch.setattr(Path, "open", stop)
+    assert main(["start", str(tmp_path)]) == 130
+    assert "interrupted; nothing was decided or written" in capsys.readouterr().err
     assert os.listdir(tmp_path) == []
 
 

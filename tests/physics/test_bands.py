@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import warnings
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from itertools import pairwise
 
 import numpy as np
@@ -75,18 +75,18 @@ POLES: dict[str, Sequence[complex]] = {
     "a pair at 45 degrees": (1e-6 + 1e-6j, 1e-6 - 1e-6j),
     "a slow pole before a resonance": (1e-3, 1e-8 + 1e-7j, 1e-8 - 1e-7j),
 }
-LOW_PASSES = {
+LOW_PASSES: dict[str, Callable[[Sequence[complex]], float]] = {
     "none": lambda _: 0.0,
-    "slow": lambda poles: 20.0 * np.abs(poles[0]),
-    "on a pole": lambda poles: float(np.abs(poles[-1])),
-    "near a pole": lambda poles: float(np.abs(poles[-1])) * (1 + 3e-7),
+    "slow": lambda poles: 20.0 * abs(poles[0]),
+    "on a pole": lambda poles: abs(poles[-1]),
+    "near a pole": lambda poles: abs(poles[-1]) * (1 + 3e-7),
 }
 
 
 @pytest.mark.parametrize("lag", LOW_PASSES)
 @pytest.mark.parametrize("name", POLES)
 def test_white_integrals_are_those_of_quadrature(name: str, lag: str) -> None:
-    tau = float(LOW_PASSES[lag](POLES[name]))
+    tau = LOW_PASSES[lag](POLES[name])
     loop = loop_of(POLES[name])
     band = white_band(times_pole((loop.e1, loop.e2, loop.e3), np.array([tau])))
     poles = [*POLES[name], tau]
@@ -98,7 +98,8 @@ def test_white_integrals_are_those_of_quadrature(name: str, lag: str) -> None:
 @pytest.mark.parametrize("lag", LOW_PASSES)
 @pytest.mark.parametrize("name", POLES)
 def test_flicker_integrals_are_those_of_quadrature(name: str, lag: str, start: float) -> None:
-    tau = float(LOW_PASSES[lag](POLES[name]))
+    """FAILS for seven of the pairs of loop and low-pass, at every start: see the two tests below."""
+    tau = LOW_PASSES[lag](POLES[name])
     band = flicker_band(loop_of(POLES[name]), np.array([tau]), start)
     poles = [*POLES[name], tau]
     expected = [by_quadrature(poles, start, rising=rising, flicker=True) for rising in (False, True)]
@@ -154,10 +155,8 @@ def test_the_same_loop_gives_the_same_integral_in_any_company() -> None:
     """A loop that is done by quadrature beside one that is not, and both alone."""
     poles = [(1e-6, 1e-6), (1e-4, 1e-7)]
     loops = [loop_of(p) for p in poles]
-    together = Loop(
-        np.ones(2), np.ones(2), *(np.concatenate([getattr(p, e) for p in loops]) for e in ("e1", "e2", "e3")),
-        np.zeros(2), np.zeros(2),
-    )  # fmt: skip
+    e1, e2, e3 = (np.concatenate([getattr(p, e) for p in loops]) for e in ("e1", "e2", "e3"))
+    together = Loop(np.ones(2), np.ones(2), e1, e2, e3, np.zeros(2), np.zeros(2))
     band = flicker_band(together, np.zeros(2), 0.1)
     for k, loop in enumerate(loops):
         alone = flicker_band(loop, ZERO, 0.1)
@@ -165,6 +164,7 @@ def test_the_same_loop_gives_the_same_integral_in_any_company() -> None:
 
 
 def test_nan_in_nan_out_without_a_warning() -> None:
+    """FAILS: the quadratic's second root is divided outside `errstate` in `cubic_roots`."""
     bad = np.array([np.nan, 2e-6])
     one = np.ones(2)
     loop = Loop(one, one, bad, 1e-12 * one, 0.0 * one, one, one)

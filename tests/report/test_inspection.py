@@ -42,6 +42,23 @@ def test_what_an_assume_line_would_admit(file: Path) -> None:
     assert "[assume.photodiodes] dark_current = ..." in text
 
 
+@pytest.mark.parametrize("width", [60, 72, 80])
+def test_a_long_column_name_and_a_long_blank_fit_the_width(tmp_path: Path, width: int) -> None:
+    path = tmp_path / "opamps.csv"
+    path.write_text(
+        "part,maker,price,supply_min,supply_max,quiescent_current,gbw,voltage_noise,bias_current,"
+        "offset_voltage,current_noise,input_capacitance_differential\n"
+        "YZA-1,Yonderbeck,1,2 V,5 V,1 mA,1 MHz,5 nV/rtHz,1 pA,1 mV,,\n"
+    )
+    lines = to_text(inspection_lines(inspect_file(path), width), colour=False).split("\n")[1:]
+    table = [line for line in lines if len(line) > width]
+    assert table == []
+    text = " ".join(" ".join(lines).split())
+    assert "sqrt(2 q Ib25)" in text
+    whole = {60: "input_ 1 0 unknown", 72: "input_capacitance_ 1 0 unknown"}
+    assert whole.get(width, "input_capacitance_differential 1 0 unknown") in text
+
+
 def test_a_unit_slip_is_told_and_not_refused(file: Path, capsys: pytest.CaptureFixture[str]) -> None:
     text = said(file, GOOD + "YZD-2,Zellmarsh,1.20,850 nm:0.6,10 F,1 Gohm,x\n")
     assert "Unusual values: 1" in text

@@ -13,7 +13,7 @@ import numpy as np
 
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import CHECKS
-from optimizer.request_types import Divider, Light, Request, Space, Supply, Targets
+from optimizer.request.types import RANKINGS, Ambient, Divider, Light, Request, Space, Supply, Targets
 from optimizer.search import plain
 from optimizer.search import space as spaces
 from optimizer.search.roles import PASSES
@@ -189,3 +189,86 @@ def reached(request: Request, catalogs: Catalogs) -> Counter[str]:
             else:
                 counts["meets" if result.best is not None else "misses"] += 1
     return counts
+
+
+def awkward(seed: int, by: str | None = None) -> tuple[Request, Catalogs]:
+    """Five op-amps and four photodiodes, each with a few values spoilt or unknown, and a request for them.
+
+    Small enough to evaluate everything; most checks are reached by some pair of some seed.
+    """
+    rng = np.random.default_rng(seed)
+
+    def pick(*choices: Any) -> Any:
+        return choices[int(rng.integers(len(choices)))]
+
+    low = pick(0.0, 0.0, -5.0)
+    amps = [opamp(part=f"YZA-{k}", **_spoilt(rng, OPAMP_VALUES)) for k in range(5)]
+    sensors = [diode(part=f"YZD-{k}", **_spoilt(rng, DIODE_VALUES)) for k in range(4)]
+    stated = {
+        "bandwidth": pick(None, 5e3, 50e3, 200e3),
+        "snr": pick(None, 25.0, 36.0, 41.0),
+        "dynamic_range": pick(None, 80.0, 100.0),
+        "phase_margin": pick(None, 45.0, 70.0),
+        "peaking": pick(None, 0.5),
+        "offset": pick(None, 2e-3, 20e-3),
+        "supply_current": pick(None, 1.2e-3, 3e-3),
+        "cost": pick(None, 4.0, 5.2, 6.0),
+    }
+    if stated["bandwidth"] is not None:
+        stated["slew"] = pick(None, 2.0)
+    asked = request(
+        quantity=pick(1, 100),
+        light={"background": pick(0.0, 20e-9), "strongest": pick(1e-6, 5e-6)},
+        supply={"low": low, "guard": pick(0.0, 0.05), "tolerance": pick(0.0, 0.05), "load": pick(None, 1e3)},
+        ambient=pick(Ambient(), Ambient(-20.0, 60.0, stated=True)),
+        space={
+            "references": pick(("ground",), ("divider",), ("ground", "divider")),
+            "wirings": pick(SPACE.wirings, SPACE.wirings, SPACE.wirings[::2], SPACE.wirings[1::2]),
+            "low_pass": pick((None,), (None, 30e3)),
+            "dark_on_rail": pick(False, True),
+            "no_capacitor": pick(False, True),
+            "divider": Divider(series="E3", low=10e3, high=22e3),
+        },
+        targets=stated,
+        ranking={"by": by or pick(*RANKINGS), "show": pick(1, 3, 20), "comfort": pick(0.1, 0.5, 1.0)},
+    )
+    families = [resistor(), resistor(family="YZR-0", parasitic_capacitance=pick(0.0, 0.3e-12))]
+    return asked, catalogs(amps, sensors, families)
+
+
+OPAMP_VALUES: Row = {
+    "channels": (1.0, 2.0),
+    "stock": (NAN, 150.0, 50.0),
+    "price": ([(1.0, 0.8), (200.0, 0.3)], [(1.0, 2.0)], []),
+    "quiescent_current": (0.4e-3, 1e-3, None),
+    "gbw": (0.2e6, 3e6, 50e6),
+    "open_loop_gain": (1e5, 1e3, 15.0, 1.5),
+    "second_pole": (inf, 1e6, 20e3, 1e3),
+    "min_gain": (1.0, 1.0, 4.0, 60.0),
+    "voltage_noise": (3e-9, 30e-9),
+    "bias_current": (2e-12, 30e-9, 3e-6),
+    "offset_voltage": (0.0, 0.5e-3, 5e-3),
+    "input_low": (0.0, -0.1, 1.9, 6.0),
+    "output_low": (0.0, 0.02, 1.0, None),
+    "output_high": (0.02, 2.3, 4.95),
+    "output_current": (50e-3, 4e-3, None),
+    "noise_corner": (0.0, 1e3, None),
+    "status": ("active", "active", "obsolete"),
+    "slew_rate": (5e6, 3e3, None),
+}
+DIODE_VALUES: Row = {
+    "price": ([(1.0, 0.5)], [(1.0, 3.0), (100.0, 1.0)]),
+    "capacitance": ([(0.0, 5e-12)], [(0.0, 400e-12), (10.0, 100e-12)]),
+    "dark_current": (0.0, 50e-9, None),
+    "shunt_resistance": (inf, 1e6, 5e3, None),
+    "reverse_max": (30.0, 1.0, None),
+    "rise_time": (0.0, 3e-6, None),
+    "responsivity": ([(400e-9, 0.2), (900e-9, 0.6)], [(300e-9, 0.1), (700e-9, 0.3)]),
+    "stock": (NAN, 80.0),
+}
+
+
+def _spoilt(rng: np.random.Generator, values: Row) -> Row:
+    """A few of `values`, each with one of its choices."""
+    names = rng.choice(list(values), size=int(rng.integers(1, 5)), replace=False)
+    return {name: values[name][int(rng.integers(len(values[name])))] for name in names.tolist()}

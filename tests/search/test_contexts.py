@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from itertools import product
+from typing import Any
 
 import numpy as np
 import pytest
 
 from optimizer import search
-from optimizer.request_types import WIRINGS, Divider
+from optimizer.request.types import WIRINGS, Divider
 from optimizer.search import contexts, values
 from optimizer.search import space as spaces
 from tests.search.made import capacitor, catalogs, diode, listed, opamp, request, resistor
@@ -16,8 +17,8 @@ from tests.search.made import capacitor, catalogs, diode, listed, opamp, request
 DIVIDER = Divider(series="E3", low=10e3, high=22e3)  # 22k:10k, equal, 10k:22k
 
 
-def built(**changes: object) -> contexts.Contexts:
-    asked = request(**{"space": {"divider": DIVIDER}, **changes})  # type: ignore[arg-type]
+def built(**changes: Any) -> contexts.Contexts:
+    asked = request(**({"space": {"divider": DIVIDER}} | changes))
     made = catalogs()
     return contexts.build(asked, values.divider_levels(asked, made.resistors, made.capacitors))
 
