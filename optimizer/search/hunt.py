@@ -30,7 +30,7 @@ Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
 BATCH = 4096
-FRONT = 16384
+FRONT = 4096
 _PROBES = 1
 
 

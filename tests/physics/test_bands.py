@@ -98,7 +98,7 @@ def test_white_integrals_are_those_of_quadrature(name: str, lag: str) -> None:
 @pytest.mark.parametrize("lag", LOW_PASSES)
 @pytest.mark.parametrize("name", POLES)
 def test_flicker_integrals_are_those_of_quadrature(name: str, lag: str, start: float) -> None:
-    """FAILS for seven of the pairs of loop and low-pass, at every start: see the two tests below."""
+    """Every pair of loop and low-pass, coincident poles among them, at every start."""
     tau = LOW_PASSES[lag](POLES[name])
     band = flicker_band(loop_of(POLES[name]), np.array([tau]), start)
     poles = [*POLES[name], tau]
@@ -111,7 +111,7 @@ CLOSE = (1e-2, 1e-3, 3e-4, 1e-4, 1e-5, 1e-6, 1e-7, 1e-8, 0.0)
 
 @pytest.mark.parametrize("gap", CLOSE)
 def test_flicker_of_two_poles_at_any_distance(gap: float) -> None:
-    """FAILS: residues of nearly equal poles lose 1/gap^2 in `rising`; the model promises 1e-9."""
+    """Residues of nearly equal poles lose digits as 1/gap^2; the model promises 1e-9."""
     poles = (1e-6, 1e-6 * (1 + gap))
     band = flicker_band(loop_of(poles), ZERO, 0.1)
     expected = [by_quadrature(poles, 0.1, rising=rising, flicker=True) for rising in (False, True)]
@@ -121,7 +121,7 @@ def test_flicker_of_two_poles_at_any_distance(gap: float) -> None:
 @pytest.mark.parametrize("gap", CLOSE)
 @pytest.mark.parametrize("third", [1e-7, 1e-5])
 def test_flicker_of_a_low_pass_on_the_real_pole_of_a_resonant_loop(third: float, gap: float) -> None:
-    """FAILS: a loop with |Im| > |Re| never goes to quadrature, so equal real poles divide by zero."""
+    """In a loop with |Im| > |Re| the low-pass may sit on the real pole."""
     pair = (1e-6 + 2e-6j, 1e-6 - 2e-6j, third)
     tau = third * (1 + gap)
     band = flicker_band(loop_of(pair), np.array([tau]), 0.1)
@@ -164,7 +164,7 @@ def test_the_same_loop_gives_the_same_integral_in_any_company() -> None:
 
 
 def test_nan_in_nan_out_without_a_warning() -> None:
-    """FAILS: the quadratic's second root is divided outside `errstate` in `cubic_roots`."""
+    """Unknown values stay unknown, without a warning."""
     bad = np.array([np.nan, 2e-6])
     one = np.ones(2)
     loop = Loop(one, one, bad, 1e-12 * one, 0.0 * one, one, one)

@@ -103,7 +103,7 @@ def test_without_a_capacitor_nothing_of_capacitors_is_assumed() -> None:
 
 
 def test_the_divider_uses_what_was_assumed_of_its_own_family() -> None:
-    """FAILS: Rf is of one family; the divider's two are of another whose price was filled in.
+    """Rf is of one family; the divider's two are of another whose price was filled in.
 
     The contract lists 'the filled blanks that this candidate's figures and checks use', and its cost does.
     """
@@ -115,7 +115,7 @@ def test_the_divider_uses_what_was_assumed_of_its_own_family() -> None:
 
 
 def test_the_bypass_uses_what_was_assumed_of_its_own_family() -> None:
-    """FAILS: the same for Cb, where no feedback capacitor is placed."""
+    """The same for Cb, where no feedback capacitor is placed."""
     families = [capacitor(family="YZC-2", **listed(100e-9)), capacitor(**listed(2e-12), price=[(1.0, 9.0)])]
     made = with_assumed("capacitors", "price", made=catalogs(capacitors=families))
     found = best(made, space=BIASED)
@@ -124,7 +124,7 @@ def test_the_bypass_uses_what_was_assumed_of_its_own_family() -> None:
 
 
 def test_two_makers_of_one_family_are_told_apart() -> None:
-    """FAILS: the family is looked up by its name alone, so that the first row of that name answers.
+    """A family is known by name and maker: the first row of that name must not answer for another.
 
     So the record also depends on the order of the catalog's rows.
     """

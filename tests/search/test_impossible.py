@@ -127,7 +127,7 @@ RESTING = {"space": {"dark_on_rail": True, "references": ("ground",), "wirings":
 
 
 def test_an_output_resting_on_the_rail_may_use_what_lies_below_the_converter() -> None:
-    """FAILS: the range of a converter from 1 V is taken for the most that the light may swing.
+    """An output that rests on the rail may swing further than a converter's range that starts above it.
 
     With `dark_on_rail` the dark output rests at 0 V, below the converter's 1 V to 5 V: the weakest light
     has to reach 1 V, and the strongest may swing by almost 5 V, not 4 V. So 4 bits (step 0.25 V, 72 mV

@@ -86,7 +86,7 @@ def test_every_series_and_range_agrees_with_exact_fractions(series: str, low: st
 
 
 def test_ratios_of_very_small_resistors_are_exact_too() -> None:
-    """FAILS: values are rounded to a milliohm first, so 10.1 and 10.2 mohm count as 10."""
+    """Values below a milliohm's step count as they are: 10.1 and 10.2 mohm differ."""
     expected = largest_pairs(decimal_members("E192", "0.01", "0.0105"))
     found = levels_of(
         Divider(series="E192", low=0.01, high=0.0105), [resistor(series="E192", **{"from": 1e-3})]
