@@ -3,16 +3,20 @@
 from __future__ import annotations
 
 import multiprocessing
+import multiprocessing.connection
 import signal
 import time
 from collections.abc import Callable, Iterator, Sequence
-from concurrent.futures import Future, ProcessPoolExecutor
 from contextlib import contextmanager
 from dataclasses import dataclass, field, replace
+from multiprocessing.connection import Connection
+from multiprocessing.process import BaseProcess
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from optimizer.errors import LuxsiftError
 from optimizer.search import feed, keys
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes
@@ -103,33 +107,73 @@ class Crew:
 
     def _shared(self, goals: Goals, rules: Rules, pairs: feed.Pairs) -> Found:
         """Every worker hunts through its share of the pairs; the best of all shares are the best."""
-        method = "fork" if "fork" in multiprocessing.get_all_start_methods() else None
-        context = multiprocessing.get_context(method)
         shares = [pairs.take(np.arange(k, pairs.size, self.workers)) for k in range(self.workers)]
         shares = [share for share in shares if share.size]
-        pool = ProcessPoolExecutor(len(shares), mp_context=context, initializer=_ignore_interrupts)
+        with _interrupts_held():
+            team = [_hired(self.index, goals, rules, share) for share in shares]
         try:
-            with _interrupts_held():
-                jobs = [pool.submit(_share, self.index, goals, rules, share) for share in shares]
-            return merged(self.index.space, self._awaited(jobs, shares, pairs.size), rules.show)
-        except KeyboardInterrupt:
-            for process in list(getattr(pool, "_processes", {}).values()):
-                process.terminate()
-            raise
+            return merged(self.index.space, self._awaited(team, pairs.size), rules.show)
         finally:
-            pool.shutdown(wait=False, cancel_futures=True)
+            for worker in team:
+                worker.process.terminate()
+                worker.process.join()
 
-    def _awaited(
-        self, jobs: Sequence[Future[Found]], shares: Sequence[feed.Pairs], total: int
-    ) -> list[Found]:
+    def _awaited(self, team: Sequence[Worker], total: int) -> list[Found]:
         """The findings of all workers, with progress as each is done."""
         self.parts = []
-        for done, job in enumerate(jobs, start=1):
-            self.parts.append(job.result())
-            if self.progress is not None:
-                count = sum(share.size for share in shares[:done])
-                self.progress(Progress(total, count, sum(p.evaluated for p in self.parts), None))
+        open_: dict[Any, Worker] = {worker.answer: worker for worker in team}
+        decided = 0
+        while open_:
+            for answer in multiprocessing.connection.wait(list(open_)):
+                worker = open_.pop(answer)
+                self.parts.append(worker.received())
+                decided += worker.pairs
+                if self.progress is not None:
+                    self.progress(Progress(total, decided, sum(p.evaluated for p in self.parts), None))
         return self.parts
+
+
+@dataclass(frozen=True, slots=True)
+class Worker:
+    """One process at work on `pairs` pairs, and the end of the pipe that its answer comes through."""
+
+    process: BaseProcess
+    answer: Connection
+    pairs: int
+
+    def received(self) -> Found:
+        """What it found; raises what stopped it."""
+        try:
+            answer = self.answer.recv()
+        except EOFError:
+            raise LuxsiftError("a worker process ended before it was done; try --workers 1") from None
+        if isinstance(answer, BaseException):
+            raise answer
+        assert isinstance(answer, Found)
+        return answer
+
+
+def _hired(index: Index, goals: Goals, rules: Rules, share: feed.Pairs) -> Worker:
+    """Start a process on `share`. Forked where that can be: the tables are then not copied."""
+    method = "fork" if "fork" in multiprocessing.get_all_start_methods() else None
+    context: Any = multiprocessing.get_context(method)
+    answer, sender = context.Pipe(duplex=False)
+    process = context.Process(target=_work, args=(sender, index, goals, rules, share), daemon=True)
+    process.start()
+    sender.close()
+    return Worker(process, answer, share.size)
+
+
+def _work(sender: Connection, index: Index, goals: Goals, rules: Rules, share: feed.Pairs) -> None:
+    """What a worker process does: hunt, and send what it found or what stopped it."""
+    _ignore_interrupts()
+    try:
+        hunt = feed.run(index, goals, rules, pairs=share, watch=lambda _hunt, _taken: False)
+        sender.send(gathered(hunt))
+    except Exception as problem:  # raised again in the parent
+        sender.send(problem)
+    finally:
+        sender.close()
 
 
 @contextmanager
@@ -153,10 +197,6 @@ def _ignore_interrupts() -> None:
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     if hasattr(signal, "pthread_sigmask"):
         signal.pthread_sigmask(signal.SIG_UNBLOCK, {signal.SIGINT})
-
-
-def _share(index: Index, goals: Goals, rules: Rules, pairs: feed.Pairs) -> Found:
-    return gathered(feed.run(index, goals, rules, pairs=pairs, watch=lambda _hunt, _taken: False))
 
 
 def nothing(targets: int) -> Found:
