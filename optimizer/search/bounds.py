@@ -183,23 +183,33 @@ def _rf_from_e2(v: View, ceiling: Roof, cf_low: Floats) -> Floats:
     a, b, k = v.dominant, v.second, ceiling.e2
     free = a * b - k
     shunt = np.where(free > 0.0, v.shunt_low, v.shunt_high)
-    bound = _linear((a + b) * (v.cin_low + cf_low) + free * shunt, k * (v.gain + 1.0) - a * b)
+    slope = _least_sum((a + b) * (v.cin_low + cf_low), free * shunt)
+    bound = _linear(slope, -_least_sum(a * b, -k * (v.gain + 1.0)))
     return np.where(np.isfinite(k), bound, np.inf)
 
 
 def _rf_from_e1(v: View, ceiling: Roof, cf_low: Floats) -> Floats:
     free = v.dominant + v.second - ceiling.e1
     shunt = np.where(free > 0.0, v.shunt_low, v.shunt_high)
-    slope = v.gain * cf_low + v.cin_low + cf_low + free * shunt
-    right = ceiling.e1 * (v.gain + 1.0) - v.dominant - v.second
-    return np.where(np.isfinite(ceiling.e1), _linear(slope, right), np.inf)
+    slope = _least_sum(v.gain * cf_low + v.cin_low + cf_low, free * shunt)
+    return np.where(np.isfinite(ceiling.e1), _linear(slope, _spare(v, ceiling)), np.inf)
 
 
 def _cf_from_e1(v: View, ceiling: Roof) -> Floats:
     free = v.dominant + v.second - ceiling.e1
     shunt = np.where(free > 0.0, v.shunt_low, v.shunt_high)
-    right = (ceiling.e1 * (v.gain + 1.0) - v.dominant - v.second) / v.rf_low - v.cin_low - free * shunt
+    right = -_least_sum(v.cin_low + free * shunt, -_spare(v, ceiling) / v.rf_low)
     return np.where(np.isfinite(ceiling.e1), right / (v.gain + 1.0), np.inf)
+
+
+def _spare(v: View, ceiling: Roof) -> Floats:
+    """e1 (A0 + 1) - a - b [s], at most."""
+    return -_least_sum(v.dominant + v.second, -ceiling.e1 * (v.gain + 1.0))
+
+
+def _least_sum(left: Floats, right: Floats) -> Floats:
+    """left + right, at least: the terms can nearly cancel, so their rounding is taken off."""
+    return left + right - 1e-13 * (np.abs(left) + np.abs(right))
 
 
 def coefficients(v: View, left: Narrow, ceiling: Roof) -> Coefficients:
