@@ -13,6 +13,7 @@ from optimizer.request.types import RANKINGS
 COMMAND_LINE = "command line"
 SHORTLIST = ("--by", "--show", "--choose", "--save", "--csv", "--workers", "--quiet")
 MOST_ROWS, MOST_WORKERS = 1_000_000, 256
+STANDARD_OUTPUT = "-"
 SAVE = "write the record; - is standard output, all else then goes to standard error"
 EXAMPLES = """\
 examples:
@@ -35,6 +36,11 @@ class ShortlistOptions:
     save: str | None
     csv: str | None
     quiet: bool
+
+    @property
+    def piped(self) -> bool:
+        """Whether a file that is asked for goes to standard output, so that all else must not."""
+        return STANDARD_OUTPUT in (self.save, self.csv)
 
 
 class _Parser(argparse.ArgumentParser):
@@ -137,6 +143,6 @@ def _shortlist(command: argparse.ArgumentParser) -> None:
     add("--show", metavar="N", help="rows to show (the request's)")
     add("--choose", metavar="N", help="the row to mark as chosen (1)")
     add("--save", metavar="FILE.json", help=SAVE)
-    add("--csv", metavar="FILE.csv", help="write candidates and near misses as CSV")
+    add("--csv", metavar="FILE.csv", help="write candidates and near misses as CSV; - as above")
     add("--workers", metavar="N", help="processes to search with (1); the result is the same")
     add("--quiet", action="store_true", help="print only the table, errors and impossibilities")

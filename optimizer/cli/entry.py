@@ -5,12 +5,13 @@ from __future__ import annotations
 import io
 import sys
 from collections.abc import Callable, Sequence
+from contextlib import suppress
 from typing import TYPE_CHECKING
 
 from optimizer.cli.arguments import parse, parser
 from optimizer.cli.messages import error_lines
 from optimizer.cli.output import write
-from optimizer.errors import LuxsiftError
+from optimizer.errors import LuxsiftError, OutputError
 
 if TYPE_CHECKING:
     import argparse
@@ -23,26 +24,32 @@ def main(words: Sequence[str] | None = None) -> int:
     for stream in (sys.stdout, sys.stderr):
         if isinstance(stream, io.TextIOWrapper):
             stream.reconfigure(errors="backslashreplace")
-    status = _guarded(list(sys.argv[1:] if words is None else words))
-    write(sys.stdout, "")
-    return status
+    return _guarded(list(sys.argv[1:] if words is None else words))
 
 
 def _guarded(words: list[str]) -> int:
     try:
-        return _run(words)
+        status = _run(words)
+        write(sys.stdout, "")  # what argparse printed may fail here, but not when Python ends
+        return status
     except LuxsiftError as error:
-        write(sys.stderr, "\n".join(error_lines(error)) + "\n")
+        _tell("\n".join(error_lines(error)) + "\n")
         return BAD_INPUT
     except KeyboardInterrupt:
-        write(sys.stderr, "luxsift: interrupted; nothing was decided or written\n")
+        _tell("luxsift: interrupted; nothing was decided or written\n")
         return INTERRUPTED
-    except SystemExit as end:  # argparse has printed its help
-        return int(end.code or 0)
+
+
+def _tell(text: str) -> None:
+    with suppress(OutputError):  # the exit status is all that is left to say it with
+        write(sys.stderr, text)
 
 
 def _run(words: list[str]) -> int:
-    parsed = parse(words)
+    try:
+        parsed = parse(words)
+    except SystemExit as end:  # argparse has printed its help
+        return int(end.code or 0)
     if parsed.version:
         from optimizer.record.build import installed_version
 

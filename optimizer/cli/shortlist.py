@@ -10,7 +10,7 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from optimizer.cli.arguments import COMMAND_LINE, ShortlistOptions, shortlist_options
+from optimizer.cli.arguments import COMMAND_LINE, STANDARD_OUTPUT, ShortlistOptions, shortlist_options
 from optimizer.cli.messages import LONGEST_WORDS, StudyError, where_from
 from optimizer.cli.output import write, write_lines
 from optimizer.cli.progress import watch
@@ -90,8 +90,11 @@ def _output_problems(options: ShortlistOptions, inputs: Sequence[Path]) -> list[
 
     taken = {os.path.realpath(path) for path in inputs}
     problems = []
+    if options.save == options.csv == STANDARD_OUTPUT:
+        rule, remedy = "standard output is taken by --save already", "give one of them a file name"
+        problems.append(Problem(COMMAND_LINE, None, "--csv", STANDARD_OUTPUT, rule, remedy))
     for name, path in (("--save", options.save), ("--csv", options.csv)):
-        if path is None or (name == "--save" and path == "-"):
+        if path is None or path == STANDARD_OUTPUT:
             continue
         if os.path.realpath(path) in taken:
             rule = "that file is input of this run, or already written by another option"
@@ -124,14 +127,16 @@ def _save(record: Record, options: ShortlistOptions) -> OutputError | None:
     """Write the files that are asked for; the error comes back, so that the table is still printed."""
     from optimizer import record as records
     from optimizer.record.files import to_json
-    from optimizer.report.csv_file import write_csv
+    from optimizer.report.csv_file import csv_text, write_csv
 
     try:
-        if options.save == "-":
+        if options.save == STANDARD_OUTPUT:
             write(sys.stdout, to_json(record))
         elif options.save is not None:
             records.write(record, options.save)
-        if options.csv is not None:
+        if options.csv == STANDARD_OUTPUT:
+            write(sys.stdout, csv_text(record))
+        elif options.csv is not None:
             write_csv(record, options.csv)
     except OutputError as error:
         return error
@@ -142,7 +147,7 @@ def _print(record: Record, options: ShortlistOptions) -> None:
     from optimizer.report import report, table_only
     from optimizer.report.terminal import width_of
 
-    stream = sys.stderr if options.save == "-" else sys.stdout
+    stream = sys.stderr if options.piped else sys.stdout
     draw = table_only if options.quiet else report
     write_lines(stream, draw(record, width_of(stream)))
 

@@ -12,6 +12,7 @@ from optimizer.quantities import show
 from optimizer.report.cells import named
 from optimizer.report.layout import Column, fit, lines
 from optimizer.report.paragraphs import paragraph
+from optimizer.report.pinned import pinned
 from optimizer.report.words import beside, figure, margin_words, side
 
 
@@ -34,6 +35,7 @@ def _build(row: Mapping[str, Any], request: Mapping[str, Any]) -> list[tuple[str
         ("photodiode", f"{named(row, 'photodiode')}, {row['wiring']}, reverse bias {bias}"),
         ("op-amp", named(row, "opamp")),
         ("feedback", _feedback(row)),
+        ("", pinned(row, request)),
         ("reference", _reference(row, request)),
     ]
     if row["low_pass"] is not None:

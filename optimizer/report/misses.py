@@ -8,6 +8,7 @@ from typing import Any
 from rich.text import Text
 
 from optimizer.report.paragraphs import paragraph, styled
+from optimizer.report.pinned import pinned
 from optimizer.report.table import ranked_table
 from optimizer.report.words import beside, margin_words, side
 
@@ -28,13 +29,16 @@ def near_miss_lines(record: Mapping[str, Any], width: int) -> list[Text]:
 
 
 def missed_notes(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> list[str]:
-    """Every missed target of one near miss with value, limit and by how much, folded to `width`."""
-    return paragraph("; ".join(_missed(target, request) for target in _worst_first(row)), width)
+    """Every missed target of one near miss with value, limit and by how much, then which passive stands
+    at an end of its range, folded to `width`.
+    """
+    missed = paragraph("; ".join(_missed(target, request) for target in _worst_first(row)), width)
+    return missed + paragraph(pinned(row, request), width)
 
 
 def blocking_lines(record: Mapping[str, Any], width: int) -> list[Text]:
     """What stands in the way where nothing meets: the single targets that, if dropped, would let something
-    through, and the targets that the nearest miss misses.
+    through, the targets that the nearest miss misses, and which passive of it stands at an end of its range.
     """
     if record["candidates"] or record["search"].get("impossible"):
         return []
@@ -43,7 +47,9 @@ def blocking_lines(record: Mapping[str, Any], width: int) -> list[Text]:
         text = "No pair is eligible, so no target stands in the way: see below why they dropped out."
         return styled(text, width)
     blocking = _blocking(record["search"].get("blocking", ()))
-    return styled(blocking, width) + styled(_nearest(_worst_first(misses[0])), width)
+    ends = pinned(misses[0], record["request"])
+    at_ends = styled(f"In the nearest miss, {ends}." if ends else "", width)
+    return styled(blocking, width) + styled(_nearest(_worst_first(misses[0])), width) + at_ends
 
 
 def _blocking(names: Sequence[str]) -> str:

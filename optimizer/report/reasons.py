@@ -48,12 +48,19 @@ def reason_lines(record: Mapping[str, Any], width: int) -> list[Text]:
         Column("why", tuple(why for _key, _pairs, why in rows), gives=True),
     )
     widths = fit(columns, width - 2, least=24)
-    out = [Text(f"Why {several(sum(dropped.values()), 'other pair')} dropped out", "bold")]
+    out = [Text(f"Why {_which(record, sum(dropped.values()))} dropped out", "bold")]
     for row in range(len(rows)):
         out += [Text("  " + line) for line in lines(columns, widths, row)]
     if any(key == MISSING for key, _pairs, _why in rows):
         out += styled(ASSUMABLE, width)
     return out
+
+
+def _which(record: Mapping[str, Any], dropped: int) -> str:
+    if record["candidates"]:
+        return several(dropped, "other pair")
+    every = dropped > 1 and dropped == record["search"]["pairs"]
+    return f"all {several(dropped, 'pair')}" if every else several(dropped, "pair")
 
 
 def _rows(dropped: Mapping[str, int]) -> list[tuple[str, int, str]]:

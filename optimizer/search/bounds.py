@@ -115,6 +115,22 @@ def swing(v: View, bench: Bench, rf_low: Floats) -> Floats:
     return np.maximum(up, down)
 
 
+def drives(v: View, bench: Bench) -> Bools:
+    """Where some context of the box may leave the op-amp current enough for the load and the feedback."""
+    if bench.load is None:
+        return np.ones(v.gain.shape, dtype=bool)
+    end = bench.ends[1]
+    upper, lower = v.upper[1] + bench.guard, v.lower[1] - bench.guard
+    if bench.load_to is None:
+        least, most = np.minimum(v.rise_from, v.fall_to) * end, np.maximum(v.rise_to, v.fall_from) * end
+        farthest = np.maximum(np.maximum(upper - most, least - lower), 0.5 * (upper - lower))
+    else:
+        farthest = np.maximum(np.abs(upper - bench.load_to), np.abs(lower - bench.load_to))
+    light = v.responsivity * (bench.strongest + bench.background)
+    needed_ = farthest / bench.load + light + v.dark_low + v.bias
+    return np.asarray(needed_ * (1.0 - 1e-9) <= v.drive)
+
+
 def rf_for_gain(v: View, transresistance: Floats) -> Floats:
     """The largest Rf [ohm] whose H0 does not exceed `transresistance` anywhere in the box."""
     with np.errstate(divide="ignore", invalid="ignore"):
@@ -167,6 +183,7 @@ def narrow(v: View, goals: Goals, level: Floats) -> Narrow:
         decompensated = v.min_gain > 1.0
         cf_high = np.where(decompensated, np.minimum(cf_high, v.cin_high / (v.min_gain - 1.0)), cf_high)
     possible = v.possible & ~(v.buffered & ~v.buffers) & ((room >= 0.0) | v.on_rail)
+    possible = possible & drives(v, goals.bench)
     loose = 1.0 + ROUNDING
     rf_high, cf_high = rf_high * loose, cf_high * loose
     possible = possible & (rf_high >= v.rf_low) & (cf_high >= cf_low)

@@ -167,6 +167,7 @@ def _hired(index: Index, goals: Goals, rules: Rules, share: feed.Pairs) -> Worke
 def _work(sender: Connection, index: Index, goals: Goals, rules: Rules, share: feed.Pairs) -> None:
     """What a worker process does: hunt, and send what it found or what stopped it."""
     _ignore_interrupts()
+    np.seterr(all="ignore")  # as in the parent
     try:
         hunt = feed.run(index, goals, rules, pairs=share, watch=lambda _hunt, _taken: False)
         sender.send(gathered(hunt))

@@ -14,6 +14,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from optimizer import margins
 from optimizer.figures import rounded
 from optimizer.search import keys
 from optimizer.search.bounds import Goals
@@ -145,8 +146,8 @@ def _pairs(hunt: Hunt, boxes: Boxes) -> Ints:
 def _admitted(hunt: Hunt, boxes: Boxes, inherited: Floats) -> Pool:
     """Bound `boxes`, evaluate the single ones that are left, and return the others."""
     v = view(hunt.index, boxes)
-    level = _level(hunt, boxes, (v.cost, v.supply_current), inherited)
-    limits = bound(v, hunt.goals, level)
+    level, inner = _levels(hunt, boxes, (rounded(v.cost), rounded(v.supply_current)), inherited)
+    limits = bound(v, hunt.goals, level, inner)
     boxes = narrowed(hunt.index, boxes, limits.left, v)
     keep = limits.possible & filled(boxes)
     key = _key(hunt, boxes.take(keep), limits, keep)
@@ -175,24 +176,49 @@ def _probed(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
     return key
 
 
-def _level(hunt: Hunt, boxes: Boxes, known: tuple[Floats, Floats], inherited: Floats) -> Floats:
-    """The smallest margin that a setting of each box needs to be of any use."""
+def _levels(
+    hunt: Hunt, boxes: Boxes, known: tuple[Floats, Floats], inherited: Floats
+) -> tuple[Floats, Floats]:
+    """The smallest margin that a setting of each box needs to be of any use; and what the margins other
+
+    than cost and supply current need. `known`: least cost and supply current, rounded.
+    """
     rules, incumbents = hunt.rules, hunt.incumbents
-    cost, current = rounded(known[0]), rounded(known[1])
+    cost, current = known
     level = np.full(len(boxes), rules.least)
     first = {"cost": cost, "supply_current": current}.get(rules.by)
     if first is None:
         first = inherited
-    slots = incumbents.slot_of[_pairs(hunt, boxes)]
-    has = slots >= 0
-    if has.any():
-        best = incumbents.key[slots]
-        tied = _not_before(rules.by, (first, cost), best)
-        level = np.where(has & tied, np.maximum(level, -best[:, 2]), level)
     if incumbents.bar is not None:
         tied = _not_before(rules.by, (first, cost), incumbents.bar[None, :])
         level = np.where(tied, np.maximum(level, -incumbents.bar[2]), level)
-    return level
+    slots = incumbents.slot_of[_pairs(hunt, boxes)]
+    has = slots >= 0
+    if not has.any():
+        return level, level
+    best = incumbents.key[slots]
+    tied = has & _not_before(rules.by, (first, cost), best)
+    level = np.where(tied, np.maximum(level, -best[:, 2]), level)
+    dearer = tied & (cost >= best[:, 1])
+    return level, np.where(dearer, np.maximum(level, _inner(hunt.goals, known, best)), level)
+
+
+def _inner(goals: Goals, known: tuple[Floats, Floats], best: Floats) -> Floats:
+    """What the other margins need where cost or supply current alone hold the smallest ones down.
+
+    If the margin of one of them is at most the incumbent's smallest, a setting of the same primary and
+    cost comes before only if every other margin reaches the incumbent's second; and so on.
+    """
+    figures = dict(zip(("cost", "supply_current"), known, strict=True))
+    fixed = [margins.margin(n, f, goals.limits[n]) for n, f in figures.items() if n in goals.limits]
+    vector = -best[:, 2 : 2 + len(goals.limits)]
+    inner = vector[:, 0]
+    held = np.ones(inner.size, dtype=bool)
+    for place, most in enumerate(np.sort(np.array(fixed), axis=0) if fixed else ()):
+        held = held & (most <= vector[:, place])
+        if place + 1 < vector.shape[1]:
+            inner = np.where(held, vector[:, place + 1], inner)
+    return inner
 
 
 def _not_before(by: str, known: tuple[Floats, Floats], best: Floats) -> Bools:

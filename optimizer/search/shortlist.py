@@ -56,6 +56,11 @@ def shortlist(
     `workers` processes share the pairs; the result is the same for any number. `progress` is called
     about ten times a second. Raises `Interrupted` on Ctrl-C.
     """
+    with np.errstate(all="ignore"):  # absurd but stated values overflow; their figures do not exist
+        return _shortlist(request, catalogs, workers, progress)
+
+
+def _shortlist(request: Request, catalogs: Catalogs, workers: int, progress: Report | None) -> Outcome:
     begun = time.perf_counter()
     space = build(request, catalogs)
     pairs = catalogs.opamps.size * catalogs.photodiodes.size

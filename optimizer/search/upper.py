@@ -53,9 +53,13 @@ class Bound:
     left: Narrow
 
 
-def bound(v: View, goals: Goals, level: Floats) -> Bound:
-    """Bounds over every setting of each box whose smallest margin is at least its `level`."""
-    loose = level - SLACK * (1.0 + np.abs(level))
+def bound(v: View, goals: Goals, level: Floats, inner: Floats | None = None) -> Bound:
+    """Bounds over every setting of each box whose smallest margin is at least its `level`.
+
+    `inner`, at least `level`: what the margins other than cost and supply current must reach.
+    """
+    inner = level if inner is None else inner
+    loose = inner - SLACK * (1.0 + np.abs(inner))
     left = narrow(v, goals, loose)
     ceiling = roof(v, goals, loose)
     c = coefficients(v, left, ceiling)
@@ -64,19 +68,39 @@ def bound(v: View, goals: Goals, level: Floats) -> Bound:
         c = coefficients(v, left, ceiling)
         floor = noise_floor(v, left, c, goals.bench)
         snr = _decibels(v.responsivity * goals.bench.weakest, floor.weak)
-        columns = _ceilings(v, (left, c, floor), goals, level=loose, snr=snr)
+        columns = _ceilings(v, (left, c, floor), goals, level=inner, snr=snr)
     cost, current = rounded(v.cost), rounded(v.supply_current)
     exact = {"cost": cost, "supply_current": current}
     table = np.empty((v.gain.size, len(columns)))
+    possible = left.possible
     for k, (name, column) in enumerate(zip(goals.limits, columns, strict=True)):
         if name in exact:
             table[:, k] = margins.margin(name, exact[name], goals.limits[name])
+            possible = possible & (table[:, k] >= level)
         else:
-            # NaN would be an unknown value that no target needs; it never bounds
-            known = np.clip(np.where(np.isnan(column), np.inf, column), -1.0, margins.LARGEST)
-            table[:, k] = known + SLACK * (1.0 + np.abs(known))
-    possible = left.possible & np.all(table >= loose[:, None], axis=1)
-    return Bound(possible, np.clip(table, -1.0, goals.comfort), snr * 1.0 + 1e-6, cost, current, left)
+            table[:, k] = _on_grid(name, column)
+            possible = possible & (table[:, k] >= inner)
+    return Bound(possible, np.clip(table, -1.0, goals.comfort), snr + 1e-6, cost, current, left)
+
+
+def _on_grid(name: str, column: Floats) -> Floats:
+    """A bound on a margin as margins are: of a figure with 9 digits, and a whole number of 1e-9.
+
+    What the figure's rounding can add is added, then the bound is cut to the grid below, so that
+    margins that cannot differ are seen to be equal. NaN is an unknown value that no target needs.
+    """
+    known = np.clip(np.where(np.isnan(column), np.inf, column), -2.0, margins.LARGEST)
+    if name in margins.DECIBELS:
+        slack = 1.2e-7 * (1.0 + known)
+    elif name == "phase_margin":
+        slack = np.full(known.shape, 5e-8)
+    elif name == "peaking":
+        slack = 6e-9 * (1.0 + np.abs(known))
+    else:
+        slack = 6e-9 * (1.0 + known)
+    # half a step is what a margin may be rounded up by
+    steps = np.floor((known + np.maximum(slack, 0.0)) * 1e9 + 0.501)
+    return np.clip(steps / 1e9, -1.0, margins.LARGEST)
 
 
 def _decibels(signal: Floats, square: Floats) -> Floats:
@@ -149,6 +173,9 @@ def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
         return np.asarray((real**2 + x * imaginary**2) * poles > 2.0 * (1.0 + 1e-9))
 
     low, high = level, np.full(level.shape, goals.comfort)
+    # just above the level first: margins that cannot exceed it are then known to tie with it
+    near = level + 1e-10
+    tied = excluded(near)
     over = excluded(high)
     low = np.where(over, low, high)
     for _ in range(_STEPS):
@@ -156,7 +183,9 @@ def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
         out = excluded(middle)
         high = np.where(out, middle, high)
         low = np.where(out, low, middle)
-    return np.where(excluded(level), -np.inf, np.where(over, high, np.inf))
+    least = np.where(tied, near, np.where(over, high, np.inf))
+    # the level is a rounded margin: the figure may be as far below it as rounding reaches
+    return np.where(excluded(level - 1e-8 * (1.0 + np.abs(level))), -np.inf, least)
 
 
 def _peaking(c: Coefficients) -> Floats:

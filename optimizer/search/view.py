@@ -111,6 +111,7 @@ class View:
     min_gain: Floats
     buffers: Bools
     slew_rate: Floats
+    drive: Floats
     supply_current: Floats
     cost: Floats
 
@@ -216,6 +217,7 @@ def _of_opamps(index: Index, o: Ints) -> dict[str, Any]:
         "min_gain": opamps.min_gain[o],
         "buffers": opamps.buffers[o],
         "slew_rate": opamps.slew_rate[o],
+        "drive": opamps.output_current[o],
     }
 
 

@@ -91,7 +91,7 @@ KEYS += " gain min_gain unstable missed_target cannot_beat"
 
 
 def dropped(counts: dict[str, int], width: int = 80) -> str:
-    lines = reason_lines({"search": {"dropped": counts}}, width)
+    lines = reason_lines({"candidates": [DATA["candidates"][0]], "search": {"dropped": counts}}, width)
     assert max(len(line.plain) for line in lines) <= width
     return " ".join(" ".join(line.plain for line in lines).split())
 
@@ -113,6 +113,19 @@ def test_blanks_share_a_row_that_counts_each_column() -> None:
     assert "140 missing a value that a target or check needs is blank: price 100, output_low 40 120" in text
     assert "Why 260 other pairs dropped out" in text
     assert "[assume]" in text
+
+
+@pytest.mark.parametrize(
+    ("pairs", "counts", "said"),
+    [
+        (260, {"stock": 140, "supply": 120}, "Why all 260 pairs dropped out"),
+        (300, {"stock": 140, "supply": 120}, "Why 260 pairs dropped out"),
+        (1, {"stock": 1}, "Why 1 pair dropped out"),
+    ],
+)
+def test_without_a_row_shown_there_are_no_other_pairs(pairs: int, counts: dict[str, int], said: str) -> None:
+    data = {"candidates": [], "search": {"pairs": pairs, "dropped": counts}}
+    assert reason_lines(data, 80)[0].plain == said
 
 
 @pytest.mark.parametrize(
