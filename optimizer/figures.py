@@ -150,15 +150,18 @@ class Evaluated:
         return np.asarray(~np.any([np.asarray(f) for f in self.fails.values()], axis=0))
 
 
+_TENS = np.array([float(f"1e{power}") for power in range(301)])
+
+
 def rounded(values: Floats) -> Floats:
     """`values` rounded to 9 significant digits (the nearest float to that decimal, up to 1e22 scale)."""
     x = np.asarray(values, dtype=float)
     with np.errstate(divide="ignore", invalid="ignore"):
         exponent = np.floor(np.log10(np.abs(x)))
-        places = np.where(np.isfinite(exponent), 8.0 - exponent, 0.0)
-        up, down = np.clip(places, 0.0, 300.0), np.clip(-places, 0.0, 300.0)
-        whole = np.rint(x * 10.0**up / 10.0**down)
-        back = whole / 10.0**up * 10.0**down
+        places = np.where(np.isfinite(exponent), 8.0 - exponent, 0.0).astype(np.int64)
+        up, down = _TENS[np.clip(places, 0, 300)], _TENS[np.clip(-places, 0, 300)]
+        whole = np.rint(x * up / down)
+        back = whole / up * down
     return np.asarray(np.where(np.isfinite(x) & (x != 0.0), back, x))
 
 

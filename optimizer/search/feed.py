@@ -14,7 +14,7 @@ from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.hunt import Hunt, Rules
 from optimizer.search.upper import bound
-from optimizer.search.view import Index, view
+from optimizer.search.view import Index, totals, view
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -47,8 +47,8 @@ def floors(index: Index, opamp: Ints, diode: Ints, *, by: str) -> Floats:
     least = np.empty(opamp.size)
     for begin in range(0, opamp.size, _BLOCK):
         part = slice(begin, begin + _BLOCK)
-        v = view(index, whole(index.space, opamp[part], diode[part]))
-        least[part] = rounded(v.supply_current if by == "supply_current" else v.cost)
+        figures = totals(index, whole(index.space, opamp[part], diode[part]))
+        least[part] = rounded(figures["supply_current" if by == "supply_current" else "cost"])
     return np.where(np.isnan(least), np.inf, least)
 
 

@@ -178,14 +178,13 @@ def view(index: Index, boxes: Boxes) -> View:
     column = boxes.column
     x = Span.of(column(Boxes.X0), column(Boxes.X1))
     r = Span.of(column(Boxes.R0), column(Boxes.R1))
-    c = Span.of(column(Boxes.C0), column(Boxes.C1))
     counts = index.counts[:, column(Boxes.X1)] - index.counts[:, column(Boxes.X0)]
     size = column(Boxes.X1) - column(Boxes.X0)
     return View(
         **_of_opamps(index, column(Boxes.OPAMP)),
         **_of_contexts(index, boxes, x, counts),
         **_of_passives(index, boxes, r),
-        **_of_totals(index, boxes, (x, r, c), counts),
+        **totals(index, boxes),
         rises=counts[RISING] > 0,
         falls=counts[RISING] < size,
         divided=counts[DIVIDED] == size,
@@ -261,9 +260,13 @@ def _of_passives(index: Index, boxes: Boxes, r: Span) -> dict[str, Any]:
     }
 
 
-def _of_totals(index: Index, boxes: Boxes, spans: tuple[Span, Span, Span], counts: Ints) -> dict[str, Any]:
-    """Cost and supply current, at least."""
-    x, r, c = spans
+def totals(index: Index, boxes: Boxes) -> dict[str, Any]:
+    """Cost and supply current of `boxes`, at least."""
+    column = boxes.column
+    x = Span.of(column(Boxes.X0), column(Boxes.X1))
+    r = Span.of(column(Boxes.R0), column(Boxes.R1))
+    c = Span.of(column(Boxes.C0), column(Boxes.C1))
+    counts = index.counts[:, column(Boxes.X1)] - index.counts[:, column(Boxes.X0)]
     o, opamps = boxes.column(Boxes.OPAMP), index.space.opamps
     lone = ~opamps.spare[o]
     extra = lone & (counts[BUFFERED] == boxes.column(Boxes.X1) - boxes.column(Boxes.X0))
