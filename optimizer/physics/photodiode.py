@@ -64,9 +64,12 @@ def junction_capacitance(bias: ArrayLike, points: Sequence[tuple[float, float]])
 def doubled(value: ArrayLike, temperature: ArrayLike, interval: ArrayLike) -> Floats:
     """A current known at 25 C, at `temperature` [C], doubling every `interval` [K] (inf: flat).
 
+    At 25 C the interval need not be known (NaN).
+
     Source: doubling per 10 C of junction leakage, L. Orozco, MS-2624, Analog Devices 2014, p. 3.
     """
-    steps = (np.asarray(temperature, dtype=float) - 25.0) / np.asarray(interval, dtype=float)
+    distance = np.asarray(temperature, dtype=float) - 25.0
+    steps = np.where(distance == 0.0, 0.0, distance / np.asarray(interval, dtype=float))
     return np.asarray(np.asarray(value, dtype=float) * np.exp2(steps))
 
 

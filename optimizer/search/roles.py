@@ -99,7 +99,7 @@ def opamps(parts: Parts, request: Request, kelvin_distance: float) -> OpAmps:
     """Op-amps of the catalog at the hottest ambient; `kelvin_distance`: the larger |T - 25|."""
     n = parts.number
     hottest = request.ambient.hottest
-    bias = _heated(n["bias_current"], hottest, n["bias_doubling"])
+    bias = photodiode.doubled(n["bias_current"], hottest, n["bias_doubling"])
     drift = n["offset_drift"] if kelvin_distance else np.zeros(parts.size)
     amp = loop.amplifier(n["open_loop_gain"], n["gbw"], n["second_pole"])
     with np.errstate(invalid="ignore"):
@@ -134,16 +134,11 @@ def diodes(parts: Parts, request: Request, contexts: Contexts) -> Diodes:
     return Diodes(
         responsivity=responsivity,
         capacitance=np.array(curves, dtype=float).reshape(parts.size, contexts.size),
-        dark=_heated(n["dark_current"], hottest, n["dark_doubling"]),
-        shunt=_heated(1.0 / n["shunt_resistance"], hottest, n["dark_doubling"]),
+        dark=photodiode.doubled(n["dark_current"], hottest, n["dark_doubling"]),
+        shunt=photodiode.shunt_conductance(n["shunt_resistance"], hottest, n["dark_doubling"]),
         pole=photodiode.own_pole(n["rise_time"]),
         price=unit_price(parts.points["price"], request.quantity),
     )
-
-
-def _heated(value: Floats, hottest: float, interval: Floats) -> Floats:
-    """`value` at the hottest ambient; at 25 C the doubling interval need not be known."""
-    return value if hottest == 25.0 else photodiode.doubled(value, hottest, interval)
 
 
 def _first(fails: Sequence[tuple[str, Bools]], size: int) -> Ints:

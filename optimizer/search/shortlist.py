@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.errors import LuxsiftError
+from optimizer.quantities import show
 from optimizer.request.types import Request
 from optimizer.search import assemble, feed, impossible, reasons
 from optimizer.search.bounds import Goals
@@ -85,7 +86,8 @@ def _label(space: Space, catalogs: Catalogs) -> Callable[[Choice], str]:
     def words(choice: Choice) -> str:
         diode = catalogs.photodiodes.text["part"][int(choice.diode[0])]
         opamp = catalogs.opamps.text["part"][int(choice.opamp[0])]
-        return f"{diode} with {opamp}, Rf {space.resistors.value[int(choice.resistor[0])]:.3g} ohm"
+        resistance = float(space.resistors.value[int(choice.resistor[0])])
+        return f"{diode} with {opamp}, Rf {show(resistance, 'resistance')}"
 
     return words
 

@@ -86,7 +86,6 @@ class View:
     responsivity: Floats
     pole: Floats
     dark_low: Floats
-    dark_high: Floats
     shunt_low: Floats
     shunt_high: Floats
     cin_low: Floats
@@ -234,7 +233,6 @@ def _of_contexts(index: Index, boxes: Boxes, x: Span, counts: Ints) -> dict[str,
         "responsivity": diodes.responsivity[d],
         "pole": diodes.pole[d],
         "dark_low": np.where(unbiased, 0.0, dark),
-        "dark_high": np.where(biased, dark, 0.0),
         "shunt_low": np.where(biased, 0.0, shunt),
         "shunt_high": np.where(unbiased, shunt, 0.0),
         "cin_low": diodes.capacitance[d, index.bias_most.position(x)] + amps.node[o],
