@@ -10,7 +10,7 @@ from pathlib import Path
 import pytest
 
 import optimizer as lux
-from optimizer.cli.arguments import SHORTLIST, parse
+from optimizer.cli.arguments import options_of, parse
 from optimizer.request.schema import KEYS
 from optimizer.request.types import RANKINGS, WIRINGS, Request
 from optimizer.vocabulary import COLUMNS, TARGETS, VOCABULARY
@@ -172,7 +172,7 @@ def test_the_table_of_columns_is_that_of_the_reader() -> None:
 
 def test_the_options_are_those_of_the_command() -> None:
     named = {quoted(row[0])[0].split()[0]: row for row in table("option of `shortlist`")}
-    assert named.keys() == set(SHORTLIST)
+    assert named.keys() == set(options_of("shortlist"))
     assert tuple(quoted(named["--by"][1])) == tuple(RANKINGS)
     assert parse(["shortlist", "request.toml"]).request == "request.toml"
 

@@ -6,6 +6,7 @@ import io
 import sys
 from collections.abc import Callable, Sequence
 from contextlib import suppress
+from importlib import import_module
 from typing import TYPE_CHECKING
 
 from optimizer.cli.arguments import parse, parser
@@ -62,14 +63,5 @@ def _run(words: list[str]) -> int:
 
 
 def _command(name: str) -> Callable[[argparse.Namespace], int]:
-    if name == "start":
-        from optimizer.cli.start import start
-
-        return start
-    if name == "inspect":
-        from optimizer.cli.inspect import inspect
-
-        return inspect
-    from optimizer.cli.shortlist import shortlist
-
-    return shortlist
+    command: Callable[[argparse.Namespace], int] = getattr(import_module(f"optimizer.cli.{name}"), name)
+    return command

@@ -7,7 +7,7 @@ from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
 from pathlib import Path
 
-from optimizer.cli.arguments import COMMAND_LINE
+from optimizer.cli.options.shared import COMMAND_LINE
 from optimizer.errors import InputError, LuxsiftError, Problem, clean, shortened
 
 ALIKE, MOST = 5, 60

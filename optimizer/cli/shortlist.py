@@ -10,8 +10,9 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from optimizer.cli.arguments import COMMAND_LINE, STANDARD_OUTPUT, ShortlistOptions, shortlist_options
 from optimizer.cli.messages import LONGEST_WORDS, StudyError, where_from
+from optimizer.cli.options.shared import COMMAND_LINE, STANDARD_OUTPUT
+from optimizer.cli.options.shortlist import ShortlistOptions, shortlist_options
 from optimizer.cli.output import write, write_lines
 from optimizer.cli.progress import watch
 from optimizer.errors import InputError, OutputError, Problem, clean, shortened

@@ -10,7 +10,7 @@ from importlib.resources import files
 from pathlib import Path
 from shlex import quote
 
-from optimizer.cli.arguments import COMMAND_LINE
+from optimizer.cli.options.shared import COMMAND_LINE
 from optimizer.cli.output import write
 from optimizer.errors import InputError, OutputError, Problem, clean, reason
 
