@@ -73,7 +73,6 @@ class Bench:
     strongest: float
     background: float
     noise_from: float
-    stray: float
     bypass: float
     bandwidth_target: float | None
     converter: tuple[float, float, int] | None
@@ -94,7 +93,8 @@ class Settings:
 
     Op-amp: `dc_gain`, `gbw` [Hz], `second_pole` [Hz], `min_gain`, `slew_rate` [V/s], `voltage_noise`
     [V/rtHz], `noise_corner` [Hz], `current_noise` squared and hot [A^2/Hz], `bias` hot [A], `vos` over
-    the ambient [V], `output_low`, `output_high` [V from the rails], `common`, `differential` [F],
+    the ambient [V], `output_low`, `output_high` [V from the rails], `common`, `differential`, and of
+    the board `stray` [F],
     `output_current` [A], `buffers` (may follow at noise gain 1). Diode: `responsivity` [A per unit of
     light], `capacitance` at its bias [F], `dark` [A] and `shunt` [S] in its wiring, `pole` [s].
     Context: `sign` (+1 rising), `vref` [V], `biased`, `divided`, `buffered`, `source` = R1 || R2 [ohm],
@@ -116,6 +116,7 @@ class Settings:
     output_high: Floats
     common: Floats
     differential: Floats
+    stray: Floats
     output_current: Floats
     buffers: Bools
     responsivity: Floats
@@ -180,9 +181,9 @@ def amplifier_of(s: Settings) -> loops.Amplifier:
     return loops.amplifier(s.dc_gain, s.gbw, s.second_pole)
 
 
-def input_capacitance(bench: Bench, s: Settings) -> Floats:
+def input_capacitance(s: Settings) -> Floats:
     """Cin at the summing node [F]."""
-    return np.asarray(s.capacitance + s.common + s.differential + bench.stray)
+    return np.asarray(s.capacitance + s.common + s.differential + s.stray)
 
 
 def dc_error(s: Settings) -> Floats:
@@ -195,7 +196,7 @@ def dc_error(s: Settings) -> Floats:
 def evaluate(bench: Bench, s: Settings) -> Evaluated:
     """All figures and checks of the candidates `s`; NaN where a figure needs an unknown value."""
     amp = amplifier_of(s)
-    cin = input_capacitance(bench, s)
+    cin = input_capacitance(s)
     loop = loops.close(amp, loops.Network(s.rf, s.cf, s.shunt, cin))
     transresistance = s.rf * loop.gain
     error = dc_error(s)
@@ -232,7 +233,7 @@ def evaluate(bench: Bench, s: Settings) -> Evaluated:
 def screen(bench: Bench, s: Settings) -> dict[str, Bools]:
     """The checks of `evaluate` alone, without the figures that they do not need."""
     amp = amplifier_of(s)
-    network = loops.Network(s.rf, s.cf, s.shunt, input_capacitance(bench, s))
+    network = loops.Network(s.rf, s.cf, s.shunt, input_capacitance(s))
     loop = loops.close(amp, network)
     transresistance = s.rf * loop.gain
     offset = dc_error(s) + s.dark * transresistance
@@ -302,7 +303,7 @@ _ReferenceState = tuple[loops.Loop, tuple[Floats, ...], noise.Band, noise.Band]
 def _reference_noise(bench: Bench, s: Settings, state: _ReferenceState) -> Floats:
     """Mean square [V^2] of the divider's noise and, where buffered, of the buffer's own."""
     loop, polynomial, white, flicker = state
-    moving = np.where(s.biased, s.capacitance, 0.0) + s.common + bench.stray
+    moving = np.where(s.biased, s.capacitance, 0.0) + s.common + s.stray
     slope = loop.feedback + s.rf * moving
     square = s.voltage_noise**2
     buffer = noise.output_voltage(loop, square, slope, white)
@@ -321,7 +322,7 @@ def checks(bench: Bench, s: Settings, state: tuple[Floats, Floats, Floats]) -> d
     transresistance, offset, phase = state
     return {
         **steady_checks(bench, s, (transresistance, offset)),
-        "min_gain": min_gain_fails(bench, s),
+        "min_gain": min_gain_fails(s),
         "unstable": np.asarray(~(phase > 0.0)),
     }
 
@@ -335,10 +336,10 @@ def steady_checks(bench: Bench, s: Settings, state: tuple[Floats, Floats]) -> di
     }
 
 
-def min_gain_fails(bench: Bench, s: Settings) -> Bools:
+def min_gain_fails(s: Settings) -> Bools:
     """Where the op-amp works below the noise gain at which it is stable, or cannot buffer its reference."""
     with np.errstate(divide="ignore", invalid="ignore"):
-        small = 1.0 + rounded(input_capacitance(bench, s)) / s.cf < s.min_gain
+        small = 1.0 + rounded(input_capacitance(s)) / s.cf < s.min_gain
     return np.asarray(small | (s.buffered & ~s.buffers))
 
 

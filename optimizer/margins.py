@@ -76,7 +76,9 @@ def raw_margin(name: str, value: Floats, limit: float) -> Floats:
 
 def margins(figures: Mapping[str, Floats], stated: Mapping[str, float]) -> Floats:
     """One column a stated target: the margins of all candidates, shape (candidates, targets)."""
-    return np.stack([margin(name, figures[name], limit) for name, limit in stated.items()], axis=-1)
+    size = np.size(next(iter(figures.values())))
+    columns = [margin(name, figures[name], limit) for name, limit in stated.items()]
+    return np.stack(columns, axis=-1) if columns else np.zeros((size, 0))
 
 
 def limiting(margins_row: Sequence[float], stated: Mapping[str, float]) -> str:

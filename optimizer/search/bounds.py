@@ -20,7 +20,7 @@ The tests hold these to random settings: none may be excluded at its own margin.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -41,13 +41,31 @@ ROUNDING = 2e-8
 ROOT2 = float(np.sqrt(2.0))
 
 
+MET = -SLACK
+"""The margin, loosened, of a target that must be met but is not graded."""
+
+
 @dataclass(frozen=True, slots=True)
 class Goals:
-    """What the request asks: the bench, the limits of graded targets, and comfort."""
+    """What is asked: the bench, the limits of graded targets, and comfort.
+
+    `musts` are limits of targets that must be met (margin 0 or more) without being graded.
+    """
 
     bench: Bench
     limits: Mapping[str, float]
     comfort: float
+    musts: Mapping[str, float] = field(default_factory=dict)
+
+    def limit(self, name: str) -> float | None:
+        """The limit of a target, graded or not; None where there is none."""
+        graded = self.limits.get(name)
+        return self.musts.get(name) if graded is None else graded
+
+    def factor(self, name: str, level: Floats) -> Floats:
+        """1 + the margin that target `name` needs, not below 0; `level`: that of the graded ones."""
+        needed_ = level if name in self.limits else np.full_like(level, MET)
+        return np.maximum(1.0 + needed_, 0.0)
 
 
 @dataclass(frozen=True, slots=True)
@@ -140,19 +158,21 @@ def rf_for_gain(v: View, transresistance: Floats) -> Floats:
 
 def steady_limits(v: View, goals: Goals, level: Floats) -> tuple[Floats, Floats]:
     """Upper bound on Rf [ohm] from all that depends on Rf alone, and the largest swing [V]."""
-    bench, limits = goals.bench, goals.limits
+    bench = goals.bench
     room = swing(v, bench, v.rf_low)
     fixed, slope = error_offset(v), error_slope(v)
-    factor = np.maximum(1.0 + level, 0.0)
-    strongest = bench.strongest * factor if "full_scale" in limits else 0.0 * factor
+    full, rate_limit, most = (goals.limit(name) for name in ("full_scale", "slew", "offset"))
+    strongest = (0.0 if full is None else full) * goals.factor("full_scale", level)
     light = v.responsivity * (strongest + bench.background) + v.dark_low
     with np.errstate(divide="ignore", invalid="ignore"):
         gain = np.where(strongest > 0.0, (room - fixed) / (light + slope), np.inf)
-        if "slew" in limits and bench.bandwidth_target is not None:
-            rate = limits["slew"] * factor * np.pi * bench.bandwidth_target * bench.strongest
+        if rate_limit is not None and bench.bandwidth_target is not None:
+            factor = goals.factor("slew", level)
+            rate = rate_limit * factor * np.pi * bench.bandwidth_target * bench.strongest
             gain = np.minimum(gain, np.where(factor > 0.0, v.slew_rate / (rate * v.responsivity), np.inf))
-        if "offset" in limits:
-            allowed = np.where(factor > 0.0, limits["offset"] / factor - fixed, np.inf)
+        if most is not None:
+            factor = goals.factor("offset", level)
+            allowed = np.where(factor > 0.0, most / factor - fixed, np.inf)
             gain = np.minimum(gain, allowed / (v.dark_low + slope))
         bound = np.where(gain > 0.0, rf_for_gain(v, np.maximum(gain, 0.0)), -1.0)
         return np.minimum(bound, (v.gain - 1.0) / v.shunt_low), room
@@ -160,11 +180,11 @@ def steady_limits(v: View, goals: Goals, level: Floats) -> tuple[Floats, Floats]
 
 def roof(v: View, goals: Goals, level: Floats) -> Roof:
     """What the bandwidth target at `level` asks of the coefficients."""
-    target = goals.limits.get("bandwidth")
+    target = goals.limit("bandwidth")
     if target is None:
         none = np.full(v.gain.shape, np.inf)
         return Roof(none, none, np.zeros_like(none), np.full_like(none, ROOT2))
-    w = 2.0 * np.pi * target * np.maximum(1.0 + level, 0.0)
+    w = 2.0 * np.pi * target * goals.factor("bandwidth", level)
     m = ROOT2 / np.sqrt((1.0 + (w * v.pole) ** 2) * (1.0 + (w * v.lag_low) ** 2))
     with np.errstate(divide="ignore"):
         return Roof(m / w + v.both * (1.0 + m), (1.0 + m) / w**2, w, m)
@@ -330,10 +350,10 @@ def _flicker_floor(first: Floats, second: Floats, start: float) -> Floats:
 
 def needed(v: View, goals: Goals, level: Floats) -> Floats:
     """The most noise [A^2], referred to the input, that the snr target at `level` leaves; inf for none."""
-    limit = goals.limits.get("snr")
+    limit = goals.limit("snr")
     if limit is None:
         return np.full(v.gain.shape, np.inf)
-    factor = np.maximum(1.0 + level, 0.0)
+    factor = goals.factor("snr", level)
     with np.errstate(divide="ignore"):
         return np.asarray((v.responsivity * goals.bench.weakest / factor) ** 2 * 10.0 ** (-limit / 10.0))
 

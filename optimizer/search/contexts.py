@@ -23,6 +23,7 @@ class Contexts:
 
     `top`, `bottom` [ohm] (NaN on ground), `source` = R1 || R2 [ohm] (0 on ground), `current` [A]
     and `cost` of the divider, `resistors` and `bypass` the catalog rows of its families (-1 on ground),
+    `spread` the relative half width of its resistors (0 on ground, NaN unknown),
     `bias` = reverse bias [V] at nominal. `group` numbers the runs of one wiring and one kind of
     reference; inside a group Vref rises.
     """
@@ -40,6 +41,7 @@ class Contexts:
     cost: Floats
     resistors: Ints
     bypass: Ints
+    spread: Floats
     bias: Floats
     group: Ints
 
@@ -64,14 +66,14 @@ def build(request: Request, levels: Sequence[Level]) -> Contexts:
         if name not in space.wirings:
             continue
         if "ground" in space.references:
-            rows.append((wiring, np.nan, np.nan, 0.0, -1, -1))
+            rows.append((wiring, np.nan, np.nan, 0.0, -1, -1, 0.0))
         if "divider" in space.references:
             rows.extend(
-                (wiring, v.top, v.bottom, v.cost, v.resistors, v.bypass)
+                (wiring, v.top, v.bottom, v.cost, v.resistors, v.bypass, v.spread)
                 for v in levels
                 if np.isfinite(v.cost)
             )
-    table = np.array(rows, dtype=float).reshape(-1, 6)
+    table = np.array(rows, dtype=float).reshape(-1, 7)
     wirings, top, bottom, cost = table[:, 0].astype(np.int64), table[:, 1], table[:, 2], table[:, 3]
     divided = np.isfinite(top)
     vref = np.where(divided, reference.divided(supply.high, supply.low, top, bottom), 0.0)
@@ -95,6 +97,7 @@ def build(request: Request, levels: Sequence[Level]) -> Contexts:
         cost=cost[keep],
         resistors=table[keep, 4].astype(np.int64),
         bypass=table[keep, 5].astype(np.int64),
+        spread=table[keep, 6],
         bias=bias[keep],
         group=group[: int(keep.sum())],
     )

@@ -21,7 +21,6 @@ from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes, Span, settings_of, single, whole
 from optimizer.search.incumbents import Incumbents, improve
 from optimizer.search.plain import judge
-from optimizer.search.roles import PASSES
 from optimizer.search.split import filled, halves, narrowed
 from optimizer.search.upper import Bound, bound
 from optimizer.search.view import Index, view
@@ -288,6 +287,6 @@ def _evaluate(hunt: Hunt, pool: Pool) -> None:
     choice = settings_of(pool.boxes, index.resistors, index.capacitors)
     hunt.evaluated += pool.priority.size
     judged = judge(index.space, choice, hunt.rules.by)
-    good = (judged.reach == PASSES) & (judged.vector[:, 0] >= hunt.rules.least)
+    good = judged.admitted & (judged.vector[:, 0] >= hunt.rules.least)
     if good.any():
         improve(index.space, hunt.incumbents, judged.take(good), show=hunt.rules.show)

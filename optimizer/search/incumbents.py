@@ -74,12 +74,13 @@ def _store(incumbents: Incumbents, places: tuple[NDArray[np.int32], Bools], new:
 
 
 def _arrays(judged: Judged) -> tuple[NDArray[np.generic], ...]:
-    return (*judged.choice.columns(), judged.reach, judged.margin_columns, *judged.columns)
+    judged_columns = (judged.reach, judged.admitted, judged.margin_columns)
+    return (*judged.choice.columns(), *judged_columns, *judged.columns)
 
 
 def _joined(left: Judged, right: Judged) -> Judged:
     columns = [np.concatenate(both) for both in zip(_arrays(left), _arrays(right), strict=True)]
-    return Judged(Choice(*columns[:6]), columns[6], columns[7], *columns[8:])
+    return Judged(Choice(*columns[:6]), *columns[6:])
 
 
 def _raise_bar(space: Space, incumbents: Incumbents, changed: Ints, show: int) -> None:

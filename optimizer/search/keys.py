@@ -23,7 +23,7 @@ def primary(by: str, figures: Mapping[str, Floats], least: Floats) -> Floats:
 
 def comfortable(space: Space, margin_columns: Floats) -> Floats:
     """Margins (candidates, targets) cut at comfort and sorted, the smallest first."""
-    return np.sort(np.minimum(margin_columns, space.request.ranking.comfort), axis=1)
+    return np.sort(np.minimum(margin_columns, space.comfort), axis=1)
 
 
 def within_pair(space: Space, choice: Choice, columns: tuple[Floats, Floats, Floats]) -> Floats:

@@ -6,7 +6,7 @@ The tests hold the search to it on small spaces, and the benchmark measures its 
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,31 +19,37 @@ from optimizer.search.space import Choice, Space, own_code, settings
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Bools = NDArray[np.bool_]
 
 BLOCK = 16384
 
 
 @dataclass(frozen=True, slots=True)
 class Judged:
-    """Settings evaluated: what keys need. `reach`: first check failed, PASSES where eligible."""
+    """Settings evaluated: what keys need. `reach`: first check failed, PASSES where eligible.
+
+    `admitted`: eligible, and all that must be met without being graded is met.
+    """
 
     choice: Choice
     reach: Ints
+    admitted: Bools
     margin_columns: Floats
     primary: Floats
     cost: Floats
     vector: Floats
 
     @property
-    def meets(self) -> NDArray[np.bool_]:
-        """Where the setting is eligible and misses nothing."""
-        return np.asarray((self.reach == PASSES) & (self.vector[:, 0] >= 0.0))
+    def meets(self) -> Bools:
+        """Where the setting is admitted and misses nothing."""
+        return np.asarray(self.admitted & (self.vector[:, 0] >= 0.0))
 
-    def take(self, rows: NDArray[np.int64] | NDArray[np.bool_]) -> Judged:
+    def take(self, rows: Ints | Bools) -> Judged:
         """The settings at `rows`."""
         return Judged(
             self.choice.take(rows),
             self.reach[rows],
+            self.admitted[rows],
             self.margin_columns[rows],
             self.primary[rows],
             self.cost[rows],
@@ -66,7 +72,8 @@ def judge(space: Space, choice: Choice, by: str) -> Judged:
     columns = margins.margins(result.figures, space.limits)
     vector = keys.comfortable(space, columns)
     first = keys.primary(by, result.figures, vector[:, 0])
-    return Judged(choice, reach, columns, first, result.figures["cost"], vector)
+    admitted = (reach == PASSES) & np.all(margins.margins(result.figures, space.musts) >= 0.0, axis=1)
+    return Judged(choice, reach, admitted, columns, first, result.figures["cost"], vector)
 
 
 def every_choice(space: Space, opamp: int, diode: int) -> Iterator[Choice]:
@@ -97,10 +104,8 @@ def pair(space: Space, opamp: int, diode: int) -> PairResult:
         judged = judge(space, choice, space.request.ranking.by)
         reach = max(reach, int(judged.reach.max()))
         best = _better(space, best, judged.take(judged.meets))
-        near = judged.take(judged.reach == PASSES)
-        near = Judged(
-            near.choice, near.reach, near.margin_columns, -near.vector[:, 0], near.cost, near.vector
-        )
+        near = judged.take(judged.admitted)
+        near = replace(near, primary=-near.vector[:, 0])
         nearest = _better(space, nearest, near)
     return PairResult(best, nearest, reach)
 

@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 from optimizer.figures import (
     CHECKS,
     Settings,
+    input_capacitance,
     min_gain_fails,
     screen,
     steady_checks,
@@ -165,7 +166,7 @@ def _best_imaginable(space: Space, opamp: Ints, diode: Ints) -> Ints:
         steady = steady_checks(space.bench, s, steady_state(s))
         # an output that rests on the rail wants a large Rf, not a small one
         steady["dark_output"] &= ~(space.bench.dark_on_rail & (x.sign > 0) & ~x.divided)[context]
-        checks = {**steady, "min_gain": min_gain_fails(space.bench, s)}
+        checks = {**steady, "min_gain": min_gain_fails(s)}
         return np.asarray(_worst(own_code(space, choice), checks).reshape(-1, count).max(axis=1))
 
 
@@ -222,12 +223,12 @@ def _largest(space: Space, s: Settings) -> Ints:
     order = np.argsort(space.capacitors.value, kind="stable")
     value = space.capacitors.value[order]
     parasitic = s.cf - value[0]
-    cin = s.capacitance + s.common + s.differential + space.bench.stray
+    cin = input_capacitance(s)
     with np.errstate(divide="ignore"):
         allowed = np.where(s.min_gain > 1.0, cin / (s.min_gain - 1.0), np.inf) - parasitic
     place = np.clip(np.searchsorted(value, allowed * (1.0 + 1e-7), "right") - 1, 0, value.size - 1)
     # the check compares a rounded capacitance: at its very edge one step down is the largest
-    over = min_gain_fails(space.bench, replace(s, cf=value[place] + parasitic))
+    over = min_gain_fails(replace(s, cf=value[place] + parasitic))
     return np.asarray(order[np.maximum(place - over, 0)])
 
 

@@ -40,7 +40,8 @@ ALWAYS = {
 class OpAmps:
     """One element an op-amp; units as in `figures.Settings`. `single`, `double`: price of one package
 
-    at the build quantity, and of two at twice that; `cool`: supply current of one package [A].
+    at the build quantity, and of two at twice that; `cool`: supply current of one package [A];
+    `own_noise`: current noise squared at 25 C [A^2/Hz], which `current_noise` holds when hot.
     """
 
     dc_gain: Floats
@@ -51,6 +52,7 @@ class OpAmps:
     voltage_noise: Floats
     noise_corner: Floats
     current_noise: Floats
+    own_noise: Floats
     bias: Floats
     vos: Floats
     output_low: Floats
@@ -76,6 +78,7 @@ class Diodes:
     dark: Floats
     shunt: Floats
     pole: Floats
+    reverse_max: Floats
     price: Floats
 
 
@@ -104,12 +107,12 @@ def opamps(parts: Parts, request: Request, kelvin_distance: float) -> OpAmps:
     amp = loop.amplifier(n["open_loop_gain"], n["gbw"], n["second_pole"])
     with np.errstate(invalid="ignore"):
         follower = loop.follower_phase_margin(amp) >= FOLLOWER_MARGIN
-        shot = noise.shot_current(bias)
-        current = np.fmax(n["current_noise"] ** 2, shot)
+        own = n["current_noise"] ** 2
+        current = np.fmax(own, noise.shot_current(bias))
     return OpAmps(
         dc_gain=n["open_loop_gain"], gbw=n["gbw"], second_pole=n["second_pole"], min_gain=n["min_gain"],
         slew_rate=n["slew_rate"], voltage_noise=n["voltage_noise"], noise_corner=n["noise_corner"],
-        current_noise=current, bias=bias,
+        current_noise=current, own_noise=own, bias=bias,
         vos=output.offset_voltage(n["offset_voltage"], drift, kelvin_distance),
         output_low=n["output_low"], output_high=n["output_high"],
         input_low=n["input_low"], input_high=n["input_high"],
@@ -137,6 +140,7 @@ def diodes(parts: Parts, request: Request, contexts: Contexts) -> Diodes:
         dark=photodiode.doubled(n["dark_current"], hottest, n["dark_doubling"]),
         shunt=photodiode.shunt_conductance(n["shunt_resistance"], hottest, n["dark_doubling"]),
         pole=photodiode.own_pole(n["rise_time"]),
+        reverse_max=n["reverse_max"],
         price=unit_price(parts.points["price"], request.quantity),
     )
 

@@ -17,10 +17,11 @@ from optimizer.search import assemble, feed, impossible, reasons
 from optimizer.search.bounds import Goals
 from optimizer.search.crew import Crew, Found
 from optimizer.search.hunt import Rules
+from optimizer.search.query import query
 from optimizer.search.result import Outcome, Progress
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space, build
-from optimizer.search.view import Index, lay_out
+from optimizer.search.view import Index
 
 Ints = NDArray[np.int64]
 
@@ -70,9 +71,9 @@ def _shortlist(request: Request, catalogs: Catalogs, workers: int, progress: Rep
         return Outcome(
             (), (), space.combinations, pairs, 0, time.perf_counter() - begun, True, impossible=known
         )
-    index = lay_out(space)
-    goals = Goals(space.bench, space.limits, request.ranking.comfort)
-    work = Work(space, index, goals, catalogs, Crew(index, workers, progress, _label(space, catalogs)))
+    asked = query(space)
+    crew = Crew(asked.index, workers, progress, _label(space, catalogs))
+    work = Work(space, asked.index, asked.goals, catalogs, crew)
     try:
         return replace(_searched(work), seconds=time.perf_counter() - begun)
     except KeyboardInterrupt:

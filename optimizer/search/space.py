@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -44,8 +44,9 @@ class Choice:
 class Space:
     """Everything a search needs, in SI; nothing here changes during a search.
 
-    `order_opamps`, `order_diodes`: rank of each part by name, then maker. `combinations` counts the
-    declared space.
+    `limits` are those of the graded targets, `musts` those of targets that must be met without being
+    graded; margins from `comfort` up rank alike. `order_opamps`, `order_diodes`: rank of each part by
+    name, then maker. `combinations` counts the declared space.
     """
 
     request: Request
@@ -62,6 +63,8 @@ class Space:
     order_opamps: Ints
     order_diodes: Ints
     combinations: int
+    comfort: float
+    musts: Mapping[str, float] = field(default_factory=dict)
 
 
 def bench_of(request: Request) -> Bench:
@@ -78,7 +81,6 @@ def bench_of(request: Request) -> Bench:
         strongest=light.strongest,
         background=light.background,
         noise_from=space.noise_from,
-        stray=space.stray,
         bypass=space.divider.bypass,
         bandwidth_target=request.targets.bandwidth,
         converter=None if converter is None else (converter.low, converter.high, converter.bits),
@@ -90,7 +92,13 @@ def bench_of(request: Request) -> Bench:
 
 
 def build(request: Request, catalogs: Catalogs) -> Space:
-    """Compile `request` and `catalogs`."""
+    """Compile `request` and `catalogs`; of capacitors that differ in price only, the cheapest stays."""
+    whole = build_whole(request, catalogs)
+    return replace(whole, capacitors=values.cheapest(whole.capacitors, request))
+
+
+def build_whole(request: Request, catalogs: Catalogs) -> Space:
+    """Compile `request` and `catalogs` with every capacitor family that the request admits."""
     bench = bench_of(request)
     levels = values.divider_levels(request, catalogs.resistors, catalogs.capacitors)
     contexts = context_room.build(request, levels)
@@ -118,6 +126,7 @@ def build(request: Request, catalogs: Catalogs) -> Space:
         order_opamps=_ranks(catalogs.opamps.text["part"], catalogs.opamps.text["maker"]),
         order_diodes=_ranks(catalogs.photodiodes.text["part"], catalogs.photodiodes.text["maker"]),
         combinations=combinations,
+        comfort=request.ranking.comfort,
     )
 
 
@@ -164,6 +173,7 @@ def settings(space: Space, c: Choice) -> Settings:
         output_high=o.output_high[c.opamp],
         common=o.common[c.opamp],
         differential=o.differential[c.opamp],
+        stray=np.full(c.opamp.shape, space.request.space.stray),
         output_current=o.output_current[c.opamp],
         buffers=o.buffers[c.opamp],
         responsivity=d.responsivity[c.diode],
@@ -181,9 +191,15 @@ def settings(space: Space, c: Choice) -> Settings:
         rf=space.resistors.value[c.resistor],
         cf=space.capacitors.value[c.capacitor] + space.resistors.parasitic[c.resistor],
         low_pass=space.low_passes[c.low_pass],
-        supply_current=np.where(extra, 2.0, 1.0) * o.cool[c.opamp] + x.current[c.context],
+        supply_current=packages_current(space, c) + x.current[c.context],
         cost=total_cost(prices),
     )
+
+
+def packages_current(space: Space, c: Choice) -> Floats:
+    """Supply current [A] of the op-amp packages of each choice."""
+    extra = space.contexts.buffered[c.context] & ~space.opamps.spare[c.opamp]
+    return np.where(extra, 2.0, 1.0) * space.opamps.cool[c.opamp]
 
 
 def own_code(space: Space, c: Choice) -> Ints:

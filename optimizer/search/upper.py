@@ -71,15 +71,16 @@ def bound(v: View, goals: Goals, level: Floats, inner: Floats | None = None) -> 
         columns = _ceilings(v, (left, c, floor), goals, level=inner, snr=snr)
     cost, current = rounded(v.cost), rounded(v.supply_current)
     exact = {"cost": cost, "supply_current": current}
-    table = np.empty((v.gain.size, len(columns)))
+    table = np.empty((v.gain.size, len(goals.limits)))
     possible = left.possible
-    for k, (name, column) in enumerate(zip(goals.limits, columns, strict=True)):
+    for k, (name, column) in enumerate(columns.items()):
         if name in exact:
-            table[:, k] = margins.margin(name, exact[name], goals.limits[name])
-            possible = possible & (table[:, k] >= level)
+            highest, least = margins.margin(name, exact[name], _limit(goals, name)), level
         else:
-            table[:, k] = _on_grid(name, column)
-            possible = possible & (table[:, k] >= inner)
+            highest, least = _on_grid(name, column), inner
+        possible = possible & (highest >= (least if name in goals.limits else 0.0))
+        if name in goals.limits:
+            table[:, k] = highest
     return Bound(possible, np.clip(table, -1.0, goals.comfort), snr + 1e-6, cost, current, left)
 
 
@@ -110,10 +111,19 @@ def _decibels(signal: Floats, square: Floats) -> Floats:
 _State = tuple[Narrow, Coefficients, Floor]
 
 
-def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Floats) -> list[Floats]:
-    """Upper bound on the margin of each stated target, in their order; cost and current come later."""
+def _limit(goals: Goals, name: str) -> float:
+    limit = goals.limit(name)
+    assert limit is not None, name
+    return limit
+
+
+def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Floats) -> dict[str, Floats]:
+    """Upper bound on the margin of each target, the graded ones first and in their order.
+
+    Cost and supply current come later.
+    """
     left, c, floor = state
-    limits = goals.limits
+    limits = {**goals.musts, **goals.limits}
     scale = margins.PHASE_SCALE
     bounds: dict[str, Callable[[], Floats]] = {
         "bandwidth": lambda: _bandwidth(v, c, goals, level),
@@ -129,7 +139,7 @@ def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Float
         "supply_current": lambda: np.full(v.gain.shape, np.inf),
         "cost": lambda: np.full(v.gain.shape, np.inf),
     }
-    return [bounds[name]() for name in limits]
+    return {name: bounds[name]() for name in (*goals.limits, *goals.musts)}
 
 
 def _offset(v: View, left: Narrow) -> Floats:
@@ -163,7 +173,9 @@ def _slew(v: View, left: Narrow, goals: Goals) -> Floats:
 
 def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
     """The margin up to comfort that the bandwidth can have: where |H| is certainly below H0/sqrt 2."""
-    target = 2.0 * np.pi * goals.limits["bandwidth"]
+    target = 2.0 * np.pi * _limit(goals, "bandwidth")
+    if "bandwidth" not in goals.limits:
+        level = np.zeros_like(level)
 
     def excluded(margin: Floats) -> Bools:
         x = (target * np.maximum(1.0 + margin, 0.0)) ** 2
@@ -179,7 +191,9 @@ def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
     over = excluded(high)
     low = np.where(over, low, high)
     for _ in range(_STEPS):
-        middle = 0.5 * (low + high)
+        middle = np.where(
+            high > 4.0, np.sqrt((1.0 + np.maximum(low, -0.99)) * (1.0 + high)) - 1.0, 0.5 * (low + high)
+        )
         out = excluded(middle)
         high = np.where(out, middle, high)
         low = np.where(out, low, middle)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from collections.abc import Set as AbstractSet
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from decimal import Decimal
 from math import gcd
 
@@ -25,8 +25,9 @@ class Passives:
     """Choices of one passive, grouped by family, rising within each.
 
     `family` is an index into `names` (sorted by name, then maker) and `rows` (their catalog rows),
-    `value` in ohm or F, `parasitic` in F, `price` a piece at the build quantity. `declared` counts
-    them before any was dropped.
+    `value` in ohm or F, `parasitic` in F, `price` a piece at the build quantity, `spread` the relative
+    half width of the value over tolerance and ambient (NaN: unknown). `declared` counts them before
+    any was dropped.
     """
 
     names: tuple[str, ...]
@@ -35,6 +36,7 @@ class Passives:
     value: Floats
     parasitic: Floats
     price: Floats
+    spread: Floats
     declared: int
 
     @property
@@ -47,7 +49,8 @@ class Passives:
 class Level:
     """One divider: resistors `top` and `bottom` [ohm], what the parts cost (NaN: not to be had), and
 
-    the catalog rows of the families that the resistors and the bypass come from (-1: none).
+    the catalog rows of the families that the resistors and the bypass come from (-1: none). `spread`:
+    relative half width of the resistors.
     """
 
     top: float
@@ -55,6 +58,7 @@ class Level:
     cost: float
     resistors: int = -1
     bypass: int = -1
+    spread: float = float("nan")
 
 
 def family_values(parts: Parts, row: int) -> Floats:
@@ -87,21 +91,51 @@ def resistors(parts: Parts, request: Request) -> Passives:
 
 
 def capacitors(parts: Parts, request: Request) -> Passives:
-    """Placed feedback capacitors, the cheapest family for each value (ties: first by name).
+    """Placed feedback capacitors: every value of every admitted family inside the request's range.
 
-    `none`, where the request allows it, is the first: value 0, family -1, free.
+    `none`, where the request allows it, is the first: value 0, family -1, free, exact.
     """
     every = _collect(parts, request, request.space.capacitance)
-    order = np.lexsort((every.family, every.price, every.value))
+    if not request.space.no_capacitor:
+        return every
+    return replace(
+        every,
+        family=np.r_[-1, every.family],
+        value=np.r_[0.0, every.value],
+        parasitic=np.zeros(every.size + 1),
+        price=np.r_[0.0, every.price],
+        spread=np.r_[0.0, every.spread],
+        declared=every.declared + 1,
+    )
+
+
+def cheapest(passives: Passives, request: Request) -> Passives:
+    """The cheapest family for each value (ties: first by name), and for each spread where it counts."""
+    counts = np.where(corners(request), passives.spread, 0.0)
+    order = np.lexsort((passives.family, passives.price, counts, passives.value))
     first = np.ones(order.size, dtype=bool)
-    first[1:] = np.diff(every.value[order]) != 0.0
+    first[1:] = (np.diff(passives.value[order]) != 0.0) | (np.diff(counts[order]) != 0.0)
     keep = np.sort(order[first])
-    family, value, price = every.family[keep], every.value[keep], every.price[keep]
-    declared = every.declared
-    if request.space.no_capacitor:
-        family, value, price = np.r_[-1, family], np.r_[0.0, value], np.r_[0.0, price]
-        declared += 1
-    return Passives(every.names, every.rows, family, value, np.zeros(value.size), price, declared)
+    columns = ("family", "value", "parasitic", "price", "spread")
+    return replace(passives, **{name: getattr(passives, name)[keep] for name in columns})
+
+
+def corners(request: Request) -> bool:
+    """Whether targets must hold at every corner of the spreads."""
+    return request.tolerance.method == "corners"
+
+
+def spreads(parts: Parts, request: Request) -> Floats:
+    """Relative half width of the values of each family over tolerance and ambient; NaN where unknown."""
+    tempco = parts.number.get("tempco", np.zeros(parts.size))
+    distance = max(abs(request.ambient.coldest - 25.0), abs(request.ambient.hottest - 25.0))
+    return np.asarray(parts.number["tolerance"] + (tempco * distance if distance else 0.0))
+
+
+def _usable(parts: Parts, request: Request) -> NDArray[np.bool_]:
+    """Families of which all is known that the request needs: price, and for corners the spread."""
+    known = np.isfinite(unit_price(parts.points["price"], request.quantity))
+    return np.asarray(known & np.isfinite(spreads(parts, request)) if corners(request) else known)
 
 
 def _collect(parts: Parts, request: Request, span: tuple[float, float]) -> Passives:
@@ -111,7 +145,8 @@ def _collect(parts: Parts, request: Request, span: tuple[float, float]) -> Passi
     inside = [
         v[(v >= span[0]) & (v <= span[1])] for v in (family_values(parts, r) for r in range(parts.size))
     ]
-    rows = [r for r in admitted(parts, request.space) if inside[r].size and np.isfinite(prices[r])]
+    usable = _usable(parts, request)
+    rows = [r for r in admitted(parts, request.space) if inside[r].size and usable[r]]
     rows.sort(key=lambda r: (str(name[r]), str(maker[r])))
     family = np.repeat(np.arange(len(rows)), [inside[r].size for r in rows]).astype(np.int64)
     chosen = np.array(rows, dtype=np.int64)[family]
@@ -122,6 +157,7 @@ def _collect(parts: Parts, request: Request, span: tuple[float, float]) -> Passi
         value=np.concatenate([np.zeros(0), *(inside[r] for r in rows)]),
         parasitic=parasitic[chosen],
         price=prices[chosen],
+        spread=spreads(parts, request)[chosen],
         declared=sum(v.size for v in inside),
     )
 
@@ -129,12 +165,14 @@ def _collect(parts: Parts, request: Request, span: tuple[float, float]) -> Passi
 def divider_levels(request: Request, resistor_parts: Parts, capacitor_parts: Parts) -> list[Level]:
     """One divider a ratio, the largest pair of it, by rising Vref; cost NaN where no family offers it."""
     divider = request.space.divider
-    resistor_offers = _offers(resistor_parts, request)
+    usable = _usable(resistor_parts, request)
+    resistor_offers = [offer for offer in _offers(resistor_parts, request) if usable[offer[1]]]
     capacitor, bypass = _cheapest(_offers(capacitor_parts, request), {divider.bypass})
+    spread = np.r_[spreads(resistor_parts, request), np.nan]
     levels = []
     for top, bottom in _ratios(series_values(divider.series, divider.low, divider.high)):
         piece, row = _cheapest(resistor_offers, {top, bottom})
-        levels.append(Level(top, bottom, 2.0 * piece + capacitor, row, bypass))
+        levels.append(Level(top, bottom, 2.0 * piece + capacitor, row, bypass, float(spread[row])))
     return levels
 
 

@@ -149,7 +149,7 @@ def _passes(code: NDArray[np.int8]) -> NDArray[np.int32]:
 
 
 def _amps(space: Space) -> Amps:
-    bench, o = space.bench, space.opamps
+    bench, o, stray = space.bench, space.opamps, space.request.space.stray
     a, b = o.dc_gain / (2 * np.pi * o.gbw), 1.0 / (2 * np.pi * o.second_pole)
     limits = [output_limits(bench, end, o.output_low, o.output_high) for end in bench.ends]
     lower = np.array([low + bench.guard for low, _ in limits])
@@ -162,8 +162,8 @@ def _amps(space: Space) -> Amps:
             both=a * b / (a + b),
             lower=lower,
             upper=upper,
-            node=o.common + o.differential + bench.stray,
-            reference_node=o.common + bench.stray,
+            node=o.common + o.differential + stray,
+            reference_node=o.common + stray,
             vref_floor=np.max((bench.low * ends + o.input_low) / ends, axis=0),
             vref_ceiling=np.min((bench.high * ends - o.input_high) / ends, axis=0),
             dark_floor=np.max(lower / ends, axis=0),

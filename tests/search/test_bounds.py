@@ -45,7 +45,7 @@ def eligible(seed: int) -> tuple[Index, Judged] | None:
     request = with_targets(rng, replace(request, space=space, targets=Targets()), catalogs, keep=0.9)
     compiled = spaces.build(request, catalogs)
     judged = judge(compiled, sampled(rng, compiled, COUNT), "cost")
-    judged = judged.take(judged.reach == PASSES)
+    judged = judged.take(judged.admitted)
     return (views.lay_out(compiled), judged) if judged.reach.size else None
 
 
