@@ -35,12 +35,17 @@ ROOMS: dict[str, set[str]] = {
     "study": {"catalog", "request", "toml", "vocabulary"},
     "figures": {"physics", "catalog", "request"},
     "margins": {"quantities", "request"},
+    "statistics": set(),
     "search": {
-        "physics", "figures", "margins", "catalog", "request", "quantities", "series", "vocabulary",
+        "physics", "figures", "margins", "catalog", "request", "quantities", "series", "statistics",
+        "vocabulary",
     },
     "record": {"search", "study", "request", "quantities", "vocabulary"},
-    "report": {"record", "search", "catalog", "quantities", "vocabulary"},
-    "cli": {"record", "report", "search", "study", "request", "catalog"},
+    "review": {
+        "search", "study", "record", "request", "figures", "margins", "catalog", "quantities", "vocabulary",
+    },
+    "report": {"review", "record", "search", "catalog", "quantities", "vocabulary"},
+    "cli": {"record", "review", "report", "search", "study", "request", "catalog"},
 }  # fmt: skip
 TOP_MODULES = {"__init__", "__main__"}
 
@@ -51,9 +56,11 @@ OUTSIDE: dict[str, set[str]] = {
     "catalog": {"numpy", "pandas", "openpyxl"},
     "figures": {"numpy"},
     "margins": {"numpy"},
+    "statistics": {"numpy", "scipy"},
     "search": {"numpy", "scipy"},
     "record": {"pandas"},
-    "report": {"rich"},
+    "review": {"numpy"},
+    "report": {"rich", "numpy", "matplotlib", "jinja2", "markupsafe"},
     "cli": {"rich"},
 }
 

@@ -16,9 +16,11 @@ from optimizer.request.types import (
     Light,
     Ranking,
     Request,
+    Resilience,
     Space,
     Supply,
     Targets,
+    Tolerance,
 )
 from optimizer.request.values import Level, Money
 
@@ -45,6 +47,8 @@ def build(reading: Reading, path: Path) -> Request:
         space=_space(reading),
         converter=_converter(reading),
         ranking=Ranking(**_table(("ranking",), reading)),
+        tolerance=_tolerance(reading),
+        resilience=Resilience(**_table(("resilience",), reading)),
         assume=dict(reading.assume),
     )
 
@@ -78,6 +82,13 @@ def _supply(reading: Reading) -> Supply:
 def _ambient(reading: Reading) -> Ambient:
     stated = any(key[0] == "ambient" for key in reading.values)
     return Ambient(**_table(("ambient",), reading), stated=stated)
+
+
+def _tolerance(reading: Reading) -> Tolerance:
+    """Return the spreads; a table that is stated counts even where it is empty."""
+    values = _table(("tolerance",), reading)
+    goal = values.pop("yield")
+    return Tolerance(**values, yield_=goal, stated=("tolerance",) in reading.tables)
 
 
 def _targets(reading: Reading) -> Targets:

@@ -6,7 +6,7 @@ import math
 from dataclasses import asdict
 from typing import Any
 
-from optimizer.request.types import Converter, Light, Request, Space
+from optimizer.request.types import Converter, Light, Request, Space, Tolerance
 from optimizer.vocabulary import COLUMNS
 from optimizer.vocabulary.allowed import NO_EFFECT
 
@@ -31,6 +31,8 @@ def in_force(request: Request) -> dict[str, Any]:
         "assume": _assume(request),
         "catalogs": {role: list(files) for role, files in request.catalogs.items()},
         "ranking": asdict(request.ranking),
+        "tolerance": _tolerance(request.tolerance),
+        "resilience": asdict(request.resilience),
     }
     return {name: value for name, value in tables.items() if value != {}}
 
@@ -59,6 +61,19 @@ def _load_to(request: Request) -> float | str:
 def _ambient(request: Request) -> dict[str, Any]:
     ambient = request.ambient
     return {"coldest": ambient.coldest, "hottest": ambient.hottest} if ambient.stated else {}
+
+
+def _tolerance(tolerance: Tolerance) -> dict[str, Any]:
+    if tolerance == Tolerance():
+        return {}
+    drawn = {
+        "method": tolerance.method,
+        "yield": tolerance.yield_,
+        "distribution": tolerance.distribution,
+        "draws": tolerance.draws,
+        "seed": tolerance.seed,
+    }
+    return _stated(drawn) | tolerance.spreads
 
 
 def _space(space: Space) -> dict[str, Any]:

@@ -6,7 +6,19 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from optimizer.request.types import RANKINGS, REFERENCES, ROLES, WIRINGS, Ranking, Space, Supply
+from optimizer.request.types import (
+    DISTRIBUTIONS,
+    METHODS,
+    RANKINGS,
+    REFERENCES,
+    ROLES,
+    WIRINGS,
+    Ranking,
+    Resilience,
+    Space,
+    Supply,
+    Tolerance,
+)
 from optimizer.request.values import (
     CATALOG_CURRENCY,
     Reader,
@@ -40,11 +52,13 @@ class Key:
 
 LONGEST_WAVE = 1e-3
 MOST_BITS = 64
+MOST_DRAWS = 1_000_000
 CONVERTER_BITS, CONVERTER_LOW, CONVERTER_HIGH = 16, 0.0, 4.096
 
 _SUPPLY = Supply(high=0.0)
 _SPACE = Space()
 _RANKING = Ranking()
+_TOLERANCE = Tolerance()
 _VOLTAGE = quantity("voltage")
 _TEMPERATURE = quantity("temperature", least=ABSOLUTE_ZERO)
 _RESISTANCE = quantity("resistance", above=0.0)
@@ -129,6 +143,20 @@ _TABLES: dict[str, dict[str, Key]] = {
         "by": Key(word(RANKINGS), _RANKING.by),
         "show": Key(whole(1), _RANKING.show),
         "comfort": Key(share, _RANKING.comfort),
+    },
+    "tolerance": {
+        "method": Key(word(METHODS), _TOLERANCE.method),
+        "yield": Key(quantity("fraction", above=0.0, below=1.0)),
+        "distribution": Key(word(DISTRIBUTIONS), _TOLERANCE.distribution),
+        "draws": Key(whole(1, MOST_DRAWS), _TOLERANCE.draws),
+        "seed": Key(whole(0), _TOLERANCE.seed),
+        **{
+            name: Key(quantity("fraction", least=0.0, below=1.0), spread)
+            for name, spread in _TOLERANCE.spreads.items()
+        },
+    },
+    "resilience": {
+        "opamp_sources": Key(whole(1), Resilience().opamp_sources),
     },
 }
 

@@ -10,6 +10,19 @@ WIRINGS = ("rising-unbiased", "rising-biased", "falling-unbiased", "falling-bias
 REFERENCES = ("ground", "divider")
 RANKINGS = ("cost", "margin", "snr", "supply_current")
 ROLES = ("opamps", "photodiodes", "resistors", "capacitors")
+METHODS = ("nominal", "corners")
+DISTRIBUTIONS = ("uniform", "normal")
+SPREADS = (
+    "gbw",
+    "voltage_noise",
+    "input_capacitance",
+    "diode_capacitance",
+    "responsivity",
+    "stray",
+    "dark_current",
+    "bias_current",
+    "open_loop_gain",
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,6 +57,11 @@ class Ambient:
     coldest: float = 25.0
     hottest: float = 25.0
     stated: bool = False
+
+    @property
+    def distance(self) -> float:
+        """How far the ambient goes from 25 C, at the end that goes farther."""
+        return max(abs(self.coldest - 25.0), abs(self.hottest - 25.0))
 
 
 @dataclass(frozen=True, slots=True)
@@ -112,6 +130,45 @@ class Ranking:
 
 
 @dataclass(frozen=True, slots=True)
+class Tolerance:
+    """How real parts differ from their nominal values; `stated` is False without [tolerance].
+
+    `method` says which values are graded: the nominal ones, or every corner of the spreads. Each
+    spread is the greatest relative distance from nominal, at least 0 and below 1; those of resistors
+    and capacitors stand in their catalogs. `yield_` (the key `yield`) is the least fraction of the
+    random draws that should meet the request, None where the request states none.
+    """
+
+    method: str = "nominal"
+    yield_: float | None = None
+    distribution: str = "uniform"
+    draws: int = 10_000
+    seed: int = 1
+    gbw: float = 0.0
+    voltage_noise: float = 0.0
+    input_capacitance: float = 0.0
+    diode_capacitance: float = 0.0
+    responsivity: float = 0.0
+    stray: float = 0.0
+    dark_current: float = 0.0
+    bias_current: float = 0.0
+    open_loop_gain: float = 0.0
+    stated: bool = False
+
+    @property
+    def spreads(self) -> dict[str, float]:
+        """The relative spreads by name, in the order of SPREADS."""
+        return {name: getattr(self, name) for name in SPREADS}
+
+
+@dataclass(frozen=True, slots=True)
+class Resilience:
+    """From how many makers the op-amp of a candidate must be had, the chosen one counted."""
+
+    opamp_sources: int = 1
+
+
+@dataclass(frozen=True, slots=True)
 class Request:
     """One request, whole: every key with the value in force.
 
@@ -132,4 +189,6 @@ class Request:
     space: Space = Space()
     converter: Converter | None = None
     ranking: Ranking = Ranking()
+    tolerance: Tolerance = Tolerance()
+    resilience: Resilience = Resilience()
     assume: Mapping[tuple[str, str], float] = field(default_factory=dict)

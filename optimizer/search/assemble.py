@@ -11,8 +11,10 @@ from optimizer import margins
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import FIGURES, evaluate
 from optimizer.request.types import WIRINGS
+from optimizer.search.outlines import outlines
 from optimizer.search.result import Candidate, Reference, TargetValue
 from optimizer.search.space import Choice, Space, settings
+from optimizer.search.worst import Worst, worst
 
 Floats = NDArray[np.float64]
 
@@ -29,9 +31,10 @@ def candidates(space: Space, catalogs: Catalogs, choice: Choice) -> tuple[Candid
         return ()
     with np.errstate(all="ignore"):
         figures = evaluate(space.bench, settings(space, choice)).figures
-    table = margins.margins(figures, space.limits)
-    graded = (figures, table)
-    return tuple(_candidate(space, catalogs, choice, row, graded) for row in range(table.shape[0]))
+    at_worst = worst(space, choice)
+    return tuple(
+        _candidate(space, catalogs, choice, row, (figures, at_worst)) for row in range(choice.opamp.size)
+    )
 
 
 def plain_number(value: float) -> float | None:
@@ -39,17 +42,33 @@ def plain_number(value: float) -> float | None:
     return float(f"{value:.9g}") if np.isfinite(value) else None
 
 
+def _targets(
+    space: Space, figures: Mapping[str, Floats], at_worst: Worst | None, row: int
+) -> Iterator[TargetValue]:
+    """The graded targets of one setting: at nominal, or by the worst corner where corners are graded."""
+    for name, limit in space.limits.items():
+        value = figures[name][row]
+        nominal = plain_number(float(value))
+        if at_worst is None:
+            yield TargetValue(name, nominal, limit, float(margins.margin(name, value, limit)))
+        else:
+            least = plain_number(float(at_worst.value[name][row]))
+            margin = float(at_worst.margin[name][row])
+            yield TargetValue(name, nominal, limit, margin, least, at_worst.corner(name, row))
+
+
 def _candidate(
-    space: Space, catalogs: Catalogs, choice: Choice, row: int, graded: tuple[Mapping[str, Floats], Floats]
+    space: Space,
+    catalogs: Catalogs,
+    choice: Choice,
+    row: int,
+    graded: tuple[Mapping[str, Floats], Worst | None],
 ) -> Candidate:
-    figures, table = graded
+    figures, at_worst = graded
     o, d, x, r, c, low = (int(column[row]) for column in choice.columns())
     values = {name: plain_number(float(figures[name][row])) for name in FIGURES}
-    targets = tuple(
-        TargetValue(name, values[name], limit, float(table[row, k]))
-        for k, (name, limit) in enumerate(space.limits.items())
-    )
-    limiting = margins.limiting(table[row].tolist(), space.limits)
+    targets = tuple(_targets(space, figures, at_worst, row))
+    limiting = margins.limiting([target.margin for target in targets], space.limits)
     family = int(space.capacitors.family[c])
     lag = float(space.low_passes[low])
     on_rail = space.bench.dark_on_rail and space.bench.low == 0.0
@@ -73,6 +92,7 @@ def _candidate(
         missed=tuple(target.name for target in targets if target.margin < 0.0),
         assumed=_assumed(space, catalogs, choice, row),
         linear_model=LINEAR_MODEL if linear else (),
+        outlines=outlines(space, catalogs, (o, d, x, r, c)),
     )
 
 
@@ -107,7 +127,9 @@ def _assumed(space: Space, catalogs: Catalogs, choice: Choice, row: int) -> tupl
 def _needless(space: Space) -> set[str]:
     """Columns that no figure or check of this request uses."""
     request = space.request
-    unused = {"board_area", "lead_weeks", "tolerance", "tempco"}
+    unused = {"board_area", "lead_weeks"}
+    if not request.tolerance.stated:
+        unused |= {"tolerance", "tempco"}
     if not request.ambient.stated:
         unused |= {"temp_min", "temp_max", "bias_doubling", "offset_drift"}
     if request.ambient.hottest == 25.0:
@@ -130,12 +152,14 @@ def _families(space: Space, context: int, resistor: int, capacitor: int) -> Iter
     """By role, the catalog rows of the families of a setting and the columns that its figures use."""
     x, r, c = space.contexts, space.resistors, space.capacitors
     offered = ("price", "from", "to")
-    resistors: list[Used] = [(r.rows[int(r.family[resistor])], (*offered, "parasitic_capacitance"))]
+    spread = ("tolerance", "tempco") if space.request.tolerance.stated else ()
+    feedback = (*offered, "parasitic_capacitance", *spread)
+    resistors: list[Used] = [(r.rows[int(r.family[resistor])], feedback)]
     capacitors: list[Used] = []
     if c.family[capacitor] >= 0:
-        capacitors.append((c.rows[int(c.family[capacitor])], offered))
+        capacitors.append((c.rows[int(c.family[capacitor])], (*offered, *spread)))
     if x.divided[context]:
-        resistors.append((int(x.resistors[context]), offered))
+        resistors.append((int(x.resistors[context]), (*offered, *spread)))
         capacitors.append((int(x.bypass[context]), offered))
     yield "resistor", resistors
     yield "capacitor", capacitors

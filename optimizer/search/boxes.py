@@ -84,8 +84,8 @@ class Span:
 class Run:
     """Choices of one passive, all families together, by rising value (then family).
 
-    `index` leads back to them; `price`, `parasitic` and `surplus` (minus the parasitic) give the least
-    of any range.
+    `index` leads back to them; `price`, `parasitic` and `surplus` (minus the parasitic), `spread` and
+    `spread_most` (minus the spread) give the least of any range.
     """
 
     value: Floats
@@ -94,6 +94,8 @@ class Run:
     price: RangeMin
     parasitic: RangeMin
     surplus: RangeMin
+    spread: RangeMin
+    spread_most: RangeMin
 
 
 def run_of(passives: Passives) -> Run:
@@ -106,6 +108,8 @@ def run_of(passives: Passives) -> Run:
         price=RangeMin.of(passives.price[index]),
         parasitic=RangeMin.of(passives.parasitic[index]),
         surplus=RangeMin.of(-passives.parasitic[index]),
+        spread=RangeMin.of(passives.spread[index]),
+        spread_most=RangeMin.of(-passives.spread[index]),
     )
 
 

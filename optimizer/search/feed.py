@@ -13,7 +13,7 @@ from optimizer.search import hunt as hunting
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.hunt import Hunt, Rules
-from optimizer.search.upper import bound
+from optimizer.search.shifted import bounded
 from optimizer.search.view import Index, totals, view
 
 Floats = NDArray[np.float64]
@@ -66,8 +66,9 @@ def by_snr(index: Index, goals: Goals, pairs: Pairs) -> Pairs:
     floor = np.full(pairs.size, np.inf)
     for begin in range(0, pairs.size, _BLOCK):
         part = slice(begin, begin + _BLOCK)
-        v = view(index, whole(index.space, pairs.opamp[part], pairs.diode[part]))
-        said = bound(v, goals, np.zeros(v.gain.size))
+        boxes = whole(index.space, pairs.opamp[part], pairs.diode[part])
+        zero = np.zeros(len(boxes))
+        said = bounded(index, boxes, view(index, boxes), goals, (zero, zero))
         floor[part] = np.where(said.possible, -said.snr, np.inf)
     order = np.argsort(floor, kind="stable")[: int((floor < np.inf).sum())]
     return Pairs(pairs.opamp[order], pairs.diode[order], floor[order])

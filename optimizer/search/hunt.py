@@ -19,10 +19,12 @@ from optimizer.figures import rounded
 from optimizer.search import keys
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes, Span, settings_of, single, whole
+from optimizer.search.corners import blocks, worsened
 from optimizer.search.incumbents import Incumbents, improve
-from optimizer.search.plain import judge
+from optimizer.search.plain import Judged, judge
+from optimizer.search.shifted import bounded
 from optimizer.search.split import filled, halves, narrowed
-from optimizer.search.upper import Bound, bound
+from optimizer.search.upper import Bound
 from optimizer.search.view import Index, view
 
 Floats = NDArray[np.float64]
@@ -146,7 +148,7 @@ def _admitted(hunt: Hunt, boxes: Boxes, inherited: Floats) -> Pool:
     """Bound `boxes`, evaluate the single ones that are left, and return the others."""
     v = view(hunt.index, boxes)
     level, inner = _levels(hunt, boxes, (rounded(v.cost), rounded(v.supply_current)), inherited)
-    limits = bound(v, hunt.goals, level, inner)
+    limits = bounded(hunt.index, boxes, v, hunt.goals, (level, inner))
     boxes = narrowed(hunt.index, boxes, limits.left, v)
     keep = limits.possible & filled(boxes)
     key = _key(hunt, boxes.take(keep), limits, keep)
@@ -168,7 +170,7 @@ def _probed(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
     v = view(hunt.index, boxes)
     for _ in range(_PROBES):
         middle = 0.5 * (low + high)
-        possible = bound(v, hunt.goals, middle).possible
+        possible = bounded(hunt.index, boxes, v, hunt.goals, (middle, middle)).possible
         low, high = np.where(possible, middle, low), np.where(possible, high, middle)
     key[:, 0] = np.maximum(key[:, 0], -high)
     key[:, 2] = np.maximum(key[:, 2], -high)
@@ -265,20 +267,23 @@ def _priority(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
 
 def _alive(hunt: Hunt, pool: Pool) -> Bools:
     """Where a box can still come before its pair's incumbent and reach the bar."""
+    return _comes_before(hunt, (pool.boxes.column(Boxes.OPAMP), pool.boxes.column(Boxes.DIODE)), pool.key)
+
+
+def _comes_before(hunt: Hunt, pair: tuple[Ints, Ints], key: Floats) -> Bools:
+    """Where `key` comes before the incumbent of its `pair` (op-amp, diode) and reaches the bar."""
     incumbents, space = hunt.incumbents, hunt.index.space
-    slots = incumbents.slot_of[_pairs(hunt, pool.boxes)]
-    alive = np.ones(slots.size, dtype=bool)
+    opamp, diode = pair
+    slots = incumbents.slot_of[opamp * space.diodes.price.size + diode]
+    before = np.ones(slots.size, dtype=bool)
     has = slots >= 0
     if has.any():
-        alive[has] = keys.less(pool.key[has], incumbents.key[slots[has]])
+        before[has] = keys.less(key[has], incumbents.key[slots[has]])
     if incumbents.bar is not None:
-        names = (
-            space.order_diodes[pool.boxes.column(Boxes.DIODE)],
-            space.order_opamps[pool.boxes.column(Boxes.OPAMP)],
-        )
-        between = np.column_stack([pool.key[:, :3], *names])
-        alive &= ~keys.less(incumbents.bar[None, :], between)
-    return alive
+        names = (space.order_diodes[diode], space.order_opamps[opamp])
+        between = np.column_stack([key[:, :3], *names])
+        before &= ~keys.less(incumbents.bar[None, :], between)
+    return before
 
 
 def _evaluate(hunt: Hunt, pool: Pool) -> None:
@@ -287,6 +292,19 @@ def _evaluate(hunt: Hunt, pool: Pool) -> None:
     choice = settings_of(pool.boxes, index.resistors, index.capacitors)
     hunt.evaluated += pool.priority.size
     judged = judge(index.space, choice, hunt.rules.by)
-    good = judged.admitted & (judged.vector[:, 0] >= hunt.rules.least)
-    if good.any():
-        improve(index.space, hunt.incumbents, judged.take(good), show=hunt.rules.show)
+    divided = index.space.contexts.divided[choice.context]
+    for kind in (False, True):
+        part = judged.take(divided == kind)
+        for block in blocks(index.space, divided=kind):
+            part = part.take(_useful(hunt, part))
+            part = worsened(index.space, part, block, hunt.rules.by)
+        good = part.admitted & (part.vector[:, 0] >= hunt.rules.least)
+        if good.any():
+            improve(index.space, hunt.incumbents, part.take(good), show=hunt.rules.show)
+
+
+def _useful(hunt: Hunt, judged: Judged) -> Bools:
+    """Where a setting that can only get worse may still be admitted and come before what is known."""
+    useful = judged.admitted & (judged.vector[:, 0] >= hunt.rules.least)
+    key = keys.within_pair(hunt.index.space, judged.choice, judged.columns)
+    return useful & _comes_before(hunt, (judged.choice.opamp, judged.choice.diode), key)

@@ -14,7 +14,7 @@ from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.reach import furthest
 from optimizer.search.roles import PASSES, Verdicts
-from optimizer.search.upper import bound
+from optimizer.search.shifted import bounded
 from optimizer.search.view import Index, view
 
 Floats = NDArray[np.float64]
@@ -86,8 +86,9 @@ def _count_block(
     if shown.last is None:
         counts["missed_target"] += int(eligible.sum())
     else:
-        v = view(index, whole(space, opamp[eligible], diode[eligible]))
-        may = bound(v, goals, np.zeros(int(eligible.sum()))).possible
+        boxes = whole(space, opamp[eligible], diode[eligible])
+        zero = np.zeros(len(boxes))
+        may = bounded(index, boxes, view(index, boxes), goals, (zero, zero)).possible
         counts["missed_target"] += int((~may).sum())
         counts["cannot_beat"] += int(may.sum())
     for key in [key for key, count in counts.items() if not count]:

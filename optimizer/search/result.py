@@ -20,17 +20,27 @@ class Reference:
 
 @dataclass(frozen=True, slots=True)
 class TargetValue:
-    """One graded target of one candidate; `value` is None where the figure does not exist."""
+    """One graded target of one candidate; `value` is None where the figure does not exist.
+
+    Where corners are graded, `margin` is that of `worst`, the value at the worst corner, and `corner`
+    says what deviates there and by what fraction (nothing where nominal is the worst).
+    """
 
     name: str
     value: float | None
     limit: float
     margin: float
+    worst: float | None = None
+    corner: Mapping[str, float] | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class Candidate:
-    """One choice along every axis, with its figures and margins."""
+    """One choice along every axis, with its figures and margins.
+
+    `outlines` holds, by the record's keys, packages and pinouts of the parts, makers of the families, and
+    the families that the divider's parts come from; None where the catalog leaves a blank, or there is none.
+    """
 
     photodiode: str
     photodiode_maker: str
@@ -50,6 +60,7 @@ class Candidate:
     missed: tuple[str, ...]
     assumed: tuple[str, ...]
     linear_model: tuple[str, ...] = ()
+    outlines: Mapping[str, str | None] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True)

@@ -9,9 +9,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.figures import output_limits
+from optimizer.physics import reference
 from optimizer.search.boxes import Boxes, RangeMin, Run, Span, run_of
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Space, total_cost
+from optimizer.search.values import corners
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -90,6 +92,8 @@ class View:
     shunt_high: Floats
     cin_low: Floats
     cin_high: Floats
+    junction_low: Floats
+    junction_high: Floats
     reference_node: Floats
     rises: Bools
     falls: Bools
@@ -120,6 +124,7 @@ def lay_out(space: Space) -> Index:
     x = space.contexts
     bench = space.bench
     on_rail = (x.sign > 0) & ~x.divided & (bench.dark_on_rail and bench.low == 0.0)
+    vref, source, current = _at_corner(space)
     flags = np.array([x.biased, x.divided, x.buffered, x.sign > 0, on_rail])
     counts = np.zeros((5, x.size + 1), dtype=np.int64)
     np.cumsum(flags, axis=1, out=counts[:, 1:])
@@ -129,17 +134,33 @@ def lay_out(space: Space) -> Index:
         capacitors=run_of(space.capacitors),
         amps=_amps(space),
         diode_passes=_passes(space.diode_verdicts.code),
-        rising=RangeMin.of(np.where(x.sign > 0, x.vref, np.inf)),
-        rising_most=RangeMin.of(np.where(x.sign > 0, -x.vref, np.inf)),
-        falling=RangeMin.of(np.where(x.sign < 0, -x.vref, np.inf)),
-        falling_least=RangeMin.of(np.where(x.sign < 0, x.vref, np.inf)),
+        rising=RangeMin.of(np.where(x.sign > 0, vref, np.inf)),
+        rising_most=RangeMin.of(np.where(x.sign > 0, -vref, np.inf)),
+        falling=RangeMin.of(np.where(x.sign < 0, -vref, np.inf)),
+        falling_least=RangeMin.of(np.where(x.sign < 0, vref, np.inf)),
         bias_least=RangeMin.of(x.bias),
         bias_most=RangeMin.of(-x.bias),
         cost=RangeMin.of(x.cost),
-        current=RangeMin.of(x.current),
-        source=RangeMin.of(x.source),
+        current=RangeMin.of(current),
+        source=RangeMin.of(source),
         counts=counts,
     )
+
+
+def _at_corner(space: Space) -> tuple[Floats, Floats, Floats]:
+    """Vref [V], source resistance [ohm] and current [A] of dividers where their spreads count.
+
+    Vref and source at the corner that leaves light the least room, the current at its largest.
+    """
+    x, bench = space.contexts, space.bench
+    if not corners(space.request):
+        return x.vref, x.source, x.current
+    step = np.where(x.divided, x.spread, 0.0)
+    top, bottom = x.top * (1.0 - x.sign * step), x.bottom * (1.0 + x.sign * step)
+    vref = np.where(x.divided, reference.divided(bench.high, bench.low, top, bottom), x.vref)
+    source = np.where(x.divided, reference.parallel(top, bottom), 0.0)
+    most = reference.current(bench.high, bench.low, x.top * (1.0 - step), x.bottom * (1.0 - step))
+    return vref, source, np.where(x.divided, most, 0.0)
 
 
 def _passes(code: NDArray[np.int8]) -> NDArray[np.int32]:
@@ -228,6 +249,8 @@ def _of_contexts(index: Index, boxes: Boxes, x: Span, counts: Ints) -> dict[str,
     # a diode of unknown shunt or dark current fails in the wirings that need it: elsewhere it is 0
     shunt, dark = np.nan_to_num(diodes.shunt[d]), np.nan_to_num(diodes.dark[d])
     passes = amps.passes[o, x1] > amps.passes[o, x0]
+    junction_low = diodes.capacitance[d, index.bias_most.position(x)]
+    junction_high = diodes.capacitance[d, index.bias_least.position(x)]
     return {
         "possible": passes & (index.diode_passes[d, x1] > index.diode_passes[d, x0]),
         "responsivity": diodes.responsivity[d],
@@ -235,8 +258,10 @@ def _of_contexts(index: Index, boxes: Boxes, x: Span, counts: Ints) -> dict[str,
         "dark_low": np.where(unbiased, 0.0, dark),
         "shunt_low": np.where(biased, 0.0, shunt),
         "shunt_high": np.where(unbiased, shunt, 0.0),
-        "cin_low": diodes.capacitance[d, index.bias_most.position(x)] + amps.node[o],
-        "cin_high": diodes.capacitance[d, index.bias_least.position(x)] + amps.node[o],
+        "cin_low": junction_low + amps.node[o],
+        "cin_high": junction_high + amps.node[o],
+        "junction_low": junction_low,
+        "junction_high": junction_high,
         "rise_from": index.rising.least(x),
         "rise_to": -index.rising_most.least(x),
         "fall_from": -index.falling.least(x),

@@ -86,6 +86,25 @@ by = "margin"
 show = 3
 comfort = "40 %"
 
+[tolerance]
+method = "corners"
+yield = "99 %"
+distribution = "normal"
+draws = 5000
+seed = 0
+gbw = "30 %"
+voltage_noise = 0.2
+input_capacitance = "15 %"
+diode_capacitance = "10 %"
+responsivity = "8 %"
+stray = "50 %"
+dark_current = "90 %"
+bias_current = "80 %"
+open_loop_gain = "1000 ppm"
+
+[resilience]
+opamp_sources = 2
+
 [assume.opamps]
 output_low = "50 mV"
 second_pole = "none"

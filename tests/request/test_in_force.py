@@ -10,6 +10,7 @@ import pytest
 
 from optimizer.request.in_force import in_force
 from optimizer.request.schema import KEYS
+from optimizer.request.types import SPREADS
 from tests.request.made import FULL, MINIMAL, Reads, as_toml
 
 
@@ -20,6 +21,7 @@ from tests.request.made import FULL, MINIMAL, Reads, as_toml
         MINIMAL,
         MINIMAL.replace("30 nW", "0.4 uW/cm2").replace("3 uW", "1.1 mW/cm2"),
         MINIMAL + '[converter]\nhigh = "supply"\n[light.active_area]\nto = "3 mm2"\n',
+        MINIMAL + "[tolerance]\n",
         MINIMAL + "[assume.photodiodes]\nrise_time = \"none\"\nshunt_resistance = 'none'\ndark_current = 0\n",
     ],
 )
@@ -33,7 +35,7 @@ def test_values_in_force_read_back_to_the_same_request(read: Reads, text: str) -
 def test_values_in_force_fill_in_every_default(read: Reads) -> None:
     tables = in_force(read(MINIMAL))
     optional = {key for key, entry in KEYS.items() if entry.default is None and not entry.example}
-    unstated = optional | {key for key in KEYS if key[0] in ("ambient", "converter")}
+    unstated = optional | {key for key in KEYS if key[0] in ("ambient", "converter", "tolerance")}
     for key in KEYS.keys() - unstated:
         table: Any = tables
         for name in key:
@@ -41,6 +43,21 @@ def test_values_in_force_fill_in_every_default(read: Reads) -> None:
             table = table[name]
     assert "converter" not in tables
     assert "ambient" not in tables
+    assert "tolerance" not in tables
+    assert tables["resilience"] == {"opamp_sources": 1}
+
+
+def test_values_in_force_fill_in_a_table_of_tolerances_that_is_stated(read: Reads) -> None:
+    tables = in_force(read(MINIMAL + "[tolerance]\n"))
+    assert tables["tolerance"] == {
+        "method": "nominal",
+        "distribution": "uniform",
+        "draws": 10_000,
+        "seed": 1,
+        **dict.fromkeys(SPREADS, 0.0),
+    }
+    stated = in_force(read(MINIMAL + '[tolerance]\nyield = "99 %"\ngbw = "30 %"\n'))["tolerance"]
+    assert (stated["yield"], stated["gbw"]) == (0.99, 0.3)
 
 
 def test_values_in_force_are_si_numbers_but_irradiance_is_text(read: Reads) -> None:

@@ -8,17 +8,38 @@ from pathlib import Path
 import pytest
 
 from optimizer.request.types import (
+    SPREADS,
     Ambient,
     Converter,
     Divider,
     Light,
     Ranking,
     Request,
+    Resilience,
     Space,
     Supply,
     Targets,
+    Tolerance,
 )
 from tests.request.made import FULL, MINIMAL, Reads
+
+FULL_TOLERANCE = Tolerance(
+    method="corners",
+    yield_=0.99,
+    distribution="normal",
+    draws=5000,
+    seed=0,
+    gbw=0.3,
+    voltage_noise=0.2,
+    input_capacitance=0.15,
+    diode_capacitance=0.1,
+    responsivity=0.08,
+    stray=0.5,
+    dark_current=0.9,
+    bias_current=0.8,
+    open_loop_gain=1e-3,
+    stated=True,
+)
 
 
 def test_every_key_is_read_in_si(read: Reads, tmp_path: Path) -> None:
@@ -49,6 +70,8 @@ def test_every_key_is_read_in_si(read: Reads, tmp_path: Path) -> None:
         ),
         converter=Converter(12, 0.5, 4.5),
         ranking=Ranking("margin", 3, 0.4),
+        tolerance=FULL_TOLERANCE,
+        resilience=Resilience(2),
         catalogs={
             "opamps": ("a.csv", "b.csv"),
             "photodiodes": ("c.csv",),
@@ -91,10 +114,26 @@ def test_keys_left_out_take_the_values_that_the_contract_prints(read: Reads, tmp
     )
     assert request.converter is None
     assert request.ranking == Ranking("cost", 10, 0.5)
+    assert request.tolerance == Tolerance()
+    assert request.tolerance.spreads == dict.fromkeys(SPREADS, 0.0)
+    assert not request.tolerance.stated
+    assert request.resilience == Resilience(opamp_sources=1)
     assert request.catalogs == {
         role: (f"../catalogs/{role}.csv",) for role in ("opamps", "photodiodes", "resistors", "capacitors")
     }
     assert request.assume == {}
+
+
+def test_a_table_of_tolerances_is_stated_even_where_it_is_empty(read: Reads) -> None:
+    assert read(MINIMAL + "[tolerance]").tolerance == Tolerance(
+        method="nominal", yield_=None, distribution="uniform", draws=10_000, seed=1, stated=True
+    )
+
+
+def test_spreads_are_listed_in_the_order_in_which_they_are_documented(read: Reads) -> None:
+    spreads = read(FULL).tolerance.spreads
+    assert tuple(spreads) == SPREADS
+    assert list(spreads.values()) == [0.3, 0.2, 0.15, 0.1, 0.08, 0.5, 0.9, 0.8, 1e-3]
 
 
 def test_sub_keys_left_out_take_their_defaults(read: Reads) -> None:
