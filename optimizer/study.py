@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import json
-from collections.abc import Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -17,6 +17,8 @@ from optimizer.request.types import Request, Space
 from optimizer.request.values import CATALOG_CURRENCY
 from optimizer.toml.place import Place
 from optimizer.vocabulary import NAMES
+
+Reader = Callable[[Mapping[str, tuple[str, ...]], ReadOptions], Catalogs]
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,8 +35,10 @@ class Study:
         return (self.request_source, *self.catalogs.sources)
 
 
-def load(source: str | Path | Request) -> Study:
+def load(source: str | Path | Request, *, read: Reader = read_catalogs) -> Study:
     """Read the request at a path (or take one that is read already) and the catalogs that it names.
+
+    `read` reads the catalogs; one that remembers them saves reading those of several requests again.
 
     Raises:
         InputError: with every problem of the request and of its catalogs at once, names in the
@@ -44,7 +48,7 @@ def load(source: str | Path | Request) -> Study:
     problems = list(draft.problems)
     catalogs = None
     try:
-        catalogs = _read_catalogs(draft)
+        catalogs = _read_catalogs(draft, read)
     except InputError as error:
         problems += error.problems
     if catalogs is not None:
@@ -66,7 +70,7 @@ def _draft_of(request: Request) -> Draft:
     return Draft(request, (), Place(str(request.path)), hashlib.sha256(text.encode()).hexdigest(), True)
 
 
-def _read_catalogs(draft: Draft) -> Catalogs | None:
+def _read_catalogs(draft: Draft, read: Reader) -> Catalogs | None:
     """Return the catalogs; None where the request does not say which they are."""
     request = draft.request
     if not draft.catalogs_known:
@@ -77,13 +81,13 @@ def _read_catalogs(draft: Draft) -> Catalogs | None:
         currency=None if request.currency == CATALOG_CURRENCY else request.currency,
         folder=request.path.parent,
     )
-    return read_catalogs(request.catalogs, options)
+    return read(request.catalogs, options)
 
 
 def _unknown_names(space: Space, catalogs: Catalogs, place: Place) -> Iterator[Problem]:
     """Yield every part, maker and package that the request names and no catalog holds."""
     active = (catalogs.opamps, catalogs.photodiodes)
-    parts = set(_part_names(catalogs))
+    parts = set(part_names(catalogs))
     yield from _unknown("require", space.require, parts, place)
     yield from _unknown("exclude", space.exclude, parts, place)
     yield from _unknown("makers", space.makers, set(_texts("maker", active)), place)
@@ -99,7 +103,7 @@ def _unknown(key: str, names: Iterable[str], known: set[str], place: Place) -> I
             yield place.problem(("space", key, item), name, rule, remedy)
 
 
-def _part_names(catalogs: Catalogs) -> Iterator[str]:
+def part_names(catalogs: Catalogs) -> Iterator[str]:
     """Yield every part as its name alone and as maker/part; of resistors and capacitors, the family."""
     for parts in (catalogs.opamps, catalogs.photodiodes, catalogs.resistors, catalogs.capacitors):
         names = parts.text[NAMES[parts.role]].tolist()

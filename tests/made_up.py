@@ -11,8 +11,8 @@ import numpy as np
 
 from optimizer.catalog.parts import Catalogs, LeftOut, Parts, Source
 from optimizer.record import Record, build
-from optimizer.request.types import Light, Ranking, Request, Supply, Targets
-from optimizer.search.result import Candidate, Outcome, Reference, TargetValue
+from optimizer.request.types import Light, Ranking, Request, Supply, Targets, Tolerance
+from optimizer.search.result import Candidate, Outcome, Reference, Simulated, TargetValue
 from optimizer.study import Study
 
 GROUND = Reference("ground", 0.0, None, None, buffered=False, extra_package=False)
@@ -97,6 +97,42 @@ MISS = replace(
     margin=-1.0,
     missed=("snr", "dynamic_range", "cost"),
 )
+
+
+CORNERS = replace(
+    REQUEST,
+    tolerance=Tolerance(
+        method="corners", yield_=0.99, gbw=0.3, voltage_noise=0.2, input_capacitance=0.2, stated=True
+    ),
+)
+"""The request, graded at corners, with a yield asked for."""
+
+DRAWN = Simulated(
+    draws=10_000,
+    passed=9_923,
+    yield_=0.9923,
+    low=0.990386,
+    high=0.993835,
+    failures={"snr": 61, "full_scale": 23, "dark_output": 1},
+    worst={"bandwidth": 20100.0, "snr": 45.9, "full_scale": 2.9e-6, "cost": 3.2134},
+    best={"bandwidth": 31000.0, "snr": 50.0, "full_scale": 3.5e-6, "cost": 3.2134},
+)
+
+CORNERED = replace(
+    CANDIDATE,
+    targets=(
+        TargetValue(
+            "bandwidth", 24123.4567, 20e3, 0.0045, 20090.0, {"gbw": -0.3, "feedback_resistance": 0.0115}
+        ),
+        TargetValue("snr", 48.1234567, 46.0, 0.031, 46.265, {"feedback_resistance": -0.0115, "gbw": 0.3}),
+        TargetValue("full_scale", 3.3e-6, 3e-6, 0.05, 3.15e-6, {"divider_top": -0.0021}),
+        TargetValue("cost", 3.2134, 4.5, 0.4, 3.2134, {}),
+    ),
+    limiting="bandwidth",
+    margin=0.0045,
+    simulated=DRAWN,
+)
+"""A candidate graded at corners; in some draw snr and full scale are worse than at their worst corner."""
 
 
 def outcome(

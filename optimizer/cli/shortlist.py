@@ -3,9 +3,7 @@
 from __future__ import annotations
 
 import argparse
-import os
 import sys
-from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -14,6 +12,7 @@ from optimizer.cli.messages import LONGEST_WORDS, StudyError, where_from
 from optimizer.cli.options.shared import COMMAND_LINE, STANDARD_OUTPUT
 from optimizer.cli.options.shortlist import ShortlistOptions, shortlist_options
 from optimizer.cli.output import write, write_lines
+from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.progress import watch
 from optimizer.errors import InputError, OutputError, Problem, clean, shortened
 
@@ -62,9 +61,8 @@ def _load(options: ShortlistOptions, problems: list[Problem]) -> Study:
         problems += error.problems
     if study is not None:
         problems += _choice_problems(study, options)
-        files = [file for files in study.request.catalogs.values() for file in files]
-        inputs += [study.request.path.parent / file for file in files]
-    problems += _output_problems(options, inputs)
+        inputs += input_files(study.request)
+    problems += output_problems([("--save", options.save), ("--csv", options.csv)], inputs)
     if problems or study is None:
         raise StudyError(problems, options.request)
     return study
@@ -83,29 +81,6 @@ def _choice_problems(study: Study, options: ShortlistOptions) -> list[Problem]:
     rule = f"expected one of the {show} rows to be shown"
     remedy = f"or --show {options.choose}"
     return [Problem(COMMAND_LINE, None, "--choose", str(options.choose), rule, remedy)]
-
-
-def _output_problems(options: ShortlistOptions, inputs: Sequence[Path]) -> list[Problem]:
-    """Why a file that is asked for could not be written, found before work is spent on it."""
-    from optimizer.record.files import check_writable
-
-    taken = {os.path.realpath(path) for path in inputs}
-    problems = []
-    if options.save == options.csv == STANDARD_OUTPUT:
-        rule, remedy = "standard output is taken by --save already", "give one of them a file name"
-        problems.append(Problem(COMMAND_LINE, None, "--csv", STANDARD_OUTPUT, rule, remedy))
-    for name, path in (("--save", options.save), ("--csv", options.csv)):
-        if path is None or path == STANDARD_OUTPUT:
-            continue
-        if os.path.realpath(path) in taken:
-            rule = "that file is input of this run, or already written by another option"
-            problems.append(Problem(COMMAND_LINE, None, name, path, rule, "give another name"))
-        taken.add(os.path.realpath(path))
-        try:
-            check_writable(path)
-        except OutputError as error:
-            problems.append(Problem(COMMAND_LINE, None, name, None, str(error)))
-    return problems
 
 
 def _answer(study: Study, outcome: Outcome, options: ShortlistOptions) -> int:

@@ -135,13 +135,24 @@ def follower_phase_margin(amp: Amplifier) -> Floats:
 
 def peaking(loop: Loop) -> Floats:
     """max |H|/H0 over frequency [dB], >= 0; the loop alone, without diode pole and low-pass."""
+    x = _peak(loop)
+    least = (1.0 - loop.e2 * x) ** 2 + x * (loop.e1 - loop.e3 * x) ** 2
+    return np.asarray(np.maximum(-10.0 * np.log10(np.minimum(least, 1.0)), 0.0) + 0.0)
+
+
+def peak_frequency(loop: Loop) -> Floats:
+    """Frequency [Hz] where |H| of the loop alone has its local maximum; 0 where |H| only falls."""
+    return np.asarray(np.sqrt(_peak(loop)) / (2.0 * np.pi))
+
+
+def _peak(loop: Loop) -> Floats:
+    """w^2 of the only local maximum of |H|, 0 where there is none."""
     c1, c2, c3 = power_coefficients(loop)
-    root = np.sqrt(np.maximum(c2 * c2 - 3.0 * c1 * c3, 0.0))
+    discriminant = c2 * c2 - 3.0 * c1 * c3
+    root = np.sqrt(np.maximum(discriminant, 0.0))
     with np.errstate(divide="ignore", invalid="ignore"):
         # the larger root of the derivative, from whichever side does not cancel
         falling = -c1 / (c2 + root)
         dip = np.where(c2 < 0.0, (root - c2) / (3.0 * c3), 0.0)
     x = np.where(c1 < 0.0, np.where(c2 < 0.0, dip, falling), dip)
-    x = np.where(np.isfinite(x) & (x > 0.0), x, 0.0)
-    least = (1.0 - loop.e2 * x) ** 2 + x * (loop.e1 - loop.e3 * x) ** 2
-    return np.asarray(np.maximum(-10.0 * np.log10(np.minimum(least, 1.0)), 0.0) + 0.0)
+    return np.asarray(np.where(np.isfinite(x) & (x > 0.0) & (discriminant >= 0.0), x, 0.0))

@@ -14,7 +14,7 @@ from optimizer.record.model import FORMAT, Record
 from optimizer.vocabulary import VOCABULARY
 
 if TYPE_CHECKING:
-    from optimizer.search.result import Candidate, Outcome
+    from optimizer.search.result import Candidate, Outcome, Simulated, TargetValue
     from optimizer.study import Study
 
 
@@ -26,7 +26,7 @@ def build(study: Study, outcome: Outcome, chosen: int | None = 1) -> Record:
     """
     from optimizer.request.in_force import in_force
 
-    shown = len(outcome.candidates)
+    shown, wanted = len(outcome.candidates), study.request.tolerance.yield_
     if shown and chosen is not None and not 1 <= chosen <= shown:
         raise InputError([choice_problem(chosen, shown)])
     data = {
@@ -35,12 +35,15 @@ def build(study: Study, outcome: Outcome, chosen: int | None = 1) -> Record:
         "created": datetime.now(UTC).isoformat(timespec="seconds"),
         "version": installed_version(),
         "request": in_force(study.request),
+        "request_file": study.request.path.as_posix(),
         "chosen": chosen if shown else None,
         "currency": _currency(study),
         "inputs": [{"file": s.file, "sha256": s.sha256, "rows": s.rows} for s in study.inputs],
         "left_out": _left_out(study),
         "search": _search(outcome),
-        "candidates": [_candidate(c, rank) for rank, c in enumerate(outcome.candidates, 1)],
+        "candidates": [
+            _candidate(c, rank) | _yield(c.simulated, wanted) for rank, c in enumerate(outcome.candidates, 1)
+        ],
         "near_misses": [
             _candidate(c, rank) | {"missed": list(c.missed)}
             for rank, c in enumerate(outcome.near_misses, shown + 1)
@@ -101,6 +104,7 @@ def _search(outcome: Outcome) -> dict[str, Any]:
         "dropped": dict(sorted(outcome.dropped.items())),
         "impossible": outcome.impossible,
         "blocking": outcome.blocking,
+        "unusable": [asdict(family) for family in outcome.unusable],
     }
 
 
@@ -119,9 +123,37 @@ def _candidate(candidate: Candidate, rank: int) -> dict[str, Any]:
         "capacitor_family": candidate.capacitor_family,
         "low_pass": candidate.low_pass,
         "figures": {name: candidate.figures.get(name) for name in VOCABULARY},
-        "targets": [asdict(target) for target in candidate.targets],
+        "targets": [_target(target) for target in candidate.targets],
         "limiting": candidate.limiting,
         "margin": candidate.margin,
         "assumed": sorted(candidate.assumed),
         "linear_model": list(candidate.linear_model),
+        **candidate.outlines,
+        **({"alternates": [asdict(other) for other in candidate.alternates]} if candidate.alternates else {}),
     }
+
+
+def _target(target: TargetValue) -> dict[str, Any]:
+    """One target; its worst corner only where corners are graded."""
+    graded = asdict(target)
+    if target.corner is None:
+        del graded["worst"], graded["corner"]
+    return graded
+
+
+def _yield(simulated: Simulated | None, wanted: float | None) -> dict[str, Any]:
+    """The key `yield` of a candidate; nothing where nothing was drawn at random."""
+    if simulated is None:
+        return {}
+    found = {
+        "draws": simulated.draws,
+        "passed": simulated.passed,
+        "yield": simulated.yield_,
+        "low": simulated.low,
+        "high": simulated.high,
+        "failures": dict(sorted(simulated.failures.items())),
+        "worst": simulated.worst,
+        "unknown": simulated.unknown,
+        "meets": None if wanted is None else simulated.reaches(wanted),
+    }
+    return {"yield": found}

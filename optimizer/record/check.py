@@ -52,6 +52,28 @@ CANDIDATE: Shape = {
     "margin": NUMBER,
     "assumed": (list,),
 }
+TEXT = (str, type(None))
+# Keys that a candidate need not have: outlines of its parts, and what it changes where it is a substitute.
+OUTLINES: Shape = dict.fromkeys(
+    (
+        "photodiode_package",
+        "photodiode_pinout",
+        "opamp_package",
+        "opamp_pinout",
+        "resistor_maker",
+        "resistor_package",
+        "capacitor_maker",
+        "capacitor_package",
+        "divider_family",
+        "divider_maker",
+        "divider_package",
+        "bypass_family",
+        "bypass_maker",
+        "bypass_package",
+    ),
+    TEXT,
+) | {"change": (str,), "changed": (list,)}
+REPLACES: Shape = {"candidate": (dict,), "gone": (list,), "out": (list,), "keep": (list,)}
 REFERENCE: Shape = {
     "kind": (str,),
     "voltage": NUMBER,
@@ -61,6 +83,19 @@ REFERENCE: Shape = {
     "extra_package": (bool,),
 }
 TARGET: Shape = {"name": (str,), "value": (*NUMBER, type(None)), "limit": NUMBER, "margin": NUMBER}
+# What only some records have: with corners graded, with parts drawn at random.
+CORNER: Shape = {"worst": (*NUMBER, type(None)), "corner": (dict,)}
+YIELD: Shape = {
+    "draws": (int,),
+    "passed": (int,),
+    "yield": (*NUMBER, type(None)),
+    "low": (*NUMBER, type(None)),
+    "high": (*NUMBER, type(None)),
+    "failures": (dict,),
+    "worst": (dict,),
+    "unknown": (list,),
+    "meets": (bool, type(None)),
+}
 WORDS = {str: "text", int: "a whole number", float: "a number", dict: "a table", list: "a list"}
 WORDS |= {bool: "true or false", type(None): "null"}
 
@@ -86,13 +121,27 @@ def _inner(file: str, data: Mapping[str, Any]) -> Iterator[Problem]:
     yield from request
     for table, shape in () if request else (("light", LIGHT), ("space", SPACE), ("ranking", RANKING)):
         yield from _shape(file, f"request.{table}", data["request"][table], shape)
+    if "replaces" in data:
+        yield from _replaces(file, data["replaces"])
     for group in ("candidates", "near_misses"):
         for index, entry in enumerate(data[group]):
             yield from _candidate(file, f"{group}[{index}]", entry)
 
 
+def _replaces(file: str, table: Any) -> Iterator[Problem]:
+    """What is wrong with what a record says of the candidate that its own replace."""
+    own = _shape(file, "replaces", table, REPLACES)
+    yield from own
+    for index, name in enumerate(() if own else table["out"]):
+        if not isinstance(name, str):
+            yield Problem(file, None, f"replaces.out[{index}]", str(name)[:60], "expected text")
+
+
 def _candidate(file: str, where: str, entry: Any) -> Iterator[Problem]:
     own = _shape(file, where, entry, CANDIDATE)
+    if isinstance(entry, dict):
+        stated = {key: kinds for key, kinds in OUTLINES.items() if key in entry}
+        own += _shape(file, where, entry, stated)
     yield from own
     if own:
         return
@@ -100,7 +149,26 @@ def _candidate(file: str, where: str, entry: Any) -> Iterator[Problem]:
     figures = dict.fromkeys(VOCABULARY, (*NUMBER, type(None)))
     yield from _shape(file, f"{where}.figures", entry["figures"], figures)
     for index, target in enumerate(entry["targets"]):
-        yield from _shape(file, f"{where}.targets[{index}]", target, TARGET)
+        place = f"{where}.targets[{index}]"
+        cornered = isinstance(target, dict) and not CORNER.keys().isdisjoint(target)
+        yield from _shape(file, place, target, {**TARGET, **CORNER} if cornered else TARGET)
+        if cornered and isinstance(target.get("corner"), dict):
+            yield from _numbers(file, f"{place}.corner", target["corner"], NUMBER)
+    if "yield" in entry:
+        yield from _drawn(file, f"{where}.yield", entry["yield"])
+
+
+def _drawn(file: str, where: str, drawn: Any) -> Iterator[Problem]:
+    own = _shape(file, where, drawn, YIELD)
+    yield from own
+    if not own:
+        yield from _numbers(file, f"{where}.failures", drawn["failures"], (int,))
+        yield from _numbers(file, f"{where}.worst", drawn["worst"], (*NUMBER, type(None)))
+
+
+def _numbers(file: str, where: str, table: Mapping[str, Any], kinds: tuple[type, ...]) -> list[Problem]:
+    """Everything in `table` that is none of `kinds`, whatever its keys."""
+    return _shape(file, where, table, dict.fromkeys(table, kinds))
 
 
 def _shape(file: str, where: str, table: Any, shape: Shape) -> list[Problem]:

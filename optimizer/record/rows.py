@@ -32,12 +32,28 @@ CHOICE: Mapping[str, str] = {
 }
 VERDICT: Mapping[str, str] = {"limiting": "object", "margin": "float64"}
 NOTES: Mapping[str, str] = dict.fromkeys(("missed", "assumed", "linear_model"), "object")
+# Behind the margins, where the request states [tolerance]; the record's keys under `yield`.
+YIELD: Mapping[str, str] = {
+    "yield": "float64",
+    "yield_low": "float64",
+    "yield_high": "float64",
+    "yield_draws": "float64",
+    "yield_meets": "object",
+    "yield_unknown": "object",
+}
 
 
 def columns(request: Mapping[str, Any]) -> tuple[str, ...]:
-    """The columns of a row, with one `<target>_margin` for each target that `request` grades."""
-    margins = (f"{name}_margin" for name in graded(request))
-    return (*CHOICE, *VOCABULARY, *VERDICT, *margins, *NOTES)
+    """The columns of a row, with one `<target>_margin` for each target that `request` grades.
+
+    Where it grades corners, `<target>_worst` and `<target>_corner` too, and where it states [tolerance]
+    the yield.
+    """
+    names, tolerance = graded(request), request.get("tolerance", {})
+    margins = [f"{name}_margin" for name in names]
+    if tolerance.get("method") == "corners":
+        margins += [f"{name}_{part}" for name in names for part in ("worst", "corner")]
+    return (*CHOICE, *VOCABULARY, *VERDICT, *margins, *(YIELD if tolerance else ()), *NOTES)
 
 
 def graded(request: Mapping[str, Any]) -> tuple[str, ...]:
@@ -56,7 +72,27 @@ def flat(candidate: Mapping[str, Any]) -> dict[str, Any]:
     row |= {name: candidate["figures"].get(name) for name in VOCABULARY}
     row |= {f"{target['name']}_margin": target["margin"] for target in candidate["targets"]}
     row |= {name: candidate[name] for name in VERDICT}
+    row |= _corners(candidate) | _yield(candidate)
     return row | {name: "; ".join(candidate.get(name, ())) for name in NOTES}
+
+
+def _corners(candidate: Mapping[str, Any]) -> dict[str, Any]:
+    """The worst value of each target and its corner, as 'gbw=-0.3; voltage_noise=0.2'."""
+    row: dict[str, Any] = {}
+    for target in candidate["targets"]:
+        if target.get("corner") is not None:
+            row[f"{target['name']}_worst"] = target["worst"]
+            corner = (f"{axis}={deviation:.9g}" for axis, deviation in target["corner"].items())
+            row[f"{target['name']}_corner"] = "; ".join(corner)
+    return row
+
+
+def _yield(candidate: Mapping[str, Any]) -> dict[str, Any]:
+    found = candidate.get("yield")
+    if found is None:
+        return {}
+    row = {f"yield_{part}": found[part] for part in ("low", "high", "draws", "meets")}
+    return row | {"yield": found["yield"], "yield_unknown": "; ".join(found["unknown"])}
 
 
 def frame(candidates: Sequence[Mapping[str, Any]], request: Mapping[str, Any]) -> pd.DataFrame:
@@ -65,5 +101,6 @@ def frame(candidates: Sequence[Mapping[str, Any]], request: Mapping[str, Any]) -
 
     names = columns(request)
     table = pd.DataFrame([flat(candidate) for candidate in candidates], columns=list(names))
-    types = {**CHOICE, **VERDICT, **NOTES}
+    types = {**CHOICE, **VERDICT, **YIELD, **NOTES}
+    types |= {name: "object" for name in names if name.endswith("_corner")}
     return table.astype({name: types.get(name, "float64") for name in names})

@@ -7,12 +7,16 @@ from typing import Any
 
 from optimizer.errors import clean
 from optimizer.quantities import show
+from optimizer.report.corner import at_corner, graded_value
 from optimizer.report.layout import Column
+from optimizer.report.paragraphs import bound
 from optimizer.report.words import figure, margin_words
+from optimizer.report.yields import yield_cell
 
 Candidate = Mapping[str, Any]
 ASSUMED = "*"
 LINEAR = "^"
+LIMITING = 28  # columns that hold every target with its margin, and any one deviation
 
 
 def part_columns(rows: Sequence[Candidate], *, narrow: bool = False) -> list[Column]:
@@ -45,25 +49,39 @@ def figure_columns(
     def cells(name: str) -> tuple[str, ...]:
         return tuple(_marked_figure(row, name, request) for row in rows)
 
-    return [
+    columns = [
         Column("bandwidth", cells("bandwidth"), right=True),
         Column("SNR", cells("snr"), right=True),
         Column("dynamic\nrange" if tall else "dyn. range", cells("dynamic_range"), right=True),
         Column("supply\ncurrent" if tall else "supply", cells("supply_current"), right=True),
         Column("cost", cells("cost"), right=True),
     ]
+    if any("yield" in row for row in rows):
+        columns.append(Column("yield", tuple(yield_cell(row) for row in rows), right=True))
+    return columns
 
 
 def limiting_column(rows: Sequence[Candidate], *, narrow: bool = False) -> Column:
-    """The limiting target of each row with its margin; `narrow` folds it onto two lines."""
+    """The limiting target of each row with its margin and corner; `narrow` folds it onto two lines."""
     texts = tuple(limiting(row, "\n" if narrow else " ") for row in rows)
-    return Column("limiting target", texts, gives=True)
+    least = LIMITING if any(map(_corner, rows)) else None
+    return Column("limiting target", texts, gives=True, least=least)
 
 
 def limiting(row: Candidate, joint: str = " ") -> str:
-    """The limiting target and its margin: 'snr, 3 % to spare'."""
-    exists = all(t["value"] is not None for t in row["targets"] if t["name"] == row["limiting"])
-    return f"{row['limiting']},{joint}{margin_words(row['margin']) if exists else 'does not exist'}"
+    """The limiting target and its margin: 'snr, 3 % to spare', with the corner 'at gbw -30 %, Rf -1 %'."""
+    exists = all(graded_value(target) is not None for target in _limiting_target(row))
+    text = f"{row['limiting']},{joint}{margin_words(row['margin']) if exists else 'does not exist'}"
+    return bound(f"{text} {_corner(row)}") if _corner(row) else text
+
+
+def _limiting_target(row: Candidate) -> list[Mapping[str, Any]]:
+    return [target for target in row["targets"] if target["name"] == row["limiting"]]
+
+
+def _corner(row: Candidate) -> str:
+    """Where the limiting target falls; '' for a near miss, whose misses are listed with their corners."""
+    return "" if "missed" in row else "".join(map(at_corner, _limiting_target(row)))
 
 
 def named(row: Candidate, role: str) -> str:

@@ -10,10 +10,16 @@ from rich.text import Text
 from optimizer.errors import clean
 from optimizer.quantities import show
 from optimizer.report.cells import named
+from optimizer.report.corner import at_corner, graded_value, has_corner
 from optimizer.report.layout import Column, fit, lines
 from optimizer.report.paragraphs import paragraph
 from optimizer.report.pinned import pinned
-from optimizer.report.words import beside, figure, margin_words, side
+from optimizer.report.words import beside, figure, margin_words, side, told_apart
+from optimizer.report.yields import yield_words
+
+
+LISTED = 4
+"""Second sources that are named; the record has all."""
 
 
 def chosen_lines(record: Mapping[str, Any], width: int) -> list[Text]:
@@ -23,17 +29,19 @@ def chosen_lines(record: Mapping[str, Any], width: int) -> list[Text]:
         return []
     row, request = rows[0], record["request"]
     out = [Text(f"Row {row['rank']}, chosen", "bold")]
-    for label, text in _build(row, request):
+    for label, text in parts_list(row, request):
         folded = paragraph(text, width - 13)
         out += [Text(f"  {label if i == 0 else '':<10} {line}") for i, line in enumerate(folded)]
-    return out + _targets(row, request, width)
+    return out + _targets(row, request, width) + _yield(row, request, width)
 
 
-def _build(row: Mapping[str, Any], request: Mapping[str, Any]) -> list[tuple[str, str]]:
+def parts_list(row: Mapping[str, Any], request: Mapping[str, Any]) -> list[tuple[str, str]]:
+    """What to build, as labels with words; a label is empty where the words go on."""
     bias = figure("reverse_bias", row["figures"]["reverse_bias"], request)
     rows = [
         ("photodiode", f"{named(row, 'photodiode')}, {row['wiring']}, reverse bias {bias}"),
         ("op-amp", named(row, "opamp")),
+        ("", second_sources(row)),
         ("feedback", _feedback(row)),
         ("", pinned(row, request)),
         ("reference", _reference(row, request)),
@@ -41,6 +49,16 @@ def _build(row: Mapping[str, Any], request: Mapping[str, Any]) -> list[tuple[str
     if row["low_pass"] is not None:
         rows.append(("low-pass", f"{show(row['low_pass'], 'frequency')} after the receiver (not priced)"))
     return rows
+
+
+def second_sources(row: Mapping[str, Any]) -> str:
+    """The op-amps of other makers that meet everything in the same place; '' where none was looked for."""
+    others = row.get("alternates", ())
+    if not others:
+        return ""
+    names = ", ".join(named(other, "opamp") for other in others[:LISTED])
+    more = f" and {len(others) - LISTED} more" if len(others) > LISTED else ""
+    return f"or, in the same package and pinout, {names}{more}"
 
 
 def _feedback(row: Mapping[str, Any]) -> str:
@@ -68,6 +86,8 @@ def _reference(row: Mapping[str, Any], request: Mapping[str, Any]) -> str:
 
 
 def _targets(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> list[Text]:
+    if any(has_corner(target) for target in row["targets"]):
+        return _at_corners(row, request, width)
     comfort = request["ranking"]["comfort"]
     pairs = [beside(t["name"], t["value"], t["limit"], request) for t in row["targets"]]
     names = [t["name"] for t in row["targets"]]
@@ -87,6 +107,36 @@ def _targets(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> 
 
 def _margin(target: Mapping[str, Any], limiting: str, comfort: float) -> str:
     words = margin_words(target["margin"])
-    if target["name"] == limiting:
-        words += ", limiting"
-    return f"{words}, comfortable" if target["margin"] >= comfort else words
+    return ", ".join((words, *_remarks(target, limiting, comfort)))
+
+
+def _remarks(target: Mapping[str, Any], limiting: str, comfort: float) -> list[str]:
+    limits = ["limiting"] if target["name"] == limiting else []
+    return [*limits, "comfortable"] if target["margin"] >= comfort else limits
+
+
+def _at_corners(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> list[Text]:
+    """Every target at nominal and at its worst corner, which stands below it."""
+    comfort, targets = request["ranking"]["comfort"], row["targets"]
+    said = [told_apart(t["name"], (t["value"], graded_value(t)), t["limit"], request) for t in targets]
+    columns = (
+        Column("target", tuple(t["name"] for t in targets)),
+        Column("nominal", tuple(nominal for (nominal, _worst), _limit in said), right=True),
+        Column("worst", tuple(worst for (_nominal, worst), _limit in said), right=True),
+        Column("limit", tuple(f"{side(t['name'])} {s[1]}" for t, s in zip(targets, said, strict=True))),
+        Column("margin", tuple(margin_words(t["margin"]) for t in targets), gives=True),
+    )
+    widths = fit(columns, width - 2)
+    out = [Text("  " + line, "bold") for line in lines(columns, widths, -1)]
+    for index, target in enumerate(targets):
+        corner = f"worst {at_corner(target)}" if at_corner(target) else "no corner is worse"
+        below = ", ".join((*_remarks(target, row["limiting"], comfort), corner))
+        out += [Text("  " + line) for line in lines(columns, widths, index)]
+        out += [Text("    " + line) for line in paragraph(below, width - 4)]
+    return out
+
+
+def _yield(row: Mapping[str, Any], request: Mapping[str, Any], width: int) -> list[Text]:
+    """The yield as one labelled paragraph; nothing where nothing was drawn."""
+    folded = paragraph("; ".join(yield_words(row, request)), width - 13)
+    return [Text(f"  {'yield' if i == 0 else '':<10} {line}") for i, line in enumerate(folded)]

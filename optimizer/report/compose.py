@@ -8,12 +8,13 @@ from typing import Any
 from rich.text import Text
 
 from optimizer.record import Record
-from optimizer.report.cautions import LEFT_OUT, cautions
+from optimizer.report.cautions import cautions, left_out
 from optimizer.report.chosen import chosen_lines
 from optimizer.report.misses import blocking_lines, near_miss_lines
-from optimizer.report.notes import covered, footnotes, headline, impossible_lines
+from optimizer.report.notes import at_every_corner, covered, footnotes, headline, impossible_lines
 from optimizer.report.paragraphs import styled
-from optimizer.report.reasons import reason_lines
+from optimizer.report.real_parts import real_parts
+from optimizer.report.reasons import reason_lines, unusable_lines
 from optimizer.report.table import ranked_table
 
 Section = list[Text]
@@ -23,7 +24,8 @@ def report(record: Record, width: int) -> list[Text]:
     """Everything the record says, as lines for a terminal of `width` columns."""
     data = record.data
     if data["search"].get("impossible"):
-        return _joined([headline(data, width) + impossible_lines(data, width)])
+        impossible = headline(data, width) + impossible_lines(data, width)
+        return _joined([impossible, unusable_lines(data, width)])
     misses = near_miss_lines(data, width) + footnotes(data["near_misses"], data["request"], width)
     return _joined(
         [
@@ -31,9 +33,11 @@ def report(record: Record, width: int) -> list[Text]:
             _table(data, width),
             chosen_lines(data, width),
             misses,
+            real_parts(data, width),
             reason_lines(data, width),
+            unusable_lines(data, width),
             covered(data, width),
-            styled(LEFT_OUT, width),
+            styled(left_out(data["request"]), width),
             styled(f"Caution: {cautions(data['request'])}", width),
         ]
     )
@@ -47,7 +51,8 @@ def table_only(record: Record, width: int) -> list[Text]:
     if data["candidates"]:
         return _table(data, width)
     misses = near_miss_lines(data, width) + footnotes(data["near_misses"], data["request"], width)
-    return styled("Nothing meets the request.", width, "bold red") + misses
+    nothing = f"Nothing meets the request{at_every_corner(data['request'])}."
+    return styled(nothing, width, "bold red") + misses
 
 
 def _table(data: Mapping[str, Any], width: int) -> Section:

@@ -19,6 +19,7 @@ PROVEN = "The ranking above is proven; near misses and counts were not finished.
 NONE_PROVEN = "Nothing meets the request, which is proven; near misses and counts were not finished."
 OPEN = "Best so far; each row meets the request, but the ranking is NOT proven, better ones may exist:"
 NONE_YET = "Nothing found so far meets the request, which proves nothing yet."
+NOT_DRAWN = "No random receivers were drawn, so the yields are unknown and change no rank."
 LOST = (
     "Nothing is proven yet, and what the workers had found by then is lost; one worker alone would show the "
     "best rows so far."
@@ -36,6 +37,8 @@ def interrupted(record: Record, last: Progress | None, width: int, *, workers: i
     table = (
         ranked_table(rows, data["request"], width) + footnotes(rows, data["request"], width) if rows else []
     )
+    if rows and data["request"].get("tolerance"):
+        table += styled(NOT_DRAWN, width)
     if proven:
         return out + table + styled(PROVEN if rows else NONE_PROVEN, width)
     if workers > 1 and not rows:

@@ -17,33 +17,42 @@ JOINTS = re.compile(r"(?<=\w[-_])(?=\w)")
 
 @dataclass(frozen=True, slots=True)
 class Column:
-    """A heading over cells; a line break in either starts a new line. `gives` columns may be folded."""
+    """A heading over cells; a line break in either starts a new line. `gives` columns may be folded;
+    those of running text are laid out for lines of `least` columns, and take more where there is room.
+    """
 
     heading: str
     cells: tuple[str, ...]
     right: bool = False
     gives: bool = False
+    least: int | None = None
 
     @property
     def width(self) -> int:
         """The display width that holds every line unfolded."""
         return max(cell_len(line) for cell in (self.heading, *self.cells) for line in cell.split("\n"))
 
+    @property
+    def needed(self) -> int:
+        """The display width that the column is to be given at least."""
+        return self.width if self.least is None else min(self.width, max(self.least, cell_len(self.heading)))
+
 
 def total(columns: Sequence[Column]) -> int:
-    """The display width of the columns side by side."""
-    return sum(column.width for column in columns) + GAP * (len(columns) - 1)
+    """The display width that the columns need side by side."""
+    return sum(column.needed for column in columns) + GAP * (len(columns) - 1)
 
 
 def fit(columns: Sequence[Column], width: int, least: int = 8) -> list[int]:
-    """Widths that sum to `width` where they can: the widest `gives` columns shrink first, to `least` or
-    their heading.
+    """Widths that sum to `width` where they can: running text shrinks first, to what it needs, then the
+    widest `gives` columns, to `least` or their heading.
     """
     widths = [column.width for column in columns]
-    floors = [max(cell_len(line) for line in column.heading.split("\n")) for column in columns]
+    folds = [max(least, *(cell_len(line) for line in column.heading.split("\n"))) for column in columns]
     room = width - GAP * (len(columns) - 1)
     while sum(widths) > room:
-        able = [i for i, column in enumerate(columns) if column.gives and widths[i] > max(least, floors[i])]
+        able = [i for i, column in enumerate(columns) if widths[i] > column.needed]
+        able = able or [i for i, column in enumerate(columns) if column.gives and widths[i] > folds[i]]
         if not able:
             break
         widths[max(able, key=lambda i: widths[i])] -= 1

@@ -7,10 +7,11 @@ from typing import Any
 
 from rich.text import Text
 
+from optimizer.report.corner import at_corner, graded_value
 from optimizer.report.paragraphs import paragraph, styled
 from optimizer.report.pinned import pinned
 from optimizer.report.table import ranked_table
-from optimizer.report.words import beside, margin_words, side
+from optimizer.report.words import margin_words, side, told_apart
 
 SIDES = {"at least": "needs", "at most": "at most"}
 
@@ -32,8 +33,8 @@ def missed_notes(row: Mapping[str, Any], request: Mapping[str, Any], width: int)
     """Every missed target of one near miss with value, limit and by how much, then which passive stands
     at an end of its range, folded to `width`.
     """
-    missed = paragraph("; ".join(_missed(target, request) for target in _worst_first(row)), width)
-    return missed + paragraph(pinned(row, request), width)
+    words = [missed_words(target, request) for target in worst_first(row)] + too_few_sources(row, request)
+    return paragraph("; ".join(words), width) + paragraph(pinned(row, request), width)
 
 
 def blocking_lines(record: Mapping[str, Any], width: int) -> list[Text]:
@@ -49,7 +50,7 @@ def blocking_lines(record: Mapping[str, Any], width: int) -> list[Text]:
     blocking = _blocking(record["search"].get("blocking", ()))
     ends = pinned(misses[0], record["request"])
     at_ends = styled(f"In the nearest miss, {ends}." if ends else "", width)
-    return styled(blocking, width) + styled(_nearest(_worst_first(misses[0])), width) + at_ends
+    return styled(blocking, width) + styled(_nearest(worst_first(misses[0])), width) + at_ends
 
 
 def _blocking(names: Sequence[str]) -> str:
@@ -61,6 +62,8 @@ def _blocking(names: Sequence[str]) -> str:
 
 def _nearest(missed: Sequence[Mapping[str, Any]]) -> str:
     names = [target["name"] for target in missed]
+    if not names:
+        return "The nearest miss meets every target, but not with op-amps of as many makers as asked for."
     if len(names) == 1:
         return f"The nearest miss misses {names[0]} alone."
     return (
@@ -69,14 +72,27 @@ def _nearest(missed: Sequence[Mapping[str, Any]]) -> str:
     )
 
 
-def _worst_first(row: Mapping[str, Any]) -> list[Mapping[str, Any]]:
-    """The targets that `row` misses."""
+def worst_first(row: Mapping[str, Any]) -> list[Mapping[str, Any]]:
+    """The targets that `row` misses, the worst miss first."""
     return sorted((t for t in row["targets"] if t["margin"] < 0), key=lambda t: float(t["margin"]))
 
 
-def _missed(target: Mapping[str, Any], request: Mapping[str, Any]) -> str:
-    name = target["name"]
-    value, limit = beside(name, target["value"], target["limit"], request)
-    if target["value"] is None:
-        return f"{name} does not exist here (needs {limit})"
-    return f"{name} {margin_words(target['margin'])} ({value}, {SIDES[side(name)]} {limit})"
+def too_few_sources(row: Mapping[str, Any], request: Mapping[str, Any]) -> list[str]:
+    """What a row lacks that meets every target, but not with op-amps of as many makers as asked for."""
+    if "opamp_sources" not in row.get("missed", ()):
+        return []
+    makers = {row["opamp_maker"], *(other["opamp_maker"] for other in row.get("alternates", ()))}
+    asked = request["resilience"]["opamp_sources"]
+    return [f"op-amps of {len(makers)} of {asked} makers serve, in this package and pinout"]
+
+
+def missed_words(target: Mapping[str, Any], request: Mapping[str, Any]) -> str:
+    """One missed target with value, limit and by how much; where corners are graded, at the worst one."""
+    name, corner = target["name"], at_corner(target)
+    worst = graded_value(target)
+    (value, nominal), limit = told_apart(name, (worst, target["value"]), target["limit"], request)
+    if worst is None:
+        return f"{name} does not exist {corner or 'here'} (needs {limit})"
+    values = f"{value} there, {nominal} at nominal" if corner else value
+    missed = " ".join(filter(None, (margin_words(target["margin"]), corner)))
+    return f"{name} {missed} ({values}, {SIDES[side(name)]} {limit})"

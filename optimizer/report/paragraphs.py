@@ -15,7 +15,7 @@ BODIES = ("IEC", "ISO", "EN")
 
 def paragraph(text: str, width: int, indent: str = "") -> list[str]:
     """`text` folded to `width`; a number is never parted from its unit or per cent sign."""
-    kept = _bound(text)
+    kept = bound(text)
     folded = textwrap.wrap(
         kept,
         max(width, 20),
@@ -30,7 +30,8 @@ def styled(text: str, width: int, style: str = "", indent: str = "") -> list[Tex
     return [Text(line, style) for line in paragraph(text, width, indent)]
 
 
-def _bound(text: str) -> str:
+def bound(text: str) -> str:
+    """`text` with an unbroken space wherever a number stands before its unit."""
     words = text.split(" ")
     joined = words[0]
     for before, word in pairwise(words):

@@ -15,6 +15,7 @@ from optimizer.report.words import count, several
 ASSUMABLE = (
     "Blanks may be filled by [assume] lines in the request; luxsift inspect says what each would admit."
 )
+UNUSABLE = "Families that took no part, for the catalog leaves blank what the request needs"
 MISSING = "missing"
 WORDS: Mapping[str, str] = {
     "status": "status not among those the request takes",
@@ -31,6 +32,7 @@ WORDS: Mapping[str, str] = {
     "gain": "open-loop gain too low for the diode's shunt",
     "min_gain": "below the noise gain at which the op-amp is stable",
     "unstable": "no positive phase margin",
+    "opamp_sources": "op-amps of too few makers in its package and pinout",
     "missed_target": "a target is missed at every setting",
     "cannot_beat": "proved unable to beat the last row shown",
 }
@@ -41,7 +43,7 @@ def reason_lines(record: Mapping[str, Any], width: int) -> list[Text]:
     dropped = {key: pairs for key, pairs in record["search"]["dropped"].items() if pairs}
     if not dropped:
         return []
-    rows = sorted(_rows(dropped), key=lambda row: (-row[1], row[0]))
+    rows = reason_rows(dropped)
     columns = (
         Column("pairs", tuple(count(pairs) for _key, pairs, _why in rows), right=True),
         Column("key", tuple(clean(key) for key, _pairs, _why in rows)),
@@ -56,6 +58,20 @@ def reason_lines(record: Mapping[str, Any], width: int) -> list[Text]:
     return out
 
 
+def unusable_lines(record: Mapping[str, Any], width: int) -> list[Text]:
+    """The families of resistors and capacitors that took no part for a blank; empty without any."""
+    families = record["search"].get("unusable", ())
+    if not families:
+        return []
+    said = (f"{clean(one['family'])} ({_blank_words(one)})" for one in families)
+    return styled(f"{UNUSABLE}: {', '.join(said)}.", width)
+
+
+def _blank_words(family: Mapping[str, Any]) -> str:
+    columns = " and ".join(clean(name) for name in family["blank"])
+    return f"{clean(family['role'])}: {columns}"
+
+
 def _which(record: Mapping[str, Any], dropped: int) -> str:
     if record["candidates"]:
         return several(dropped, "other pair")
@@ -63,8 +79,10 @@ def _which(record: Mapping[str, Any], dropped: int) -> str:
     return f"all {several(dropped, 'pair')}" if every else several(dropped, "pair")
 
 
-def _rows(dropped: Mapping[str, int]) -> list[tuple[str, int, str]]:
-    """One row a key, with its words; the blanks of all columns share one row that counts each."""
+def reason_rows(dropped: Mapping[str, int]) -> list[tuple[str, int, str]]:
+    """One row a key with its pairs and words, most pairs first; the blanks of all columns share one row
+    that counts each.
+    """
     blanks = {key.partition(":")[2]: n for key, n in dropped.items() if _is_blank(key)}
     unknown = "dropped for a reason that this version does not know"
     rows = [(key, n, WORDS.get(key, unknown)) for key, n in dropped.items() if not _is_blank(key)]
@@ -74,7 +92,7 @@ def _rows(dropped: Mapping[str, int]) -> list[tuple[str, int, str]]:
         rows.append(
             (MISSING, sum(blanks.values()), f"a value that a target or check needs is blank: {columns}")
         )
-    return rows
+    return sorted(rows, key=lambda row: (-row[1], row[0]))
 
 
 def _is_blank(key: str) -> bool:

@@ -16,6 +16,7 @@ from optimizer.report.cells import (
     value_columns,
 )
 from optimizer.report.layout import GAP, Column, fit, lines, total
+from optimizer.report.yields import BELOW, is_below
 
 HEADING = "bold"
 CHOSEN = "bold"
@@ -87,7 +88,8 @@ def _row(rank: Column, label: str, grids: tuple[Grids, list[list[int]]], index: 
 
 
 def _rank(row: Candidate, chosen: int | None) -> str:
-    return f"> {row['rank']}" if row["rank"] == chosen else str(row["rank"])
+    marks = (">" if row["rank"] == chosen else "") + (BELOW if is_below(row) else "")
+    return f"{marks} {row['rank']}".lstrip()
 
 
 def _coloured(line: str, style: str) -> Text:

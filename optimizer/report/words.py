@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from optimizer.quantities import show
@@ -44,6 +44,15 @@ def percent(fraction: float) -> str:
     return f"{100 * fraction:,.0f} %"
 
 
+def share(fraction: float) -> str:
+    """A share of all in percent, told apart from none and from all: '99.23 %', '99.996 %', '100 %'."""
+    for digits in range(4, 10):
+        said = show(fraction, "fraction", digits)
+        if said != "100 %" or fraction == 1.0:
+            break
+    return said
+
+
 def margin_words(margin: float) -> str:
     """A margin in words: '3 % to spare', 'misses by 4 %', 'exactly met'."""
     if margin == 0:
@@ -67,9 +76,18 @@ def figure(name: str, value: float | None, request: Mapping[str, Any], digits: i
 
 def beside(name: str, value: float | None, limit: float, request: Mapping[str, Any]) -> tuple[str, str]:
     """A value and its limit with as many digits as it takes to tell the two apart."""
+    (said,), bound = told_apart(name, (value,), limit, request)
+    return said, bound
+
+
+def told_apart(
+    name: str, values: Sequence[float | None], limit: float, request: Mapping[str, Any]
+) -> tuple[tuple[str, ...], str]:
+    """Values and their limit with as many digits as it takes to tell each of them from the limit."""
     for digits in range(3, 10):
-        said, bound = (figure(name, number, request, digits) for number in (value, limit))
-        if said != bound or value == limit:
+        bound = figure(name, limit, request, digits)
+        said = tuple(figure(name, value, request, digits) for value in values)
+        if all(text != bound or value == limit for text, value in zip(said, values, strict=True)):
             break
     return said, bound
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,7 +13,8 @@ from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import FIGURES, evaluate
 from optimizer.request.types import WIRINGS
 from optimizer.search.outlines import outlines
-from optimizer.search.result import Candidate, Reference, TargetValue
+from optimizer.search.result import SOURCES, Alternate, Candidate, Reference, TargetValue
+from optimizer.search.sources import Served, alternates
 from optimizer.search.space import Choice, Space, settings
 from optimizer.search.worst import Worst, worst
 
@@ -32,9 +34,33 @@ def candidates(space: Space, catalogs: Catalogs, choice: Choice) -> tuple[Candid
     with np.errstate(all="ignore"):
         figures = evaluate(space.bench, settings(space, choice)).figures
     at_worst = worst(space, choice)
-    return tuple(
-        _candidate(space, catalogs, choice, row, (figures, at_worst)) for row in range(choice.opamp.size)
-    )
+    rows = range(choice.opamp.size)
+    found = [_candidate(space, catalogs, choice, row, (figures, at_worst)) for row in rows]
+    if space.request.resilience.opamp_sources > 1:
+        served = alternates(space, choice)
+        found = [_sourced(space, catalogs, one, (served, row)) for row, one in enumerate(found)]
+    return tuple(found)
+
+
+def _sourced(space: Space, catalogs: Catalogs, candidate: Candidate, served: tuple[Served, int]) -> Candidate:
+    """`candidate` with its alternates, the cheapest first, and whether they are too few."""
+    every, row = served
+    text = catalogs.opamps.text
+    others = [
+        Alternate(
+            str(text["part"][every.opamp[i]]),
+            str(text["maker"][every.opamp[i]]),
+            float(every.judged.cost[i]),
+            margins.limiting(every.judged.margin_columns[i].tolist(), space.limits),
+            float(every.judged.margin_columns[i].min()),
+        )
+        for i in np.flatnonzero(every.row == row)
+    ]
+    others.sort(key=lambda other: (other.cost, other.opamp, other.opamp_maker))
+    makers = {candidate.opamp_maker, *(other.opamp_maker for other in others)}
+    few = not candidate.missed and len(makers) < space.request.resilience.opamp_sources
+    missed = (SOURCES,) if few else candidate.missed
+    return replace(candidate, alternates=tuple(others), missed=missed)
 
 
 def plain_number(value: float) -> float | None:

@@ -27,6 +27,7 @@ from numpy.typing import NDArray
 
 from optimizer.figures import Bench
 from optimizer.physics import noise
+from optimizer.search.flicker import flicker_flat, flicker_span
 from optimizer.search.view import View
 
 Floats = NDArray[np.float64]
@@ -304,21 +305,32 @@ class Floor:
     per_conductance: Floats
 
 
-def noise_floor(v: View, left: Narrow, c: Coefficients, bench: Bench) -> Floor:
-    """Lower bounds on the noise over what is left."""
+Four = tuple[Floats, Floats, Floats, Floats]
+
+
+def filtered(v: View, c: Coefficients) -> tuple[Four, tuple[Floats, Floats]]:
+    """The coefficients of s to s^4 of D and the low-pass together, at most; the first two at least."""
     t_low, t_high = v.lag_low, v.lag_high
     first, second = c.e1_high + t_high, c.e2_high + t_high * c.e1_high
-    third = c.e3_low + t_low * c.e2_low
+    high = (first, second, c.e3_high + t_high * c.e2_high, t_high * c.e3_high)
+    return high, (c.e1_low + t_low, c.e2_low + t_low * c.e1_low)
+
+
+def noise_floor(v: View, left: Narrow, c: Coefficients, bench: Bench) -> Floor:
+    """Lower bounds on the noise over what is left."""
+    high, low = filtered(v, c)
+    first, second = high[:2]
+    third = c.e3_low + v.lag_low * c.e2_low
     with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         flat = _reciprocal(4.0 * (first - third / second))
         rising = _reciprocal(4.0 * (first * second - third))
-        flicker = _flicker_floor(first, second, bench.noise_from) * v.noise_corner
+        level = flat + flicker_flat(first, second, bench.noise_from) * v.noise_corner
+        span = flicker_span(high, low, bench.noise_from)
+        slope = rising + 0.5 * span / first**2 * v.noise_corner
         per_volt = v.voltage_noise / left.rf_high**2
-        node = v.voltage_noise * (v.cin_low + left.cf_low) ** 2
-        amplifier = per_volt * c.g_low**2 * (flat + flicker) + node * rising
-        buffer = (
-            per_volt * (flat + flicker) + v.voltage_noise * (left.cf_low + v.reference_node) ** 2 * rising
-        )
+        node, moved = v.cin_low + left.cf_low, left.cf_low + v.reference_node
+        amplifier = per_volt * c.g_low**2 * level + v.voltage_noise * node**2 * slope
+        buffer = per_volt * level + v.voltage_noise * moved**2 * slope
         amplifier = amplifier + np.where(v.buffered, buffer, 0.0)
         steady = noise.shot_current(v.responsivity * bench.background + v.dark_low) + v.current_noise
         steady = steady + noise.thermal_conductance_current(v.shunt_low, bench.kelvin)
@@ -335,17 +347,6 @@ def noise_floor(v: View, left: Narrow, c: Coefficients, bench: Bench) -> Floor:
 def _reciprocal(value: Floats) -> Floats:
     """1/value where that is a positive finite number, else 0 (no bound)."""
     return np.where((value > 0.0) & np.isfinite(value), 1.0 / value, 0.0)
-
-
-def _flicker_floor(first: Floats, second: Floats, start: float) -> Floats:
-    """Lower bound on the integral of |1/(D Plp)|^2 / f: its part below w1, where D is still near 1.
-
-    Up to w1 = min(0.5/E1, 0.5/sqrt(E2)): E1 w <= 1/2, E2 w^2 <= 1/4, and by stability E3 < E1 E2 and
-    E4 < E2^2, so the real part is within [3/4, 17/16], the imaginary part at most 1/2: |D|^2 <= 1.4.
-    """
-    w1 = np.minimum(0.5 / first, 0.5 / np.sqrt(second))
-    ratio = np.where(np.isfinite(w1) & (w1 > 0.0), w1 / (2.0 * np.pi * start), 1.0)
-    return np.maximum(np.log(ratio), 0.0) / 1.4
 
 
 def needed(v: View, goals: Goals, level: Floats) -> Floats:

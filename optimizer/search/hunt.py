@@ -23,6 +23,7 @@ from optimizer.search.corners import blocks, worsened
 from optimizer.search.incumbents import Incumbents, improve
 from optimizer.search.plain import Judged, judge
 from optimizer.search.shifted import bounded
+from optimizer.search.sources import is_sourced, may_be_sourced
 from optimizer.search.split import filled, halves, narrowed
 from optimizer.search.upper import Bound
 from optimizer.search.view import Index, view
@@ -151,6 +152,8 @@ def _admitted(hunt: Hunt, boxes: Boxes, inherited: Floats) -> Pool:
     limits = bounded(hunt.index, boxes, v, hunt.goals, (level, inner))
     boxes = narrowed(hunt.index, boxes, limits.left, v)
     keep = limits.possible & filled(boxes)
+    if hunt.index.space.sources > 1:
+        keep[keep] = may_be_sourced(hunt.index, boxes.take(keep), hunt.goals, hunt.rules.least)
     key = _key(hunt, boxes.take(keep), limits, keep)
     key[:, 0] = np.maximum(key[:, 0], inherited[keep])
     if hunt.rules.by == "margin":
@@ -201,10 +204,10 @@ def _levels(
     tied = has & _not_before(rules.by, (first, cost), best)
     level = np.where(tied, np.maximum(level, -best[:, 2]), level)
     dearer = tied & (cost >= best[:, 1])
-    return level, np.where(dearer, np.maximum(level, _inner(hunt.goals, known, best)), level)
+    return level, np.where(dearer, np.maximum(level, inner_level(hunt.goals, known, best)), level)
 
 
-def _inner(goals: Goals, known: tuple[Floats, Floats], best: Floats) -> Floats:
+def inner_level(goals: Goals, known: tuple[Floats, Floats], best: Floats) -> Floats:
     """What the other margins need where cost or supply current alone hold the smallest ones down.
 
     If the margin of one of them is at most the incumbent's smallest, a setting of the same primary and
@@ -244,16 +247,22 @@ def _key(hunt: Hunt, boxes: Boxes, limits: Bound, keep: Bools) -> Floats:
         "snr": -limits.snr[keep],
     }[hunt.rules.by]
     first = np.where(np.isnan(first), np.inf, first)
-    column, index = boxes.column, hunt.index
-    ties = [
-        index.resistors.value[column(Boxes.R0)],
-        index.capacitors.value[column(Boxes.C0)],
-        column(Boxes.X0),
-        column(Boxes.L0),
-        index.resistors.family.least(Span.of(column(Boxes.R0), column(Boxes.R1))),
-        index.capacitors.family.least(Span.of(column(Boxes.C0), column(Boxes.C1))),
-    ]
-    return np.column_stack([first, cost, -vector, *ties])
+    return np.column_stack([first, cost, -vector, least_ties(hunt.index, boxes)])
+
+
+def least_ties(index: Index, boxes: Boxes) -> Floats:
+    """What settles the last ties (see `keys.ties`), at least, in each box."""
+    column = boxes.column
+    return np.column_stack(
+        [
+            index.resistors.value[column(Boxes.R0)],
+            index.capacitors.value[column(Boxes.C0)],
+            column(Boxes.X0),
+            column(Boxes.L0),
+            index.resistors.family.least(Span.of(column(Boxes.R0), column(Boxes.R1))),
+            index.capacitors.family.least(Span.of(column(Boxes.C0), column(Boxes.C1))),
+        ]
+    )
 
 
 def _priority(hunt: Hunt, boxes: Boxes, key: Floats) -> Floats:
@@ -298,9 +307,12 @@ def _evaluate(hunt: Hunt, pool: Pool) -> None:
         for block in blocks(index.space, divided=kind):
             part = part.take(_useful(hunt, part))
             part = worsened(index.space, part, block, hunt.rules.by)
-        good = part.admitted & (part.vector[:, 0] >= hunt.rules.least)
-        if good.any():
-            improve(index.space, hunt.incumbents, part.take(good), show=hunt.rules.show)
+        part = part.take(part.admitted & (part.vector[:, 0] >= hunt.rules.least))
+        if index.space.sources > 1:
+            part = part.take(_useful(hunt, part))
+            part = part.take(is_sourced(index.space, part.choice, hunt.rules.least))
+        if part.reach.size:
+            improve(index.space, hunt.incumbents, part, show=hunt.rules.show)
 
 
 def _useful(hunt: Hunt, judged: Judged) -> Bools:

@@ -11,7 +11,7 @@ import hashlib
 import json
 from collections import Counter
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -21,6 +21,7 @@ from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import evaluate
 from optimizer.request.types import WIRINGS
 from optimizer.search.assemble import plain_number
+from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space
 from optimizer.search.spreads import AXES, half_widths, moved, moved_checks
 from optimizer.vocabulary import VOCABULARY
@@ -32,28 +33,6 @@ BLOCK = 16384
 """Draws that are evaluated at once."""
 
 DISTRIBUTIONS = {"uniform": statistics.uniform, "normal": statistics.normal}
-
-
-@dataclass(frozen=True, slots=True)
-class Simulated:
-    """What the draws of one candidate came to.
-
-    `passed` of `draws` met the request, which is the share `yield_`, with `low` and `high` the ends of
-    its Wilson 95 % interval. `failures` counts the draws that missed each target or failed each check
-    (a draw may count under several), `worst` and `best` hold each target's extremes (None: in some
-    draw, or in all, the figure does not exist). Where a spread is unknown, `unknown` names the columns
-    and nothing was drawn.
-    """
-
-    draws: int
-    passed: int = 0
-    yield_: float | None = None
-    low: float | None = None
-    high: float | None = None
-    failures: Mapping[str, int] = field(default_factory=dict)
-    worst: Mapping[str, float | None] = field(default_factory=dict)
-    best: Mapping[str, float | None] = field(default_factory=dict)
-    unknown: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

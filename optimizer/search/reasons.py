@@ -13,8 +13,10 @@ from optimizer.search import feed
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.reach import furthest
+from optimizer.search.result import SOURCES
 from optimizer.search.roles import PASSES, Verdicts
 from optimizer.search.shifted import bounded
+from optimizer.search.sources import offered
 from optimizer.search.view import Index, view
 
 Floats = NDArray[np.float64]
@@ -38,7 +40,8 @@ class Shown:
 def dropped(index: Index, goals: Goals, *, by: str, shown: Shown) -> dict[str, int]:
     """Pairs by the key under which they count, in the order of the checks.
 
-    A part that fails alone takes all its pairs with it. Of the others, one whose least cost (or
+    A part that fails alone takes all its pairs with it. Of the others, one whose op-amp comes from too
+    few makers in its package and pinout counts as such; one whose least cost (or
     supply current) is already above the last row shown is `cannot_beat`; one that reaches no eligible
     setting counts under the check it reached; one whose bounds prove a miss, and all when fewer pairs
     meet than are asked for, is `missed_target`; the rest is `cannot_beat`.
@@ -52,7 +55,7 @@ def dropped(index: Index, goals: Goals, *, by: str, shown: Shown) -> dict[str, i
     for begin in range(0, opamp.size, _BLOCK):
         part = slice(begin, begin + _BLOCK)
         _count_block(index, goals, (opamp[part], diode[part]), by=by, shown=shown, counts=counts)
-    named = [*CHECKS, "missed_target", "cannot_beat"]
+    named = [*CHECKS, SOURCES, "missed_target", "cannot_beat"]
     order = {key: place for place, key in enumerate(named)}
     return dict(sorted(counts.items(), key=lambda item: (order[item[0].partition(":")[0]], item[0])))
 
@@ -76,6 +79,10 @@ def _count_block(
     number = opamp * space.diodes.price.size + diode
     rest = ~np.isin(number, shown.pairs)
     opamp, diode = opamp[rest], diode[rest]
+    if space.sources > 1:
+        lone = ~offered(space)[opamp]
+        counts[SOURCES] += int(lone.sum())
+        opamp, diode = opamp[~lone], diode[~lone]
     if shown.last is not None and by in ("cost", "supply_current"):
         above = feed.floors(index, opamp, diode, by=by) > shown.last
         counts["cannot_beat"] += int(above.sum())

@@ -35,11 +35,54 @@ class TargetValue:
 
 
 @dataclass(frozen=True, slots=True)
+class Simulated:
+    """What the random draws of one candidate came to.
+
+    `passed` of `draws` met the request, which is the share `yield_`, with `low` and `high` the ends of
+    its Wilson 95 % interval. `failures` counts the draws that missed each target or failed each check
+    (a draw may count under several), `worst` and `best` hold each target's extremes (None: in some
+    draw, or in all, the figure does not exist). Where a spread is unknown, `unknown` names the columns
+    and nothing was drawn.
+    """
+
+    draws: int
+    passed: int = 0
+    yield_: float | None = None
+    low: float | None = None
+    high: float | None = None
+    failures: Mapping[str, int] = field(default_factory=dict)
+    worst: Mapping[str, float | None] = field(default_factory=dict)
+    best: Mapping[str, float | None] = field(default_factory=dict)
+    unknown: tuple[str, ...] = ()
+
+    def reaches(self, wanted: float) -> bool:
+        """Whether the yield is `wanted` or more, by the lower end of its interval; not where unknown."""
+        return self.low is not None and self.low >= wanted
+
+
+SOURCES = "opamp_sources"
+"""What is missed where all targets are met, but not with op-amps of as many makers as asked for."""
+
+
+@dataclass(frozen=True, slots=True)
+class Alternate:
+    """An op-amp of another maker that meets every target in the place of the chosen one."""
+
+    opamp: str
+    opamp_maker: str
+    cost: float
+    limiting: str
+    margin: float
+
+
+@dataclass(frozen=True, slots=True)
 class Candidate:
     """One choice along every axis, with its figures and margins.
 
     `outlines` holds, by the record's keys, packages and pinouts of the parts, makers of the families, and
     the families that the divider's parts come from; None where the catalog leaves a blank, or there is none.
+    `simulated` is None where nothing was drawn at random, `alternates` empty where no second source is
+    asked for.
     """
 
     photodiode: str
@@ -61,6 +104,21 @@ class Candidate:
     assumed: tuple[str, ...]
     linear_model: tuple[str, ...] = ()
     outlines: Mapping[str, str | None] = field(default_factory=dict)
+    simulated: Simulated | None = None
+    alternates: tuple[Alternate, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Unusable:
+    """A family that the request admits and offers values to, left out for what is `blank` in the catalog.
+
+    `role` is "resistor" or "capacitor".
+    """
+
+    role: str
+    family: str
+    maker: str
+    blank: tuple[str, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +127,7 @@ class Outcome:
 
     `impossible` holds what no part could meet, said before any search. `blocking` names the single
     targets of which each, if dropped, would let something through (only when nothing meets).
+    `unusable` are the families of passives that took no part.
     """
 
     candidates: tuple[Candidate, ...]
@@ -81,6 +140,7 @@ class Outcome:
     dropped: Mapping[str, int] = field(default_factory=dict)
     impossible: tuple[str, ...] = ()
     blocking: tuple[str, ...] = ()
+    unusable: tuple[Unusable, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

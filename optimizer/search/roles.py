@@ -192,21 +192,25 @@ def _unknown(parts: Parts, columns: Sequence[str]) -> Ints:
     return first
 
 
-def judge_opamps(
-    parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: OpAmps
-) -> Verdicts:
-    """Which checks each op-amp fails by itself, in each context."""
-    n, supply = parts.number, request.supply
+def opamps_need(request: Request) -> list[str]:
+    """Columns of op-amps that a stated target or check needs."""
     needed = list(ALWAYS["opamps"])
     if request.ambient.stated:
         needed += ["bias_doubling", "offset_drift", "temp_min", "temp_max"]
     stated = (
         (request.targets.slew, "slew_rate"),
-        (supply.load, "output_current"),
+        (request.supply.load, "output_current"),
         (request.targets.supply_current, "quiescent_current"),
     )
-    needed += [column for target, column in stated if target is not None]
-    blank = _unknown(parts, needed)
+    return needed + [column for target, column in stated if target is not None]
+
+
+def judge_opamps(
+    parts: Parts, request: Request, contexts: Contexts, *, bench: Bench, arrays: OpAmps
+) -> Verdicts:
+    """Which checks each op-amp fails by itself, in each context."""
+    n, supply = parts.number, request.supply
+    blank = _unknown(parts, opamps_need(request))
     span = supply.high - supply.low
     low_end, high_end = bench.ends
     with np.errstate(invalid="ignore"):
@@ -241,18 +245,23 @@ def _no_window(bench: Bench, arrays: OpAmps) -> Bools:
     return fails
 
 
-def judge_diodes(parts: Parts, request: Request, contexts: Contexts, *, bench: Bench) -> Verdicts:
-    """Which checks each photodiode fails by itself, in each context."""
-    needed = list(ALWAYS["photodiodes"])
-    light = request.light
+def diodes_need(request: Request, *, biased: bool) -> list[str]:
+    """Columns of photodiodes that a stated target or check needs where the wiring biases, or elsewhere."""
+    needed, light = list(ALWAYS["photodiodes"]), request.light
     if request.ambient.stated:
         needed += ["temp_min", "temp_max"]
     if light.kind == "irradiance" or light.area_from is not None or light.area_to is not None:
         needed.append("active_area")
     if request.targets.bandwidth is not None:
         needed.append("rise_time")
-    unbiased = _unknown(parts, [*needed, "shunt_resistance"])
-    biased = _unknown(parts, [*needed, "dark_current", "reverse_max"])
+    return [*needed, *(("dark_current", "reverse_max") if biased else ("shunt_resistance",))]
+
+
+def judge_diodes(parts: Parts, request: Request, contexts: Contexts, *, bench: Bench) -> Verdicts:
+    """Which checks each photodiode fails by itself, in each context."""
+    light = request.light
+    unbiased = _unknown(parts, diodes_need(request, biased=False))
+    biased = _unknown(parts, diodes_need(request, biased=True))
     sensed = np.array([bool(p) for p in parts.points["responsivity"]], dtype=bool)
     with np.errstate(invalid="ignore"):
         area = parts.number["active_area"]

@@ -13,14 +13,15 @@ from optimizer.catalog.parts import Catalogs
 from optimizer.errors import LuxsiftError
 from optimizer.quantities import show
 from optimizer.request.types import Request
-from optimizer.search import assemble, feed, impossible, reasons
+from optimizer.search import assemble, feed, impossible, reasons, yields
 from optimizer.search.bounds import Goals
 from optimizer.search.crew import Crew, Found
 from optimizer.search.hunt import Rules
 from optimizer.search.query import query
-from optimizer.search.result import Outcome, Progress
+from optimizer.search.result import SOURCES, Outcome, Progress
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space, build
+from optimizer.search.unusable import unusable
 from optimizer.search.view import Index
 
 Ints = NDArray[np.int64]
@@ -59,7 +60,8 @@ def shortlist(
     about ten times a second. Raises `Interrupted` on Ctrl-C.
     """
     with np.errstate(all="ignore"):  # absurd but stated values overflow; their figures do not exist
-        return _shortlist(request, catalogs, workers, progress)
+        outcome = _shortlist(request, catalogs, workers, progress)
+    return replace(outcome, unusable=unusable(request, catalogs))
 
 
 def _shortlist(request: Request, catalogs: Catalogs, workers: int, progress: Report | None) -> Outcome:
@@ -106,9 +108,19 @@ def _searched(work: Work) -> Outcome:
     taken = np.isin(
         _numbers(space, every.opamp, every.diode), _numbers(space, met.choice.opamp, met.choice.diode)
     )
-    near = work.crew.hunt(work.goals, Rules("margin", lacking, -1.0), every.take(~taken))
+    near = _nearest(work, lacking, every.take(~taken))
     blocking = () if met.choice.opamp.size else _blocking(work, every, near)
     return replace(_outcome(work, met, near, finished=True), blocking=blocking)
+
+
+def _nearest(work: Work, count: int, pairs: feed.Pairs) -> Found:
+    """The nearest misses, whether or not other makers could serve them."""
+    crew = work.crew
+    crew.index = replace(work.index, space=replace(work.space, sources=1))
+    try:
+        return crew.hunt(work.goals, Rules("margin", count, -1.0), pairs)
+    finally:
+        crew.index = work.index
 
 
 def _numbers(space: Space, opamp: Ints, diode: Ints) -> Ints:
@@ -126,10 +138,12 @@ def _outcome(work: Work, met: Found, near: Found | None, *, finished: bool) -> O
         float(met.primary[-1]) if full else None,
     )
     counts: Mapping[str, int] = {}
+    candidates = assemble.candidates(space, work.catalogs, met.choice)
     if finished:
         counts = reasons.dropped(work.index, work.goals, by=request.ranking.by, shown=shown)
+        candidates = yields.drawn(space, work.catalogs, met.choice, candidates)
     return Outcome(
-        candidates=assemble.candidates(space, work.catalogs, met.choice),
+        candidates=candidates,
         near_misses=assemble.candidates(space, work.catalogs, missed),
         combinations=space.combinations,
         pairs=work.catalogs.opamps.size * work.catalogs.photodiodes.size,
@@ -141,16 +155,18 @@ def _outcome(work: Work, met: Found, near: Found | None, *, finished: bool) -> O
 
 
 def _blocking(work: Work, every: feed.Pairs, near: Found) -> tuple[str, ...]:
-    """The single targets of which each, if dropped, would let something through."""
+    """The single targets of which each, if dropped, would let something through; last, second sources."""
     if not near.choice.opamp.size:
         return ()
-    table = near.margin_columns
+    table, sourced = near.margin_columns, work.space.sources > 1
     names = []
     for place, name in enumerate(work.goals.limits):
         rest = {other: limit for other, limit in work.goals.limits.items() if other != name}
-        alone = np.all(np.delete(table, place, axis=1) >= 0.0, axis=1)
+        alone = np.all(np.delete(table, place, axis=1) >= 0.0, axis=1) & (not sourced)
         if not rest or alone.any() or _something_meets(work, rest, every):
             names.append(name)
+    if sourced and np.all(table >= 0.0, axis=1).any():
+        names.append(SOURCES)
     return tuple(names)
 
 

@@ -46,7 +46,9 @@ class Space:
 
     `limits` are those of the graded targets, `musts` those of targets that must be met without being
     graded; margins from `comfort` up rank alike. `order_opamps`, `order_diodes`: rank of each part by
-    name, then maker. `combinations` counts the declared space.
+    name, then maker. `combinations` counts the declared space. `footprint` and `makers` number the
+    packages with pinout (-1: one is blank) and the makers of op-amps; settings must be served by
+    op-amps of `sources` makers in the same footprint.
     """
 
     request: Request
@@ -64,6 +66,9 @@ class Space:
     order_diodes: Ints
     combinations: int
     comfort: float
+    footprint: Ints
+    makers: Ints
+    sources: int
     musts: Mapping[str, float] = field(default_factory=dict)
 
 
@@ -127,6 +132,9 @@ def build_whole(request: Request, catalogs: Catalogs) -> Space:
         order_diodes=_ranks(catalogs.photodiodes.text["part"], catalogs.photodiodes.text["maker"]),
         combinations=combinations,
         comfort=request.ranking.comfort,
+        footprint=_footprints(catalogs.opamps.text["package"], catalogs.opamps.text["pinout"]),
+        makers=_numbered(catalogs.opamps.text["maker"]),
+        sources=request.resilience.opamp_sources,
     )
 
 
@@ -134,6 +142,16 @@ def _ranks(part: NDArray[np.str_], maker: NDArray[np.str_]) -> Ints:
     ranks = np.empty(part.size, dtype=np.int64)
     ranks[np.lexsort((maker, part))] = np.arange(part.size)
     return ranks
+
+
+def _numbered(words: NDArray[np.str_]) -> Ints:
+    return np.asarray(np.unique(words, return_inverse=True)[1], dtype=np.int64).reshape(words.shape)
+
+
+def _footprints(package: NDArray[np.str_], pinout: NDArray[np.str_]) -> Ints:
+    """A number for each package with its pinout; -1 where one of them is blank."""
+    numbers = _numbered(package) * (pinout.size + 1) + _numbered(pinout)
+    return np.where((package == "") | (pinout == ""), -1, numbers)
 
 
 def total_cost(parts: tuple[Floats, Floats, Floats, Floats, Floats]) -> Floats:

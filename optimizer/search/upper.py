@@ -27,6 +27,7 @@ from optimizer.search.bounds import (
     roof,
     tightened,
 )
+from optimizer.search.output_noise import output_floor
 from optimizer.search.view import View
 
 Floats = NDArray[np.float64]
@@ -122,14 +123,14 @@ def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Float
 
     Cost and supply current come later.
     """
-    left, c, floor = state
+    left, c, _ = state
     limits = {**goals.musts, **goals.limits}
     scale = margins.PHASE_SCALE
     bounds: dict[str, Callable[[], Floats]] = {
         "bandwidth": lambda: _bandwidth(v, c, goals, level),
         "snr": lambda: margins.raw_margin("snr", snr, limits["snr"]),
         "dynamic_range": lambda: margins.raw_margin(
-            "dynamic_range", _dynamic_range(v, left, floor, goals), limits["dynamic_range"]
+            "dynamic_range", _dynamic_range(v, state, goals), limits["dynamic_range"]
         ),
         "full_scale": lambda: _full_scale(v, left, goals) / limits["full_scale"] - 1.0,
         "phase_margin": lambda: _phase_margin(v, left, c) / scale - limits["phase_margin"] / scale,
@@ -159,8 +160,12 @@ def _full_scale(v: View, left: Narrow, goals: Goals) -> Floats:
     return np.maximum(light / v.responsivity - goals.bench.background, 0.0)
 
 
-def _dynamic_range(v: View, left: Narrow, floor: Floor, goals: Goals) -> Floats:
-    return _decibels(v.responsivity * _full_scale(v, left, goals), floor.dark)
+def _dynamic_range(v: View, state: _State, goals: Goals) -> Floats:
+    """The dynamic range [dB] at most: by light and noise at the input, or by volts at the output."""
+    left, c, floor = state
+    light = _decibels(v.responsivity * _full_scale(v, left, goals), floor.dark)
+    room = np.maximum(left.swing - error_offset(v) - error_slope(v) * left.rf_low, 0.0)
+    return np.fmin(light, _decibels(room, output_floor(v, left, c, goals.bench)))
 
 
 def _slew(v: View, left: Narrow, goals: Goals) -> Floats:
@@ -221,8 +226,18 @@ def _phase_margin(v: View, left: Narrow, c: Coefficients) -> Floats:
     w_low = _crossover(v, (c.g_high, t_high, f_low), False)
     w_high = _crossover(v, (c.g_low, t_low, f_high), True)
     lag = np.arctan(v.dominant * w_low) + np.arctan(v.second * w_low)
-    lag = lag + np.arctan(t_low / c.g_high * w_low) - np.arctan(f_high * w_high)
-    return np.asarray(180.0 - np.degrees(lag))
+    network = np.arctan(f_high * w_high) - np.arctan(t_low / c.g_high * w_low)
+    return np.asarray(180.0 - np.degrees(lag - np.fmin(network, _lead(v, left, c))))
+
+
+def _lead(v: View, left: Narrow, c: Coefficients) -> Floats:
+    """The phase [rad] by which the feedback network can lead, at most.
+
+    With x = Rf Cf w and r = (1 + Cin/Cf)/g it is arctan x - arctan(r x): not above 0 for r >= 1, else
+    largest at x = r^-1/2.
+    """
+    ratio = (1.0 + v.cin_low / left.cf_high) / c.g_high
+    return np.where(ratio >= 1.0, 0.0, np.arctan(0.5 * (1.0 - ratio) / np.sqrt(ratio)))
 
 
 def _crossover(v: View, loop: tuple[Floats, Floats, Floats], above: bool) -> Floats:

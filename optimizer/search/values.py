@@ -18,6 +18,8 @@ from optimizer.series import values as series_values
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Offer = tuple[float, int, frozenset[float]]
+"""Price a piece, catalog row and values of a family."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,30 +167,33 @@ def _collect(parts: Parts, request: Request, span: tuple[float, float]) -> Passi
 def divider_levels(request: Request, resistor_parts: Parts, capacitor_parts: Parts) -> list[Level]:
     """One divider a ratio, the largest pair of it, by rising Vref; cost NaN where no family offers it."""
     divider = request.space.divider
-    usable = _usable(resistor_parts, request)
-    resistor_offers = [offer for offer in _offers(resistor_parts, request) if usable[offer[1]]]
-    capacitor, bypass = _cheapest(_offers(capacitor_parts, request), {divider.bypass})
+    resistor_offers = divider_offers(resistor_parts, request)
+    capacitor, bypass = cheapest_offer(offers(capacitor_parts, request), {divider.bypass})
     spread = np.r_[spreads(resistor_parts, request), np.nan]
     levels = []
     for top, bottom in _ratios(series_values(divider.series, divider.low, divider.high)):
-        piece, row = _cheapest(resistor_offers, {top, bottom})
+        piece, row = cheapest_offer(resistor_offers, {top, bottom})
         levels.append(Level(top, bottom, 2.0 * piece + capacitor, row, bypass, float(spread[row])))
     return levels
 
 
-def _offers(parts: Parts, request: Request) -> list[tuple[float, int, frozenset[float]]]:
-    """Price a piece, catalog row and values of each admitted family, cheapest first (ties: by name)."""
+def divider_offers(parts: Parts, request: Request) -> list[Offer]:
+    """The families that dividers may be bought from, cheapest first."""
+    usable = _usable(parts, request)
+    return [offer for offer in offers(parts, request) if usable[offer[1]]]
+
+
+def offers(parts: Parts, request: Request) -> list[Offer]:
+    """What each admitted family offers, cheapest first (ties: by name)."""
     prices = unit_price(parts.points["price"], request.quantity)
     rows = [row for row in admitted(parts, request.space) if np.isfinite(prices[row])]
     rows.sort(key=lambda row: (prices[row], str(parts.text["family"][row]), str(parts.text["maker"][row])))
     return [(float(prices[row]), row, frozenset(family_values(parts, row).tolist())) for row in rows]
 
 
-def _cheapest(
-    offers: Sequence[tuple[float, int, frozenset[float]]], wanted: AbstractSet[float]
-) -> tuple[float, int]:
+def cheapest_offer(among: Sequence[Offer], wanted: AbstractSet[float]) -> tuple[float, int]:
     """Price and row of the cheapest family that offers all of `wanted`; NaN and -1 where none does."""
-    return next(((price, row) for price, row, values in offers if wanted <= values), (float("nan"), -1))
+    return next(((price, row) for price, row, values in among if wanted <= values), (float("nan"), -1))
 
 
 def _ratios(values: Floats) -> list[tuple[float, float]]:

@@ -12,6 +12,7 @@ from optimizer import margins
 from optimizer.search.corners import Corner, active, blocks, deviations, evaluated
 from optimizer.search.space import Choice, Space
 from optimizer.search.spreads import AXES, half_widths
+from optimizer.vocabulary import VOCABULARY
 
 Floats = NDArray[np.float64]
 
@@ -64,12 +65,18 @@ def _take(space: Space, choice: Choice, rows: NDArray[np.int64], corner: Corner,
     there, deviation = deviations(space, choice.take(rows), (corner,))
     found, figures = _graded(space, there, deviation)
     for name, margin in found.items():
-        worse = margin < best[name][rows]
-        best[name][rows] = np.where(worse, margin, best[name][rows])
+        worse = _level(name, figures[name]) < _level(name, values[name][rows])
+        best[name][rows] = np.minimum(margin, best[name][rows])
         values[name][rows] = np.where(worse, figures[name], values[name][rows])
         for axis in AXES:
             now = signs[name][axis]
             now[rows] = np.where(worse, corner.get(axis, 0.0), now[rows])
+
+
+def _level(name: str, value: Floats) -> Floats:
+    """`value` so that less is worse: it also tells apart what margins do not, which are clipped."""
+    signed = value if VOCABULARY[name].better == "higher" else -value
+    return np.where(np.isnan(value), -np.inf, signed)
 
 
 def _graded(

@@ -16,7 +16,7 @@ import subprocess
 import sys
 import tempfile
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
@@ -35,6 +35,8 @@ BY_MARGIN: dict[Size, float] = {(300, 200): 10.0, (1000, 500): 30.0}
 RATIO: dict[Size, float] = {(1000, 500): 1e6}
 MEMORY = 1e9
 
+CORNERS = "-corners"
+"""What the name of a request ends in that grades another one's corners."""
 LONGEST = 120.0
 """Seconds after which a case is ended."""
 LARGEST = 4 * 2**30
@@ -78,7 +80,7 @@ class Result:
 COLUMNS: tuple[tuple[str, int, Callable[[Case, Measured], str]], ...] = (
     ("size", 9, lambda c, m: f"{c.size[0]}x{c.size[1]}"),
     ("seed", 4, lambda c, m: f"{c.seed}"),
-    ("request", 14, lambda c, m: c.request),
+    ("request", 20, lambda c, m: c.request),
     ("seconds", 7, lambda c, m: f"{m.seconds:.2f}"),
     ("floor", 5, lambda c, m: "-" if c.floor is None else f"{c.floor:g}"),
     ("cpu s", 6, lambda c, m: f"{m.cpu:.2f}"),
@@ -147,7 +149,9 @@ def run_all(
 
 
 def summary(results: Sequence[Result]) -> str:
-    """How many cases kept every floor that applies to them, and the slowest of each request and size."""
+    """How many cases kept every floor that applies to them, the slowest of each request and size, and how
+    much more the corners of a request took than its nominal values in the same run.
+    """
     ended = [r for r in results if r.found is None or r.found.stopped]
     over = [r for r in results if r.found and not r.found.stopped and shortfalls(r.case, r.found)]
     kept = len(results) - len(ended) - len(over)
@@ -160,7 +164,20 @@ def summary(results: Sequence[Result]) -> str:
             key = (result.case.size, result.case.request)
             worst[key] = max(worst.get(key, 0.0), result.found.seconds)
     lines += [f"  slowest {size[0]}x{size[1]} {request}: {s:.2f} s" for (size, request), s in worst.items()]
-    return "\n".join(lines)
+    return "\n".join([*lines, *corners_over_nominal(results)])
+
+
+def corners_over_nominal(results: Sequence[Result]) -> list[str]:
+    """One line for each case that grades the corners of another: processor time over that of the other."""
+    found = {result.case: result.found for result in results if result.found and not result.found.stopped}
+    lines = []
+    for case, cornered in found.items():
+        nominal = found.get(replace(case, request=case.request.removesuffix(CORNERS)))
+        if case.request.endswith(CORNERS) and nominal:
+            size = f"{case.size[0]}x{case.size[1]} seed {case.seed}"
+            times = f"{cornered.cpu / nominal.cpu:.1f} times the processor time of the nominal search"
+            lines.append(f"  {case.request} {size}: {times}")
+    return lines
 
 
 def machine() -> str:

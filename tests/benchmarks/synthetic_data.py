@@ -194,6 +194,15 @@ snr = "40 dB"
 phase_margin = "50 deg"
 peaking = "2 dB"
 """
+_CORNERS = """[tolerance]
+method = "corners"
+gbw = "30 %"
+voltage_noise = "20 %"
+input_capacitance = "20 %"
+diode_capacitance = "20 %"
+responsivity = "10 %"
+"""
+
 REQUESTS = {
     "easy-by-cost": _COMMON + _SINGLE + _EASY,
     "easy-by-margin": _COMMON + _SINGLE + _EASY + '[ranking]\nby = "margin"\n',
@@ -202,4 +211,5 @@ REQUESTS = {
     "fast-by-cost": _COMMON + _SINGLE + _FAST,
     "fast-by-margin": _COMMON + _SINGLE + _FAST + '[ranking]\nby = "margin"\n',
     "nothing": _COMMON + _SINGLE + _NOTHING,
+    "easy-by-cost-corners": _COMMON + _SINGLE + _EASY + _CORNERS,
 }

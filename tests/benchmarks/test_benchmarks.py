@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import tomllib
 from dataclasses import replace
 from pathlib import Path
 
@@ -70,6 +71,34 @@ def test_the_search_benchmark_prints_every_column(capsys: pytest.CaptureFixture[
     assert 0 < int(easy["meet"]) <= 10
     # the process alone, numpy loaded, is over 20 MB: a smaller peak would be in the wrong unit
     assert 20 < float(easy["peak MB"]) < 4000
+
+
+def test_corners_are_compared_with_the_nominal_search_of_the_same_run() -> None:
+    other = replace(BY_COST, seed=2)
+    results = [
+        Result(BY_COST, MEASURED),
+        Result(other, replace(MEASURED, cpu=1.0)),
+        Result(replace(BY_COST, request="easy-by-cost-corners"), replace(MEASURED, cpu=9.75)),
+        Result(replace(other, request="easy-by-cost-corners"), replace(MEASURED, cpu=4.0)),
+    ]
+    assert search.corners_over_nominal(results) == [
+        "  easy-by-cost-corners 1000x500 seed 1: 2.5 times the processor time of the nominal search",
+        "  easy-by-cost-corners 1000x500 seed 2: 4.0 times the processor time of the nominal search",
+    ]
+    assert search.corners_over_nominal(results[2:]) == []
+    stopped = Result(results[0].case, replace(MEASURED, stopped="over 120 s"))
+    assert search.corners_over_nominal([stopped, results[2]]) == []
+    assert search.summary(results).endswith("4.0 times the processor time of the nominal search")
+
+
+def test_the_corner_case_has_its_nominal_case_and_five_spreads() -> None:
+    cornered = [name for name in REQUESTS if name.endswith(search.CORNERS)]
+    assert cornered
+    for name in cornered:
+        nominal = REQUESTS[name.removesuffix(search.CORNERS)]
+        table = tomllib.loads(REQUESTS[name].removeprefix(nominal))["tolerance"]
+        assert table.pop("method") == "corners"
+        assert len(table) == 5
 
 
 def test_two_workers_find_as_much(capsys: pytest.CaptureFixture[str]) -> None:

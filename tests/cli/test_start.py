@@ -12,6 +12,7 @@ from optimizer.cli import main
 from optimizer.cli.start import STARTER
 from optimizer.record import read
 from optimizer.request import read_request
+from optimizer.request.types import SPREADS
 from optimizer.study import load
 
 
@@ -155,3 +156,24 @@ def test_the_order_of_catalog_rows_and_the_workers_do_not_matter(
         data["inputs"] = [(entry["file"], entry["rows"]) for entry in data["inputs"]]
         del data["created"]
     assert first == second
+
+
+def test_the_tolerances_that_it_shows_are_understood_and_leave_something(tmp_path: Path) -> None:
+    """A newcomer may take the marks away from the lines of [tolerance] too."""
+    main(["start", str(tmp_path)])
+    path = tmp_path / "request.toml"
+    text = path.read_text()
+    shown = text[text.index("# [tolerance]") : text.index("[catalogs]")]
+    path.write_text(text.replace(shown, re.sub(r"^# ", "", shown, flags=re.MULTILINE)))
+    tolerance = read_request(path).tolerance
+    assert (tolerance.method, tolerance.yield_) == ("corners", 0.99)
+    assert {name: spread for name, spread in tolerance.spreads.items() if spread} == {
+        "gbw": 0.2,
+        "voltage_noise": 0.1,
+        "input_capacitance": 0.2,
+        "diode_capacitance": 0.1,
+        "responsivity": 0.05,
+    }
+    for name in SPREADS:
+        assert name in shown
+    assert main(["shortlist", str(path), "--show", "1", "--quiet"]) == 0

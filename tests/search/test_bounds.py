@@ -21,7 +21,6 @@ from optimizer.search import view as views
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes
 from optimizer.search.plain import Judged, judge
-from optimizer.search.roles import PASSES
 from optimizer.search.space import Space
 from optimizer.search.view import Index
 from tests.search.instances import KINDS, drawn, sampled, varied, with_targets
@@ -194,7 +193,10 @@ MUTANTS = {
     "Cf from e1 10 % too low": scaled(bounds, "_cf_from_e1", 0.9),
     "noise at the weakest light 3 % too loud": louder("weak", 1.06),
     "noise in the dark 3 % too loud": louder("dark", 1.06),
-    "flicker four times too loud": scaled(bounds, "_flicker_floor", 4.0),
+    "flicker four times too loud": scaled(bounds, "flicker_flat", 4.0),
+    "flicker of fast noise half as loud again": scaled(bounds, "flicker_span", 1.5),
+    "noise at the output 3 % too loud": scaled(upper, "output_floor", 1.06),
+    "lead of the network 1 deg too small": shifted(upper, "_lead", -0.0175),
     "phase margin 1 deg too low": shifted(upper, "_phase_margin", -1.0),
     "crossover half as high again": scaled(upper, "_crossover", 1.5),
     "peaking 0.05 dB too high": shifted(upper, "_peaking", 0.05),

@@ -16,7 +16,8 @@ from optimizer import margins, statistics
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import WIRINGS, Ambient, Tolerance
 from optimizer.search import montecarlo
-from optimizer.search.montecarlo import Simulated, monte_carlo, samples
+from optimizer.search.montecarlo import monte_carlo, samples
+from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space, build
 from optimizer.search.spreads import AXES, half_widths, moved
 from optimizer.vocabulary import VOCABULARY

@@ -126,20 +126,30 @@ def _pair(space: spaces.Space, catalogs: Catalogs, o: int, d: int) -> tuple[str,
     if min(alone)[0] < PASSES:
         code, column = min(alone, key=lambda one: one[0])
         return CHECKS[code] + (f":{column}" if column else ""), []
-    reach, rows = -1, []
-    for choice in plain.every_choice(space, o, d):
-        with np.errstate(all="ignore"):
-            judged = plain.judge(space, choice, "cost")
-            figures = evaluate(space.bench, spaces.settings(space, choice)).figures
-        reach = max(reach, int(judged.reach.max()))
-        table = margins.margins(figures, space.limits)
-        for i in np.flatnonzero(judged.reach == PASSES):
-            one = {name: float(figures[name][i]) for name in ("cost", "snr", "supply_current")}
-            rows.append(_row(space, catalogs, choice, int(i), (one, tuple(table[i].tolist()))))
+    reach = max(int(plain.judge(space, c, "cost").reach.max()) for c in plain.every_choice(space, o, d))
+    rows, _ = rows_of(space, catalogs, (o, d))
     if reach == PASSES:
         return "", rows
     column = _joint_column(space, o, d) if CHECKS[reach] == "missing" else ""
     return CHECKS[reach] + (f":{column}" if column else ""), []
+
+
+def rows_of(space: spaces.Space, catalogs: Catalogs, pair: tuple[int, int]) -> tuple[list[Row], list[int]]:
+    """The eligible settings of one pair, and the place of each among all its settings."""
+    rows: list[Row] = []
+    places: list[int] = []
+    before = 0
+    for choice in plain.every_choice(space, *pair):
+        with np.errstate(all="ignore"):
+            judged = plain.judge(space, choice, "cost")
+            figures = evaluate(space.bench, spaces.settings(space, choice)).figures
+        table = margins.margins(figures, space.limits)
+        for i in np.flatnonzero(judged.reach == PASSES):
+            one = {name: float(figures[name][i]) for name in ("cost", "snr", "supply_current")}
+            rows.append(_row(space, catalogs, choice, int(i), (one, tuple(table[i].tolist()))))
+            places.append(before + int(i))
+        before += judged.reach.size
+    return rows, places
 
 
 def _column(verdicts: Verdicts, part: int) -> str:

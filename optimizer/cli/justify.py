@@ -1,0 +1,43 @@
+"""`luxsift justify`: a record, its study as it is now, and the page on one of its candidates."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from pathlib import Path
+
+from optimizer.cli.options.justify import justify_options
+from optimizer.cli.output import write
+from optimizer.cli.outputs import input_files, output_problems
+from optimizer.cli.reopened import reopened
+from optimizer.errors import InputError, Problem, clean
+
+DONE = 0
+
+
+def justify(parsed: argparse.Namespace) -> int:
+    """Write the page that `parsed` asks for; raises InputError, OutputError, MissingExtraError."""
+    options, problems = justify_options(parsed)
+    output = [("--output", options.output)]
+    _refuse([*problems, *output_problems(output, [Path(options.record)])])
+    from optimizer.report import page
+
+    if not options.markdown:
+        page.check_installed()
+    from optimizer.record import write_text
+    from optimizer.review.dossier import gather, place_of
+
+    found = reopened(options.record, options.request)
+    request = found.study.request
+    _refuse(output_problems(output, [request.path, *input_files(request)]))
+    dossier = gather(found, place_of(options.record, found, options.output), options.rank)
+    composed = page.compose(dossier)
+    write_text(options.output, page.to_markdown(composed) if options.markdown else page.to_html(composed))
+    for change in found.changed:
+        write(sys.stderr, f"luxsift: {clean(change.file)} is not what it was when the record was made\n")
+    return DONE
+
+
+def _refuse(problems: list[Problem]) -> None:
+    if problems:
+        raise InputError(problems)

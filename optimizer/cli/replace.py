@@ -1,0 +1,83 @@
+"""`luxsift replace`: a record, its catalogs as they are now, and what takes the place of a part."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from optimizer.cli.messages import StudyError
+from optimizer.cli.options.replace import ReplaceOptions, replace_options
+from optimizer.cli.output import write, write_lines
+from optimizer.cli.outputs import input_files, output_problems
+from optimizer.cli.reopened import reopened
+from optimizer.cli.steps import steps
+from optimizer.errors import InputError, OutputError, Problem
+
+if TYPE_CHECKING:
+    from optimizer.record import Record
+    from optimizer.review.reopen import Reopened
+    from optimizer.review.replacement import Replacement
+
+MEETS, NOTHING_MEETS = 0, 1
+
+
+def replace(parsed: argparse.Namespace) -> int:
+    """Find and print the substitutes that `parsed` asks for; raises InputError and OutputError."""
+    options, problems = replace_options(parsed)
+    found = _reopened(options, problems)
+    from optimizer.review.reopen import chosen_of
+    from optimizer.review.replacement import record_of, replacement
+    from optimizer.review.withdrawal import Wish
+
+    old = chosen_of(found.record, options.rank)
+    with steps("kinds of change", total=4) as step:
+        answer = replacement(found, old, Wish(options.gone, options.keep), show=options.show, tell=step)
+    record = record_of(answer)
+    failure = _save(record, options)
+    _print(answer, record, options)
+    if failure is not None:
+        raise failure
+    return MEETS if record.candidates else NOTHING_MEETS
+
+
+def _reopened(options: ReplaceOptions, problems: list[Problem]) -> Reopened:
+    """The record with its study; raises every problem of both and of the options at once."""
+    found, place = None, None
+    inputs = [Path(options.record)]
+    try:
+        found = reopened(options.record, options.request)
+        inputs += [found.study.request.path, *input_files(found.study.request)]
+    except InputError as error:
+        problems += error.problems
+        place = error.request if isinstance(error, StudyError) else None
+    problems += output_problems([("--save", options.save)], inputs)
+    if problems and place is not None:
+        raise StudyError(problems, place)
+    if problems or found is None:
+        raise InputError(problems)
+    return found
+
+
+def _save(record: Record, options: ReplaceOptions) -> OutputError | None:
+    """Write the record where it is asked for; the error comes back, so that the answer is still printed."""
+    from optimizer import record as records
+    from optimizer.record.files import to_json
+
+    try:
+        if options.piped:
+            write(sys.stdout, to_json(record))
+        elif options.save is not None:
+            records.write(record, options.save)
+    except OutputError as error:
+        return error
+    return None
+
+
+def _print(answer: Replacement, record: Record, options: ReplaceOptions) -> None:
+    from optimizer.report.replacement import replacement_lines
+    from optimizer.report.terminal import width_of
+
+    stream = sys.stderr if options.piped else sys.stdout
+    write_lines(stream, replacement_lines(answer, record, width_of(stream)))

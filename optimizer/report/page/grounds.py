@@ -1,0 +1,99 @@
+"""What the decision stands on: assumptions, cautions, what is left out, inputs, and the way to repeat it."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from shlex import quote
+from typing import Any
+
+from optimizer.errors import clean, printable
+from optimizer.report.cautions import DEFER, DUTIES, SOURCES, band, left_out
+from optimizer.report.notes import coverage, filled
+from optimizer.report.page.blocks import Block, Code, Part, Section, Table, Words, cells
+from optimizer.report.words import count
+from optimizer.review.dossier import Dossier
+from optimizer.review.reopen import Changed
+from optimizer.vocabulary import COLUMNS
+
+
+def limits(dossier: Dossier) -> Section:
+    """The section on assumptions, on what the model leaves out, and on cautions."""
+    request = dossier.request
+    texts = [text for text in (_sentence(SOURCES), band(request)) if text]
+    duties = Table("Who decides, by where the receiver is used", ("used", "standard"), _duties())
+    parts = (
+        Part("Assumed where the catalog leaves a blank", tuple(_assumed(dossier.candidate, request))),
+        Part("Not in the model", (Words(_sentence(left_out(request).removeprefix("Not in the model: "))),)),
+        Part("Cautions", (Words(" ".join(texts), "caution", "Light"), duties, Words(DEFER))),
+    )
+    return Section("limits", "Assumptions, limits and cautions", (), parts)
+
+
+def _sentence(text: str) -> str:
+    return text[0].upper() + text[1:]
+
+
+def _duties() -> tuple[Any, ...]:
+    return tuple(cells(*pair) for pair in DUTIES)
+
+
+def _assumed(row: Mapping[str, Any], request: Mapping[str, Any]) -> Iterator[Block]:
+    names = row["assumed"]
+    if names:
+        rows = tuple(
+            cells(clean(name), filled(name, request).removeprefix(" = ") or "-", _meaning(name))
+            for name in names
+        )
+        yield Table(
+            "Values that no catalog states for these parts", ("column", "taken as", "what it is"), rows
+        )
+    else:
+        yield Words("Nothing: every value that these figures use is stated in the catalogs.")
+    if row.get("linear_model"):
+        figures = " and ".join(name.replace("_", " ") for name in row["linear_model"])
+        text = f"The dark output rests on the lower rail; {figures} are those of the linear model."
+        yield Words(text, "note")
+
+
+def _meaning(name: str) -> str:
+    role, _, column = name.partition(".")
+    known = COLUMNS.get(f"{role}s", {}).get(column)
+    return known.meaning if known else ""
+
+
+def sources(dossier: Dossier) -> Section:
+    """The section on the inputs and on how to repeat the whole."""
+    again = Part("To repeat it", (Words("Typed in the same folder:"), Code(tuple(_commands(dossier)))))
+    searched = Part("What the search covered", (Words(coverage(dossier.data)),))
+    return Section("sources", "Inputs and how to repeat it", (_inputs(dossier),), (again, searched))
+
+
+def _inputs(dossier: Dossier) -> Table:
+    changed = {change.file: change for change in dossier.changed}
+    rows = [
+        cells(clean(entry["file"]), _rows(entry), entry["sha256"], _state(changed.get(entry["file"])))
+        for entry in dossier.data["inputs"]
+    ]
+    known = {entry["file"] for entry in dossier.data["inputs"]}
+    rows += [cells(clean(file), "-", "-", "new since") for file in changed if file not in known]
+    headings = ("file", "rows", "SHA-256 when the record was made", "now")
+    return Table("The files that the search read", headings, tuple(rows), numbers=frozenset({1}))
+
+
+def _rows(entry: Mapping[str, Any]) -> str:
+    return count(entry["rows"]) if entry.get("rows") else "-"
+
+
+def _state(change: Changed | None) -> str:
+    if change is None:
+        return "unchanged"
+    return "changed since" if change.now else "gone since"
+
+
+def _commands(dossier: Dossier) -> Iterator[str]:
+    place, ranking = dossier.place, dossier.request["ranking"]
+    search = f"luxsift shortlist {quote(place.request)} --by {ranking['by']} --show {ranking['show']}"
+    if "replaces" not in dossier.data:  # else the record of luxsift replace, which does not name its own
+        yield printable(f"{search} --save {quote(place.record)}")
+    rank = dossier.candidate["rank"]
+    yield printable(f"luxsift justify {quote(place.record)} --rank {rank} -o {quote(place.output)}")

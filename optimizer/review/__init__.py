@@ -1,0 +1,1 @@
+"""A saved record taken up again, beside its request and catalogs as they are now."""

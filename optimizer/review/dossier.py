@@ -1,0 +1,161 @@
+"""Everything that a page about one candidate shows, gathered as data: no words, no drawing.
+
+Entry point: `gather`. What is computed again here must agree with the record, or nothing is given.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator, Mapping
+from dataclasses import asdict, dataclass
+from pathlib import Path
+from typing import Any
+
+from optimizer.errors import InputError, Problem
+from optimizer.record import Record
+from optimizer.review.findings import Findings, Floats
+from optimizer.review.reopen import Changed, Reopened, chosen_of
+from optimizer.search import assemble, dividers
+from optimizer.search.examine import Glass, examine
+from optimizer.search.locate import NotFound, locate
+from optimizer.search.montecarlo import samples
+from optimizer.search.query import whole
+from optimizer.search.space import Choice, Space
+from optimizer.study import Study
+
+AGREES = 1e-7  # relative; both sides were rounded to 9 digits
+AGAIN = "run luxsift shortlist again and take its new record, or put the files back as they were"
+
+
+@dataclass(frozen=True, slots=True)
+class Place:
+    """Where the record and its request are, and where the page goes, each as typed."""
+
+    record: str
+    request: str
+    output: str
+
+
+@dataclass(frozen=True, slots=True)
+class Dossier:
+    """One candidate of a record with all that a page about it shows.
+
+    `changed` are the input files that differ from the record's although the candidate does not.
+    """
+
+    record: Record
+    study: Study
+    changed: tuple[Changed, ...]
+    candidate: Mapping[str, Any]
+    glass: Glass
+    findings: Findings
+    place: Place
+
+    @property
+    def data(self) -> Mapping[str, Any]:
+        """The record's document."""
+        return self.record.data
+
+    @property
+    def request(self) -> Mapping[str, Any]:
+        """The request as it was in force."""
+        asked: Mapping[str, Any] = self.record.data["request"]
+        return asked
+
+
+def gather(reopened: Reopened, place: Place, rank: int | None = None) -> Dossier:
+    """The dossier of the candidate with `rank`, or of the chosen one.
+
+    Raises InputError where there is none, where what it chooses is not in the catalogs any more, and
+    where its figures are not those of the record any more.
+    """
+    candidate = chosen_of(reopened.record, rank)
+    study = reopened.study
+    space = dividers.recorded(whole(study.request, study.catalogs), study.catalogs, candidate)
+    choice = _located(space, reopened, candidate, place)
+    _refuse_other_figures(space, choice, reopened, candidate, place)
+    return Dossier(
+        record=reopened.record,
+        study=study,
+        changed=reopened.changed,
+        candidate=candidate,
+        glass=examine(space, choice),
+        findings=Findings(drawn=_draws(space, reopened, choice, candidate)),
+        place=place,
+    )
+
+
+def _located(space: Space, reopened: Reopened, candidate: Mapping[str, Any], place: Place) -> Choice:
+    try:
+        return locate(space, reopened.study.catalogs, candidate)
+    except NotFound as lack:
+        problems = [
+            Problem(place.record, None, f"row {candidate['rank']}, {position}", None, words, AGAIN)
+            for position, words in lack.missing
+        ]
+        raise InputError([*problems, *_changed_problems(reopened)]) from None
+
+
+def _refuse_other_figures(
+    space: Space, choice: Choice, reopened: Reopened, candidate: Mapping[str, Any], place: Place
+) -> None:
+    """Raise InputError with every figure, limit and margin of `candidate` that is not what it was."""
+    (now,) = assemble.candidates(space, reopened.study.catalogs, choice)
+    differing = list(differences(candidate, asdict(now)))
+    if not differing:
+        return
+    problems = [
+        Problem(
+            place.record, None, f"row {candidate['rank']}, {name}", _said(then), f"it is {_said(found)} now"
+        )
+        for name, then, found in differing
+    ]
+    reason = "its figures do not follow from its request and catalogs as they are now"
+    problems.append(Problem(place.record, None, None, None, reason, AGAIN))
+    raise InputError([*problems, *_changed_problems(reopened)])
+
+
+def differences(
+    then: Mapping[str, Any], now: Mapping[str, Any]
+) -> Iterator[tuple[str, float | None, float | None]]:
+    """Names and both values of the figures, limits and margins in which two candidates differ."""
+    for name, value in now["figures"].items():
+        if not _agree(then["figures"].get(name), value):
+            yield name, then["figures"].get(name), value
+    before = {target["name"]: target for target in then["targets"]}
+    after = {target["name"]: target for target in now["targets"]}
+    for name in dict.fromkeys((*before, *after)):
+        for part in ("limit", "margin"):
+            was, found = (side.get(name, {}).get(part) for side in (before, after))
+            if not _agree(was, found):
+                yield f"{part} of {name}", was, found
+
+
+def _agree(then: float | None, now: float | None) -> bool:
+    if then is None or now is None:
+        return then is now
+    return math.isclose(then, now, rel_tol=AGREES, abs_tol=AGREES * 1e-9)
+
+
+def _said(value: float | None) -> str:
+    return "no value" if value is None else f"{value:.9g}"
+
+
+def _changed_problems(reopened: Reopened) -> Iterator[Problem]:
+    for change in reopened.changed:
+        what = "changed" if change.then and change.now else "new" if change.now else "gone"
+        yield Problem(change.file, None, None, None, f"this input is {what} since the record was made")
+
+
+def _draws(
+    space: Space, reopened: Reopened, choice: Choice, candidate: Mapping[str, Any]
+) -> Mapping[str, Floats]:
+    """Each target in the draws that the record's yield counts; empty where it counts none."""
+    if "yield" not in candidate:
+        return {}
+    return samples(space, reopened.study.catalogs, choice)
+
+
+def place_of(record: str | Path, reopened: Reopened, output: str) -> Place:
+    """Where everything is, the request as the study was read from."""
+    return Place(str(record), reopened.study.request.path.as_posix(), output)

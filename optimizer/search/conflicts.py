@@ -1,0 +1,166 @@
+"""Why nothing meets a request: the smallest sets of targets that cannot hold together, and the least
+relaxation of each single target that lets something through. Eligibility is always kept.
+
+A set of targets that some setting meets is met in every part of it, one that nothing meets in no set
+that holds it: so of the sets only few have to be searched. Sets are tried from the smallest up; one
+that fails then is minimal. A search ends at the first setting found, or proves that there is none.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+from itertools import combinations
+
+import numpy as np
+
+from optimizer import margins
+from optimizer.search import assemble, steps
+from optimizer.search.feed import pairs_of
+from optimizer.search.ground import Ground, first, under, value_of
+from optimizer.search.hunt import Rules
+from optimizer.search.result import SOURCES, Candidate
+from optimizer.search.space import Choice
+from optimizer.search.valued import valued
+
+MOST_SETS = 12
+"""Conflicting sets that are looked for, at most; the smallest come first."""
+
+Names = frozenset[str]
+Witness = Callable[[Names], Sequence[Names]]
+"""Sets of targets that some setting is known to meet, one of them as asked; empty where nothing does."""
+
+
+@dataclass(frozen=True, slots=True)
+class Relaxation:
+    """The least relaxation of one target, alone, that lets something through.
+
+    `limit` is what is asked, `value` the best that can be had with all else met, `margin` that of
+    `value` against `limit` (not cut at -1). All are None, but `limit`, where not even dropping it helps.
+    """
+
+    target: str
+    limit: float
+    value: float | None = None
+    margin: float | None = None
+    candidate: Candidate | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Conflicts:
+    """Why nothing meets: `sets` of targets that cannot hold together, minimal, the smallest first.
+
+    `complete` is False where there may be more sets than were looked for; all smaller than the last are
+    there. Nothing is `eligible` where no setting passes the checks even without targets.
+    """
+
+    sets: tuple[tuple[str, ...], ...]
+    relaxations: tuple[Relaxation, ...]
+    complete: bool = True
+    eligible: bool = True
+
+
+def conflicts(ground: Ground, limits: Mapping[str, float]) -> tuple[Conflicts, tuple[Choice, ...]]:
+    """Why nothing on `ground` meets `limits`; and the settings of the relaxations that there are."""
+    eased = [_relaxation(ground, limits, name) for name in limits]
+    choices = tuple(choice for _, choice in eased if choice is not None)
+    known = [_met_by(ground, choice, limits) for choice in choices]
+    if ground.space.sources > 1:
+        known += [frozenset({*limits, SOURCES}) - {one.target} for one, choice in eased if choice is not None]
+    names = (*limits, SOURCES) if ground.space.sources > 1 else tuple(limits)
+    sets, complete = minimal(names, _oracle(ground, limits), known)
+    eligible = sets != ((),)
+    found = Conflicts(sets if eligible else (), tuple(one for one, _ in eased), complete, eligible)
+    return found, choices
+
+
+def minimal(
+    names: Sequence[str], witness: Witness, known: Sequence[Names], most: int = MOST_SETS
+) -> tuple[tuple[tuple[str, ...], ...], bool]:
+    """The minimal sets of `names` that `witness` finds nothing for, and whether they are all.
+
+    `known` are sets that can be met. The empty set is the only one where even that cannot be.
+    """
+    met, failed = list(known), list[Names]()
+    for tried in _by_size(names):
+        if any(tried <= one for one in met) or any(one <= tried for one in failed):
+            continue
+        if len(failed) == most:
+            return _in_order(failed, names), False
+        found = witness(tried)
+        met += found
+        if not found:
+            failed.append(tried)
+    return _in_order(failed, names), True
+
+
+def _by_size(names: Sequence[str]) -> Iterator[Names]:
+    for size in range(len(names) + 1):
+        yield from map(frozenset, combinations(names, size))
+
+
+def _in_order(sets: Sequence[Names], names: Sequence[str]) -> tuple[tuple[str, ...], ...]:
+    return tuple(tuple(name for name in names if name in one) for one in sets)
+
+
+def _oracle(ground: Ground, limits: Mapping[str, float]) -> Witness:
+    """Look for any setting that meets some of `limits` (and the sources, where those are among them)."""
+    alone = _unsourced(ground)
+
+    def witness(asked: Names) -> Sequence[Names]:
+        where = ground if SOURCES in asked else alone
+        some = {name: limit for name, limit in limits.items() if name in asked}
+        found = first(where, under(where, some), Rules("cost", 1, 0.0), any_will_do=True)
+        if not found.choice.opamp.size:
+            return ()
+        return (asked, _met_by(ground, found.choice, limits))
+
+    return witness
+
+
+def _unsourced(ground: Ground) -> Ground:
+    """`ground` where one source is enough."""
+    if ground.space.sources < 2:
+        return ground
+    asked = replace(ground.asked, space=replace(ground.space, sources=1))
+    asked = replace(asked, index=replace(asked.index, space=asked.space))
+    return replace(ground, asked=asked, pairs=pairs_of(asked.index, *asked.eligible, by="cost"))
+
+
+def _met_by(ground: Ground, choice: Choice, limits: Mapping[str, float]) -> Names:
+    """The targets that one eligible setting meets."""
+    values = valued(ground.space, choice, tuple(limits)).values[0]
+    pairs = zip(limits.items(), values.tolist(), strict=True)
+    return frozenset(name for (name, limit), v in pairs if margins.margin(name, np.array(v), limit) >= 0.0)
+
+
+def _relaxation(ground: Ground, limits: Mapping[str, float], name: str) -> tuple[Relaxation, Choice | None]:
+    """The least relaxation of target `name`, and its setting.
+
+    A hunt gives the best value only up to what margins tell apart, so another asks for a better one.
+    """
+    limit, best = limits[name], None
+    for start, least in ((steps.far_below(name, limit), 0.0), (steps.loosest(name), -1.0)):
+        found = _eased(ground, limits, (name, start), least)
+        if found is not None:
+            break
+    while found is not None:
+        best, value = found
+        against = steps.stricter(name, value)
+        found = None if against is None else _eased(ground, limits, (name, against), 0.0)
+    if best is None:
+        return Relaxation(name, limit), None
+    candidate = assemble.candidates(ground.space, ground.catalogs, best)[0]
+    margin = float(np.round(margins.raw_margin(name, np.array(value), limit), 9))
+    return Relaxation(name, limit, value, margin, candidate), best
+
+
+def _eased(
+    ground: Ground, limits: Mapping[str, float], target: tuple[str, float], least: float
+) -> tuple[Choice, float] | None:
+    """The setting with the best value of a target (name, limit) at a margin of `least`, the others met."""
+    name, against = target
+    rest = {other: limit for other, limit in limits.items() if other != name}
+    asked = under(ground, {name: against}, musts=rest)
+    found = first(ground, asked, Rules("margin", 1, least))
+    return (found.choice, value_of(asked, found.choice, name)) if found.cost.size else None

@@ -1,0 +1,1 @@
+"""One candidate under the glass: what its curves, noise, levels and step are made of, part by part."""
