@@ -53,7 +53,7 @@ def blocks() -> list[Block]:
 
 def acted_out(folder: Path) -> Iterator[tuple[Block, Block]]:
     """Each block and what it should be: itself, with the outputs that the program gives in `folder`."""
-    environment = _prepare(folder)
+    environment = prepare(folder)
     printed = ""
     for block in blocks():
         shown = block.text
@@ -61,7 +61,7 @@ def acted_out(folder: Path) -> Iterator[tuple[Block, Block]]:
             (folder / block.file).parent.mkdir(exist_ok=True)
             (folder / block.file).write_text(block.text, "utf-8")
         elif block.kind == "console":
-            shown = _session(block, folder, environment)
+            shown = session(block.commands, folder, environment)
         elif block.kind == "python":
             printed = _run([sys.executable, "-c", block.text], folder, environment)
         elif block.kind == "text":
@@ -69,7 +69,7 @@ def acted_out(folder: Path) -> Iterator[tuple[Block, Block]]:
         yield block, replace(block, text=shown)
 
 
-def _prepare(folder: Path) -> dict[str, str]:
+def prepare(folder: Path) -> dict[str, str]:
     """Lay out what a checkout holds, with a `luxsift` that runs this checkout; the environment to use."""
     for name in ("examples", "catalogs"):
         shutil.copytree(ROOT / name, folder / name)
@@ -87,13 +87,13 @@ def _prepare(folder: Path) -> dict[str, str]:
     }
 
 
-def _session(block: Block, folder: Path, environment: dict[str, str]) -> str:
+def session(commands: list[str], folder: Path, environment: dict[str, str]) -> str:
     """The commands of a block in one shell, each with what it prints on either stream."""
     script = "exec 2>&1\n" + "".join(
-        f"{command}\nstatus=$?; echo '{END}'; (exit $status)\n" for command in block.commands
+        f"{command}\nstatus=$?; echo '{END}'; (exit $status)\n" for command in commands
     )
     outputs = _run(["bash", "-c", script], folder, environment).split(f"{END}\n")[:-1]
-    pairs = zip(block.commands, outputs, strict=True)
+    pairs = zip(commands, outputs, strict=True)
     return "".join(f"{PROMPT}{command}\n{masked(output)}" for command, output in pairs)
 
 

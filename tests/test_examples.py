@@ -19,7 +19,7 @@ from tests.masking import WIDTH, masked
 
 ROOT = Path(__file__).parents[1]
 EXAMPLES = ROOT / "examples"
-CASES = sorted(entry.name for entry in EXAMPLES.iterdir() if entry.is_dir())
+CASES = sorted(entry.name for entry in EXAMPLES.iterdir() if (entry / "request.toml").is_file())
 NOTHING_MEETS = "night-turbidity"
 
 

@@ -40,6 +40,7 @@ ROOMS: dict[str, set[str]] = {
         "physics", "figures", "margins", "catalog", "request", "quantities", "series", "statistics",
         "vocabulary",
     },
+    "board": {"search", "study", "request", "catalog", "quantities"},
     "record": {"search", "study", "request", "quantities", "vocabulary"},
     "review": {
         "search", "study", "record", "request", "figures", "margins", "catalog", "quantities", "vocabulary",
@@ -58,6 +59,7 @@ OUTSIDE: dict[str, set[str]] = {
     "margins": {"numpy"},
     "statistics": {"numpy", "scipy"},
     "search": {"numpy", "scipy"},
+    "board": {"numpy", "pulp", "highspy"},
     "record": {"pandas"},
     "review": {"numpy"},
     "report": {"rich", "numpy", "matplotlib", "jinja2", "markupsafe"},

@@ -10,6 +10,7 @@ from optimizer.cli.options.justify import justify_options
 from optimizer.cli.output import write
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.reopened import reopened
+from optimizer.cli.steps import steps
 from optimizer.errors import InputError, Problem, clean
 
 DONE = 0
@@ -26,11 +27,16 @@ def justify(parsed: argparse.Namespace) -> int:
         page.check_installed()
     from optimizer.record import write_text
     from optimizer.review.dossier import gather, place_of
+    from optimizer.review.weighing import steps as name_steps
+    from optimizer.review.weighing import unknown_parts, weigh
 
     found = reopened(options.record, options.request)
     request = found.study.request
-    _refuse(output_problems(output, [request.path, *input_files(request)]))
+    unknown = unknown_parts(found.study.catalogs, options.compare)
+    _refuse([*output_problems(output, [request.path, *input_files(request)]), *unknown])
     dossier = gather(found, place_of(options.record, found, options.output), options.rank)
+    with steps("steps", len(name_steps(options.compare))) as tell:
+        dossier = weigh(dossier, options.compare, tell)
     composed = page.compose(dossier)
     write_text(options.output, page.to_markdown(composed) if options.markdown else page.to_html(composed))
     for change in found.changed:

@@ -30,8 +30,8 @@ class Watch:
 
 
 @contextmanager
-def watch(*, quiet: bool) -> Iterator[Watch]:
-    """A watch that shows progress on standard error where a person sees it."""
+def watch(*, quiet: bool, what: str = "pairs") -> Iterator[Watch]:
+    """A watch that shows progress, of `what` there is to decide, on standard error where a person sees it."""
     if quiet or not sys.stderr.isatty() or os.environ.get("TERM") == "dumb":
         yield Watch()
         return
@@ -41,7 +41,7 @@ def watch(*, quiet: bool) -> Iterator[Watch]:
 
     columns = (
         BarColumn(bar_width=20),
-        TextColumn("{task.completed:,.0f} of {task.total:,.0f} pairs decided", markup=False),
+        TextColumn(f"{{task.completed:,.0f}} of {{task.total:,.0f}} {what} decided", markup=False),
         TimeElapsedColumn(),
         TextColumn("{task.fields[best]}", markup=False),
     )

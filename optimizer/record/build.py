@@ -42,10 +42,11 @@ def build(study: Study, outcome: Outcome, chosen: int | None = 1) -> Record:
         "left_out": _left_out(study),
         "search": _search(outcome),
         "candidates": [
-            _candidate(c, rank) | _yield(c.simulated, wanted) for rank, c in enumerate(outcome.candidates, 1)
+            candidate_row(c, rank) | _yield(c.simulated, wanted)
+            for rank, c in enumerate(outcome.candidates, 1)
         ],
         "near_misses": [
-            _candidate(c, rank) | {"missed": list(c.missed)}
+            candidate_row(c, rank) | {"missed": list(c.missed)}
             for rank, c in enumerate(outcome.near_misses, shown + 1)
         ],
     }
@@ -108,7 +109,8 @@ def _search(outcome: Outcome) -> dict[str, Any]:
     }
 
 
-def _candidate(candidate: Candidate, rank: int) -> dict[str, Any]:
+def candidate_row(candidate: Candidate, rank: int) -> dict[str, Any]:
+    """A candidate as a row of a record, its yield left out; see `plain` for JSON's own types."""
     return {
         "rank": rank,
         "photodiode": candidate.photodiode,

@@ -17,7 +17,6 @@ from optimizer.report.pinned import pinned
 from optimizer.report.words import beside, figure, margin_words, side, told_apart
 from optimizer.report.yields import yield_words
 
-
 LISTED = 4
 """Second sources that are named; the record has all."""
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import re
+from collections.abc import Iterable
 from io import StringIO
 from pathlib import Path
 from typing import Any
@@ -27,13 +28,20 @@ def csv_text(record: Record) -> str:
     as a formula is led by an apostrophe.
     """
     names = columns(record.data["request"])
+    groups = (("yes", record.candidates), ("no", record.near_misses))
+    rows = ((meets, flat(row)) for meets, group in groups for row in group)
+    return table_text(
+        ("meets", *names), ((meets, *(values.get(name) for name in names)) for meets, values in rows)
+    )
+
+
+def table_text(names: Iterable[str], rows: Iterable[Iterable[Any]]) -> str:
+    """A heading and rows as CSV text; text that a spreadsheet would run as a formula is neutralised."""
     buffer = StringIO(newline="")
     writer = csv.writer(buffer, quoting=csv.QUOTE_NONNUMERIC, lineterminator="\r\n")
-    writer.writerow(("meets", *names))
-    for meets, rows in (("yes", record.candidates), ("no", record.near_misses)):
-        for row in rows:
-            values = flat(row)
-            writer.writerow((meets, *(_cell(values.get(name)) for name in names)))
+    writer.writerow(tuple(names))
+    for row in rows:
+        writer.writerow(tuple(_cell(value) for value in row))
     return buffer.getvalue()
 
 

@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-import csv
 from collections.abc import Iterator, Sequence
-from io import StringIO
 
 from rich.text import Text
 
 from optimizer.errors import clean
-from optimizer.report.csv_file import neutral
+from optimizer.report.csv_file import table_text
 from optimizer.report.layout import Column, fit, lines
 from optimizer.report.paragraphs import paragraph, styled
 from optimizer.report.words import count, several
@@ -28,16 +26,19 @@ USED = {
 ALERT = "!"
 NAMED = 4  # records of one part; beyond, they are only counted
 BAD = "bold red"
+WIDE = 72  # columns from which the status has a column of its own
 ORDER = (
     "Worst first: parts without a substitute, then by status (no longer in the catalogs, obsolete, "
     "last-time-buy, not for new designs), short of stock, fewest drop-ins, fewest by values, fewest makers, "
     "longest lead time."
 )
-COUNTED = (
+SUBSTITUTES = (
     "drop-in: other parts that meet every target in the same package and pinout with nothing else changed; "
-    "values: others that do with other values of Rf, Cf or the divider. With several records only those "
-    "count that serve all of them. Makers: those that offer the part or a drop-in for it."
+    "values: others that do with other values of Rf, Cf or the divider. "
 )
+MAKERS = "Makers: those that offer the part or a drop-in for it."
+COUNTED_IN_ONE = SUBSTITUTES + MAKERS
+COUNTED = f"{SUBSTITUTES}With several records only those count that serve all of them. {MAKERS}"
 CAUTION = (
     "A substitute here meets the request by catalog values: check it against its data sheet and on the "
     "bench, and have anything that carries a safety function certified again."
@@ -86,23 +87,24 @@ def _verdict(alone: int, lost: int) -> str:
 
 
 def _table(parts: Sequence[Exposure], width: int) -> list[Text]:
-    columns = (
+    narrow = width < WIDE
+    columns = [
         Column("", tuple(ALERT if one.alone or one.lost else "" for one in parts)),
         Column("part", tuple(_named(one) for one in parts), gives=True),
-        Column("status", tuple(one.status or "-" for one in parts), gives=True),
+        *([] if narrow else [Column("status", tuple(one.status or "-" for one in parts), gives=True)]),
         Column("stock", tuple(_number(one.stock) for one in parts), right=True),
         Column("needed", tuple(count(one.needed) for one in parts), right=True),
         Column("lead,\nweeks", tuple(_number(one.lead_weeks) for one in parts), right=True),
         Column("makers", tuple(count(one.makers) for one in parts), right=True),
         Column("drop-in", tuple(count(one.drop_ins) for one in parts), right=True),
         Column("values", tuple(count(one.values) for one in parts), right=True),
-    )
+    ]
     widths = fit(columns, width)
     out = [Text(line, "bold") for line in lines(columns, widths, -1)]
     out.append(Text("-" * min(width, max(len(line.plain) for line in out))))
     for index, one in enumerate(parts):
         out += [Text(line, "bold" if one.alone else "") for line in lines(columns, widths, index)]
-        out += _notes(one, width)
+        out += _notes(one, width, status=narrow)
     return out
 
 
@@ -114,17 +116,19 @@ def _number(value: float | None) -> str:
     return "-" if value is None else f"{value:,.0f}"
 
 
-def _notes(one: Exposure, width: int) -> Iterator[Text]:
-    """Under a part: what is wrong with it, in words, and where it is used."""
-    wrong = list(_wrong(one))
+def _notes(one: Exposure, width: int, *, status: bool) -> Iterator[Text]:
+    """Under a part: what is wrong with it, in words, and where it is used; its `status` where asked for."""
+    wrong = list(wrong_words(one))
     indent = "   "
     for line in paragraph("; ".join(wrong), width - len(indent)) if wrong else ():
         yield Text(indent + line, BAD)
-    for line in paragraph(f"in {_where(one.records)}", width - len(indent)):
+    where = f"in {_where(one.records)}"
+    for line in paragraph(f"{one.status}, {where}" if status and one.status else where, width - len(indent)):
         yield Text(indent + line)
 
 
-def _wrong(one: Exposure) -> Iterator[str]:
+def wrong_words(one: Exposure) -> Iterator[str]:
+    """What is wrong with the supply of a part, the worst first."""
     if not one.fewest:
         blank = "" if one.outlined else ": its package or pinout is not known, so nothing counts as one"
         yield f"NO SUBSTITUTE in its footprint{blank}"
@@ -149,11 +153,12 @@ def exposure_csv(found: Exposures) -> str:
 
     Text that a spreadsheet would run as a formula is led by an apostrophe.
     """
-    buffer = StringIO(newline="")
-    writer = csv.writer(buffer, quoting=csv.QUOTE_NONNUMERIC, lineterminator="\r\n")
-    writer.writerow(CSV_COLUMNS)
-    for one in found.parts:
-        texts = (one.part, one.maker, "; ".join(one.uses), one.status)
-        numbers = (one.stock, one.needed, one.lead_weeks, one.makers, one.drop_ins, one.values, one.fewest)
-        writer.writerow((*(neutral(text) for text in texts), *numbers, neutral("; ".join(one.records))))
-    return buffer.getvalue()
+    rows = (
+        (
+            *(one.part, one.maker, "; ".join(one.uses), one.status),
+            *(one.stock, one.needed, one.lead_weeks, one.makers, one.drop_ins, one.values, one.fewest),
+            "; ".join(one.records),
+        )
+        for one in found.parts
+    )
+    return table_text(CSV_COLUMNS, rows)

@@ -15,9 +15,11 @@ from optimizer.report.paragraphs import styled
 from optimizer.report.reasons import WORDS
 from optimizer.report.words import percent
 from optimizer.review.replacement import Lack, Replacement
+from optimizer.search.substitutes import CORNER
 
 Row = Mapping[str, Any]
 INDENT = 4
+BLANK = "a value that a target or check needs is blank"
 
 
 def lack_lines(lack: Lack, near: Row | None, answer: Replacement, width: int) -> list[Text]:
@@ -28,7 +30,7 @@ def lack_lines(lack: Lack, near: Row | None, answer: Replacement, width: int) ->
 
 def _nearest(near: Row, answer: Replacement) -> list[str]:
     """The nearest miss: what it changes, what it misses, what would let it through."""
-    change = short(answer.old, near, near["changed"])
+    change = short(answer.board_row, near, near["changed"])
     request = answer.reopened.record.data["request"]
     missed = worst_first(near)
     if not missed:
@@ -40,9 +42,11 @@ def _nearest(near: Row, answer: Replacement) -> list[str]:
 
 
 def _none(lack: Lack, answer: Replacement) -> str:
+    if lack.stopped == CORNER:
+        return "None is eligible at every corner of the spreads, though some are at nominal values"
     if lack.stopped:
         key, _, column = lack.stopped.partition(":")
-        why = f"{WORDS[key]}{f', {column}' if column else ''}"
+        why = f"{BLANK}, {clean(column)}" if column else WORDS[key]
         return f"None is eligible: the one that gets furthest fails at {key} ({why})"
     said = [_lacking(position, lack.change, answer) for position in lack.lacking]
     return f"There is none: {'; '.join(said) or 'nothing can change in this way'}"

@@ -15,6 +15,7 @@ from optimizer.report.cells import ASSUMED
 from optimizer.report.changed import changed_lines
 from optimizer.report.changes import NAMES, changes, cost_words
 from optimizer.report.chosen import parts_list
+from optimizer.report.exposure import USED
 from optimizer.report.lacks import lack_lines
 from optimizer.report.notes import coverage, footnotes
 from optimizer.report.paragraphs import paragraph, styled
@@ -31,15 +32,7 @@ MEANING = {
     "drop-in": "same package and pinout, nothing else changes",
     "values": "same footprints and wiring; values of Rf, Cf or the divider change",
     "footprint": "another package or pinout; values may change, the circuit stays",
-    "redesign": "another part, the wiring, the kind of reference or the low-pass changes too",
-}
-USED = {
-    "photodiode": "photodiode",
-    "opamp": "op-amp",
-    "feedback_resistance": "Rf",
-    "feedback_capacitance": "Cf",
-    "divider": "divider",
-    "bypass": "bypass",
+    "redesign": "the other part, wiring, kind of reference or low-pass changes too",
 }
 
 
@@ -115,7 +108,7 @@ def _section(change: str, answer: Replacement, data: Mapping[str, Any], width: i
         (near,) = [row for row in data["near_misses"] if row["change"] == change] or [None]
         return out + lack_lines(lack, near, answer, width)
     for row in rows:
-        out += _row(answer.old, row, data, width)
+        out += _row(answer.board_row, row, data, width)
     return out + beside_lines(answer.before, rows, data["request"], width)
 
 
@@ -123,9 +116,7 @@ def _row(old: Row, row: Row, data: Mapping[str, Any], width: int) -> list[Text]:
     chosen = row["rank"] == data["chosen"]
     number = f"{'> ' if chosen else '  '}{row['rank']}{ASSUMED if row['assumed'] else ''}"
     positions = row["changed"]
-    many = (
-        "nothing" if not positions else "1 position" if len(positions) == 1 else f"{len(positions)} positions"
-    )
+    many = "1 position changes" if len(positions) == 1 else f"{len(positions) or 'no'} positions change"
     head = f"{number}  {clean(row['photodiode'])} with {clean(row['opamp'])}, {many}"
     said = [*changes(old, row, positions), ("cost", cost_words(old, row, data["request"]))]
     said += [("yield" if i == 0 else "", text) for i, text in enumerate(yield_words(row, data["request"]))]

@@ -64,7 +64,7 @@ class Dossier:
 
 
 def gather(reopened: Reopened, place: Place, rank: int | None = None) -> Dossier:
-    """The dossier of the candidate with `rank`, or of the chosen one.
+    """The dossier of the candidate with `rank`, or of the chosen one; see `weighing.weigh` for the rest.
 
     Raises InputError where there is none, where what it chooses is not in the catalogs any more, and
     where its figures are not those of the record any more.

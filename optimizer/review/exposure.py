@@ -19,7 +19,6 @@ from typing import Any
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import CHECKS
-from optimizer.review.findings import Exposed
 from optimizer.review.reopen import Reopened
 from optimizer.review.shelf import Taken
 from optimizer.review.supply import Case, Exposure, pieces, summed, worst_first
@@ -84,33 +83,9 @@ def exposure(taken: Sequence[Taken], tell: Tell = lambda _: None) -> Exposures:
     return Exposures(tuple(parts), tuple(sorted(stale, key=lambda one: order[one.record])))
 
 
-def exposed(reopened: Reopened, candidate: Mapping[str, Any]) -> tuple[Exposed, ...]:
+def exposed(reopened: Reopened, candidate: Mapping[str, Any]) -> tuple[Exposure, ...]:
     """The parts of one candidate, the worst first."""
-    found = exposure([Taken("", reopened, candidate)])
-    return tuple(
-        Exposed(
-            part=one.part,
-            role=ROLES[one.uses[0]],
-            status=one.status,
-            stock=one.stock,
-            needed=one.needed,
-            lead_weeks=one.lead_weeks,
-            makers=one.makers,
-            drop_ins=one.drop_ins,
-            values=one.values,
-        )
-        for one in found.parts
-    )
-
-
-ROLES = {
-    "photodiode": "photodiode",
-    "opamp": "op-amp",
-    "feedback_resistance": "resistor family",
-    "feedback_capacitance": "capacitor family",
-    "divider": "resistor family",
-    "bypass": "capacitor family",
-}
+    return exposure([Taken("", reopened, candidate)]).parts
 
 
 @dataclass(frozen=True, slots=True)

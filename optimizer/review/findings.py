@@ -7,80 +7,48 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
+
+from optimizer.review.supply import Exposure
+from optimizer.search.finding import Finding
+from optimizer.search.tradeoff import Tradeoff
 
 Floats = NDArray[np.float64]
 
 
 @dataclass(frozen=True, slots=True)
 class Cloud:
-    """Cost and margin of everything that met the request, one element a pair, names alike."""
+    """Cost and margin of every pair that met the request, at its cheapest setting; one element a pair.
 
-    cost: Floats
-    margin: Floats
-    names: tuple[str, ...]
-    complete: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Price:
-    """What one step of one target costs: the limit tried (None: dropped) and the best that then meets.
-
-    `step` is the relative change of the limit, positive where it is relaxed, None where it is dropped.
-    `cost` and `margin` are None where nothing meets; `change` says what the best changes against the
-    candidate that is best as the request stands, as pairs of position and 'old -> new'.
+    Sorted by rising cost. Where it is not `complete`, more pairs meet, none of them cheaper. `front`
+    marks those that no other equals or beats in both, of equals the first.
     """
 
-    target: str
-    step: float | None
-    limit: float | None
-    cost: float | None
-    margin: float | None
-    change: tuple[tuple[str, str], ...] = ()
+    names: tuple[str, ...]
+    cost: Floats
+    margin: Floats
+    complete: bool
 
-
-@dataclass(frozen=True, slots=True)
-class Exposed:
-    """How much one part of the candidate hangs on its supply; None where the catalog does not say."""
-
-    part: str
-    role: str
-    status: str
-    stock: float | None
-    needed: int
-    lead_weeks: float | None
-    makers: int
-    drop_ins: int
-    values: int
-
-
-@dataclass(frozen=True, slots=True)
-class Reach:
-    """What one part reaches of one target: the best `alone`, and where all are weighed `together`."""
-
-    name: str
-    limit: float
-    alone: float | None
-    together: float | None
-    margin: float
+    @property
+    def front(self) -> NDArray[np.bool_]:
+        """Which pairs no other matches or beats in both cost and margin."""
+        order = np.lexsort((-self.margin, self.cost))
+        most = np.maximum.accumulate(self.margin[order])
+        front = np.ones(order.size, dtype=bool)
+        front[order[1:]] = self.margin[order[1:]] > most[:-1]
+        return front
 
 
 @dataclass(frozen=True, slots=True)
 class Compared:
-    """One part (or pair) beside the chosen: the checks it fails in words, what it reaches, what stops it.
+    """A part that was asked about by `name`, what was found out, and the same as a record's data."""
 
-    `stopped_by` is the target or check that stops it, None where it meets the request; `margin` is
-    that of its best setting, with the partner `closest`.
-    """
-
-    part: str
-    fails: tuple[tuple[str, str], ...]
-    reaches: tuple[Reach, ...]
-    stopped_by: str | None
-    margin: float | None
-    closest: str | None
+    name: str
+    finding: Finding
+    data: Mapping[str, Any]
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,6 +57,6 @@ class Findings:
 
     drawn: Mapping[str, Floats] = field(default_factory=dict)
     cloud: Cloud | None = None
-    prices: tuple[Price, ...] = ()
-    exposure: tuple[Exposed, ...] = ()
+    prices: Tradeoff | None = None
+    exposure: tuple[Exposure, ...] = ()
     compared: tuple[Compared, ...] = ()

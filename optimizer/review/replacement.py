@@ -21,7 +21,7 @@ from optimizer.request.types import Request
 from optimizer.review.reopen import Reopened
 from optimizer.review.withdrawal import Wish, Withdrawal, withdrawal
 from optimizer.search import assemble, substitutes
-from optimizer.search.positions import CHANGES, Board, positions_of
+from optimizer.search.positions import CHANGES, Board, outlines_of, positions_of
 from optimizer.search.query import whole
 from optimizer.search.result import Candidate, Outcome
 from optimizer.search.space import Choice
@@ -47,7 +47,7 @@ class Lack:
 
     `nearest` is the eligible one of largest margin: its limiting target fails first, and minus its margin
     is the smallest relaxation that admits one. Where none is eligible, `stopped` is the check that the one
-    that gets furthest fails (`missing` with its column); where there is no such candidate at all, it is ''
+    that gets furthest fails (see `substitutes.stopped`); where there is no such candidate at all, it is ''
     and `lacking` holds the positions for which there is nothing to choose.
     """
 
@@ -83,6 +83,11 @@ class Replacement:
     substitutes: tuple[Substitute, ...]
     lacks: tuple[Lack, ...]
     search: Search
+
+    @property
+    def board_row(self) -> dict[str, Any]:
+        """The old candidate with its parts' outlines as they are known today."""
+        return {**self.old, **outlines_of(self.withdrawal.plan.board)}
 
 
 def replacement(

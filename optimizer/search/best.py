@@ -86,7 +86,7 @@ class Best:
 
 def best(on: Ground, name: str, musts: Mapping[str, float]) -> Best:
     """The best value of target `name` among eligible settings that meet `musts`."""
-    top, left = _highest(on, name, musts, on.known), 8*STEPS if musts else STEPS
+    top, left = _highest(on, name, musts, on.known), 8 * STEPS if musts else STEPS
     while True:
         if top is not None:
             top = _climbed(on, name, musts, top)

@@ -57,7 +57,7 @@ def fitting(space: Space, catalogs: Catalogs, plan: Plan) -> Space:
 
 
 def from_family(space: Space, catalogs: Catalogs, plan: Plan, use: str, row: int) -> Space:
-    """`space` as `fitting` makes it, with what is bought anew for `use`, divider or bypass, from one family."""
+    """`space` as `fitting` makes it, but what is bought anew for `use` (divider, bypass) from one family."""
     fit, parts = _fitting(catalogs, plan), catalogs.resistors if use == "divider" else catalogs.capacitors
     only = [np.arange(parts.size) == row]
     shops = replace(fit, resistors=only) if use == "divider" else replace(fit, capacitors=only)

@@ -45,10 +45,14 @@ AGAINST = tuple(name for name in margins.TARGETS if name != "cost")
 
 @dataclass(frozen=True, slots=True)
 class Point:
-    """One receiver of the front: the value that its target has (at the worst corner, if those count)."""
+    """One receiver of the front: the value that its target has (at the worst corner, if those count; with
+
+    as many sources as are asked for), and the margin of that against the target's own limit, if it has one.
+    """
 
     cost: float
     value: float
+    margin: float | None
     candidate: Candidate
 
 
@@ -71,10 +75,7 @@ class Front:
     @property
     def meets(self) -> bool:
         """Whether some point meets the whole request."""
-        if self.limit is None:
-            return bool(self.points)
-        values = np.array([point.value for point in self.points])
-        return bool(np.any(margins.margin(self.target, values, self.limit) >= 0.0))
+        return any(point.margin is None or point.margin >= 0.0 for point in self.points)
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,11 +120,17 @@ def front(request: Request, catalogs: Catalogs, target: str, *, progress: Report
         return Front(target, limit, tuple(rest), impossible=known)
     walk = _Walk(ground, target, rest)
     hits = list(_corners(_walked(walk, progress)))
-    candidates = [assemble.candidates(space, catalogs, hit.choice)[0] for hit in hits]
-    points = tuple(Point(h.cost, h.value, c) for h, c in zip(hits, candidates, strict=True))
+    points = tuple(_point(ground, (target, limit), hit) for hit in hits)
     why = None if points else conflicts(ground, rest)[0]
     spent = (walk.evaluated, time.perf_counter() - begun)
     return Front(target, limit, tuple(rest), points, *spent, known, why)
+
+
+def _point(ground: Ground, target: tuple[str, float | None], hit: _Hit) -> Point:
+    name, limit = target
+    margin = None if limit is None else float(margins.margin(name, np.array(hit.value), limit))
+    candidate = assemble.candidates(ground.space, ground.catalogs, hit.choice)[0]
+    return Point(hit.cost, hit.value, margin, candidate)
 
 
 def _walked(walk: _Walk, progress: Report | None) -> Iterator[_Hit]:
@@ -134,15 +141,17 @@ def _walked(walk: _Walk, progress: Report | None) -> Iterator[_Hit]:
     if hit is not None and np.isnan(hit.value):
         hit = walk.cheapest(every, steps.loosest(walk.name))
     reach: _Reach | None = None
+    found = 0
     while hit is not None:
         yield hit
+        found += 1
+        if progress is not None:
+            progress(Progress(found, found, walk.evaluated, None))
         limit = steps.stricter(walk.name, hit.value)
         if limit is None:
             return
         reach = _Reach.of(walk, limit) if reach is None else reach
         hit = walk.cheapest(reach.pairs(walk, limit), limit)
-        if progress is not None:
-            progress(Progress(every.size, 0, walk.evaluated, None))
 
 
 def _corners(hits: Iterable[_Hit]) -> Iterator[_Hit]:

@@ -41,6 +41,9 @@ CHANGES = ("drop-in", "values", "footprint", "redesign")
 USES = ("photodiode", "opamp", "feedback_resistance", "feedback_capacitance", "divider", "bypass")
 """Where a board uses a part."""
 
+RECORDED = dict(zip(USES, ("photodiode", "opamp", "resistor", "capacitor", "divider", "bypass"), strict=True))
+"""What the keys of a record that are about the part in each use begin with."""
+
 
 @dataclass(frozen=True, slots=True)
 class Fitted:
@@ -129,10 +132,14 @@ def board_of(space: Space, catalogs: Catalogs, candidate: Mapping[str, Any]) -> 
     parts = {
         "photodiode": _active(catalogs.photodiodes, candidate, "photodiode"),
         "opamp": _active(catalogs.opamps, candidate, "opamp"),
-        "feedback_resistance": _family(catalogs.resistors, candidate, "resistor"),
-        "feedback_capacitance": _family(catalogs.capacitors, candidate, "capacitor"),
-        "divider": _family(catalogs.resistors, candidate, "divider"),
-        "bypass": _family(catalogs.capacitors, candidate, "bypass"),
+        **{
+            use: _family(catalogs.resistors, candidate, RECORDED[use])
+            for use in ("feedback_resistance", "divider")
+        },
+        **{
+            use: _family(catalogs.capacitors, candidate, RECORDED[use])
+            for use in ("feedback_capacitance", "bypass")
+        },
     }
     if candidate["reference"]["kind"] == "divider":
         level = np.flatnonzero(referred(space, candidate["reference"]))[:1]
@@ -167,6 +174,19 @@ def _listed(parts: Parts, row: int) -> Fitted | None:
     if family is None:
         return None
     return Fitted(family, cell(parts, "maker", row), cell(parts, "package", row) or "")
+
+
+def outlines_of(board: Board) -> dict[str, str | None]:
+    """The outlines of a board's parts by the keys of a record."""
+    said: dict[str, str | None] = {}
+    for use, part in board.parts.items():
+        name = RECORDED[use]
+        said[f"{name}_package"] = part.package or None
+        if use in ("photodiode", "opamp"):
+            said[f"{name}_pinout"] = part.pinout or None
+        elif use in ("divider", "bypass"):
+            said |= {f"{name}_family": part.name, f"{name}_maker": part.maker}
+    return said
 
 
 def graded(space: Space, catalogs: Catalogs, plan: Plan) -> Grades:

@@ -48,6 +48,9 @@ Product = tuple[Bools, ...]
 AXES = ("opamp", "photodiode", "", "feedback_resistance", "feedback_capacitance", "low_pass")
 """The position of each axis; contexts hold two, wiring and reference."""
 
+CORNER = "corner"
+"""What stops settings that are eligible at nominal values only."""
+
 _MISSING = CHECKS.index("missing")
 _CHUNK = 4096
 
@@ -137,11 +140,14 @@ def able(offer: Offer, change: int, axis: int) -> Ints:
 def stopped(offer: Offer, change: int) -> str:
     """The check that the setting of `change` that gets furthest fails, `missing` with its column.
 
-    '' where there is no such setting at all.
+    CORNER where some pass every check at nominal values, but none at every corner that is graded; ''
+    where there is no such setting at all.
     """
     reached = [_furthest(offer.space, part) for part in products(offer.grades, change)]
-    code, column = max(reached, default=(PASSES, ""))
-    return "" if code == PASSES else CHECKS[code] + (f":{column}" if column else "")
+    if not reached:
+        return ""
+    code, column = max(reached)
+    return CORNER if code == PASSES else CHECKS[code] + (f":{column}" if column else "")
 
 
 def lacking(grades: Grades, change: int) -> tuple[str, ...]:

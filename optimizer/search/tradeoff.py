@@ -24,7 +24,7 @@ from optimizer.request.types import Request
 from optimizer.search import assemble, impossible, many, steps
 from optimizer.search.conflicts import Conflicts, conflicts
 from optimizer.search.crew import REPORT_EVERY
-from optimizer.search.ground import Ground, lay_out
+from optimizer.search.ground import NOTHING_GRADED, Ground, lay_out
 from optimizer.search.questions import COST, Questions, choice_of, offer
 from optimizer.search.result import Candidate, Progress, TargetValue
 from optimizer.search.screen import Screen
@@ -211,12 +211,21 @@ def _candidates(table: _Table) -> list[Candidate | None]:
     for k, p in zip(answered.tolist(), place.ravel().tolist(), strict=True):
         limits = dict(zip(questions.names, questions.limits[k].tolist(), strict=True))
         stated = {name: limit for name, limit in limits.items() if limit != steps.free(name)}
-        if ground.space.sources > 1:
-            space = replace(ground.space, limits=stated)
-            found[k] = assemble.candidates(space, ground.catalogs, choice_of(best, [k]))[0]
-        else:
-            found[k] = regraded(every[p], stated)
+        candidate = (
+            _with_sources(ground, choice_of(best, [k]), stated) if ground.space.sources > 1 else every[p]
+        )
+        found[k] = regraded(candidate, stated)
     return found
+
+
+def _with_sources(ground: Ground, choice: Choice, limits: Mapping[str, float]) -> Candidate:
+    """One setting with the alternates that it has under `limits`."""
+    space = replace(ground.space, limits=limits or NOTHING_GRADED)
+    candidate = assemble.candidates(space, ground.catalogs, choice)[0]
+    if limits:
+        return candidate
+    alternates = tuple(replace(other, limiting="") for other in candidate.alternates)
+    return replace(candidate, alternates=alternates)
 
 
 def regraded(candidate: Candidate, limits: Mapping[str, float]) -> Candidate:

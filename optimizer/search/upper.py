@@ -28,12 +28,15 @@ from optimizer.search.bounds import (
     tightened,
 )
 from optimizer.search.output_noise import output_floor
+from optimizer.search.resonance import least_square, lines
 from optimizer.search.view import View
 
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 
 _NEWTON_STEPS = 5
+EARLIER = (1.0, 0.6, 0.35, 0.15)
+"""Where the response is looked at, as shares of the square of the frequency in question."""
 _STEPS = 5
 """Bisections between level and comfort that place the bound on the bandwidth margin."""
 
@@ -127,7 +130,7 @@ def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Float
     limits = {**goals.musts, **goals.limits}
     scale = margins.PHASE_SCALE
     bounds: dict[str, Callable[[], Floats]] = {
-        "bandwidth": lambda: _bandwidth(v, c, goals, level),
+        "bandwidth": lambda: _bandwidth(v, (left, c), goals, level),
         "snr": lambda: margins.raw_margin("snr", snr, limits["snr"]),
         "dynamic_range": lambda: margins.raw_margin(
             "dynamic_range", _dynamic_range(v, state, goals), limits["dynamic_range"]
@@ -176,18 +179,24 @@ def _slew(v: View, left: Narrow, goals: Goals) -> Floats:
     return v.slew_rate / (np.pi * frequency * amplitude)
 
 
-def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
+def _bandwidth(v: View, state: tuple[Narrow, Coefficients], goals: Goals, level: Floats) -> Floats:
     """The margin up to comfort that the bandwidth can have: where |H| is certainly below H0/sqrt 2."""
+    c, straight = state[1], lines(v, *state)
     target = 2.0 * np.pi * _limit(goals, "bandwidth")
     if "bandwidth" not in goals.limits:
         level = np.zeros_like(level)
 
-    def excluded(margin: Floats) -> Bools:
-        x = (target * np.maximum(1.0 + margin, 0.0)) ** 2
+    def below(x: Floats) -> Bools:
         real = np.maximum(np.maximum(1.0 - c.e2_high * x, c.e2_low * x - 1.0), 0.0)
         imaginary = np.maximum(np.maximum(c.e1_low - c.e3_high * x, c.e3_low * x - c.e1_high), 0.0)
         poles = (1.0 + v.pole**2 * x) * (1.0 + v.lag_low**2 * x)
-        return np.asarray((real**2 + x * imaginary**2) * poles > 2.0 * (1.0 + 1e-9))
+        square = real**2 + x * imaginary**2
+        return np.asarray(square * poles > 2.0 * (1.0 + 1e-9))
+
+    def excluded(margin: Floats) -> Bools:
+        # a response that falls below earlier and rises again in a resonance has the lower bandwidth
+        x = (target * np.maximum(1.0 + margin, 0.0)) ** 2
+        return np.any([below(part * x) for part in EARLIER], axis=0)
 
     low, high = level, np.full(level.shape, goals.comfort)
     # just above the level first: margins that cannot exceed it are then known to tie with it
@@ -223,11 +232,24 @@ def _phase_margin(v: View, left: Narrow, c: Coefficients) -> Floats:
     t_low = left.rf_low * (v.cin_low + left.cf_low)
     t_high = left.rf_high * (v.cin_high + left.cf_high)
     f_low, f_high = left.rf_low * left.cf_low, left.rf_high * left.cf_high
-    w_low = _crossover(v, (c.g_high, t_high, f_low), False)
+    w_low = np.fmax(_crossover(v, (c.g_high, t_high, f_low), False), _slowest(v, left, c))
     w_high = _crossover(v, (c.g_low, t_low, f_high), True)
     lag = np.arctan(v.dominant * w_low) + np.arctan(v.second * w_low)
     network = np.arctan(f_high * w_high) - np.arctan(t_low / c.g_high * w_low)
     return np.asarray(180.0 - np.degrees(lag - np.fmin(network, _lead(v, left, c))))
+
+
+def _slowest(v: View, left: Narrow, c: Coefficients) -> Floats:
+    """The crossover [rad/s] at least, whatever Rf: the noise gain is at most g or 1 + Cin/Cf.
+
+    The root of (1 + a^2 x)(1 + b^2 x) = (A0 / that)^2, x = w^2.
+    """
+    with np.errstate(all="ignore"):
+        highest = np.fmax(c.g_high, 1.0 + v.cin_high / left.cf_low)
+        excess = (v.gain / highest) ** 2 - 1.0
+        a2, b2 = v.dominant**2, v.second**2
+        x = 2.0 * excess / (a2 + b2 + np.sqrt((a2 + b2) ** 2 + 4.0 * a2 * b2 * excess))
+    return np.sqrt(np.where(excess > 0.0, x, 0.0)) * (1.0 - 1e-9)
 
 
 def _lead(v: View, left: Narrow, c: Coefficients) -> Floats:

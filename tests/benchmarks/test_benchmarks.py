@@ -8,7 +8,7 @@ from pathlib import Path
 
 import pytest
 
-from tests.benchmarks import reading, search
+from tests.benchmarks import reading, search, tradeoff
 from tests.benchmarks.case import Measured
 from tests.benchmarks.search import Case, How, Result
 from tests.benchmarks.synthetic_data import REQUESTS
@@ -175,3 +175,12 @@ def test_the_reading_benchmark_prints_both_times(capsys: pytest.CaptureFixture[s
         assert line.startswith(start)
         median, least, most, _ = map(float, line.removeprefix(start).split()[:4])
         assert 0 < least <= median <= most
+
+
+def test_the_tradeoff_benchmark_prints_a_line_a_case() -> None:
+    heading, *cases = tradeoff.lines([(30, 20)], [1])
+    assert heading.split()[:3] == ["size", "seed", "request"]
+    assert [line.split()[2] for line in cases] == list(tradeoff.KINDS)
+    for line in cases:
+        plain, table, ratio = (float(cell) for cell in line.split()[3:6])
+        assert ratio == pytest.approx(table / plain, rel=0.2)

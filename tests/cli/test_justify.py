@@ -205,3 +205,29 @@ def test_what_goes_wrong_while_writing_leaves_the_old_page(
     assert "No space left on device" in refused(capsys, saved, "-o", page)
     assert page.read_text("utf-8") == OLD
     assert not list(page.parent.glob(".luxsift-*"))
+
+
+def test_parts_are_compared_and_the_command_for_it_is_named(saved: Path, tmp_path: Path) -> None:
+    path = tmp_path / "review.md"
+    words = ["--compare", "YZA-31", "--compare", "Yonderbeck Analog/YZA-22", "--compare", "YZA-31"]
+    assert main(["justify", str(saved), *words, "-o", str(path)]) == 0
+    text = path.read_text("utf-8")
+    assert text.count("### Why not YZA-31\n") == 1
+    assert "### Why not Yonderbeck Analog/YZA-22\n" in text
+    assert "--compare YZA-31 --compare 'Yonderbeck Analog/YZA-22' -o" in text
+
+
+def test_a_part_that_is_unknown_is_refused_before_any_work(
+    saved: Path, page: Path, capsys: Captured, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def worked(*_words: object) -> None:
+        raise AssertionError
+
+    monkeypatch.setattr("optimizer.review.dossier.gather", worked)
+    monkeypatch.setattr("optimizer.review.weighing.weigh", worked)
+    said = refused(capsys, saved, "--compare", "YZA-3l", "--compare", "YZD-O1", "-o", page)
+    assert (
+        "--compare: found 'YZA-3l', the catalogs hold no such part or family (did you mean 'YZA-31'?)" in said
+    )
+    assert "found 'YZD-O1'" in said
+    assert page.read_text("utf-8") == OLD

@@ -22,7 +22,7 @@ def rewritten(path: Path, change: Callable[[list[Row]], list[Row]]) -> None:
         writer.writerows(changed)
 
 
-def with_cells(path: Path, part: str, **cells: str) -> None:
+def with_cells(path: Path, part: str, /, **cells: str) -> None:
     """Change cells of one part (or family)."""
     rewritten(path, lambda rows: [row | cells if _is(row, part) else row for row in rows])
 
@@ -32,7 +32,7 @@ def without(path: Path, part: str) -> None:
     rewritten(path, lambda rows: [row for row in rows if not _is(row, part)])
 
 
-def with_copy(path: Path, part: str, **cells: str) -> None:
+def with_copy(path: Path, part: str, /, **cells: str) -> None:
     """Add a copy of one part (or family) with other cells, the name among them."""
     rewritten(path, lambda rows: [*rows, *(row | cells for row in rows if _is(row, part))])
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from dataclasses import replace
+from dataclasses import asdict, replace
 from pathlib import Path
 from typing import Any
 
@@ -11,13 +11,23 @@ import pytest
 
 from optimizer.errors import InputError
 from optimizer.record import Record, read, write
-from optimizer.review.dossier import gather, place_of
+from optimizer.review.dossier import differences
 from optimizer.review.reopen import chosen_of, reopen
 from optimizer.review.replacement import Replacement, before, record_of, replacement
 from optimizer.review.withdrawal import NAMED, OBSOLETE, VANISHED, Wish
+from optimizer.search import assemble, dividers
+from optimizer.search.locate import locate
+from optimizer.search.query import whole
 from tests.review.catalog_edits import with_cells, with_copy, without
+from tests.saved_record import saved_in
 
 FITS = {"package": "SOT-23-5", "pinout": "single-5"}
+
+
+@pytest.fixture
+def saved(tmp_path: Path) -> Path:
+    """A record that `shortlist` saved beside its request and catalogs."""
+    return saved_in(tmp_path)
 
 
 @pytest.fixture
@@ -150,10 +160,10 @@ def test_kept_positions_stay(saved: Path) -> None:
     ("gone", "keep", "words"),
     [
         (("YZA-12",), (), ("row 1 does not use it", "it uses YZD-01, YZA-21, YZR-K, YZC-G, YZC-X")),
-        (("YZA-2l",), (), ("neither the catalogs nor the record", "did you mean 'YZA-21'?")),
+        (("YZA-2Z",), (), ("neither the catalogs nor the record", "did you mean 'YZA-22'?")),
         ((), (), ("no part of row 1 is obsolete, or missing", "name what is gone")),
-        (("YZA-21",), ("opamp",), ("--keep, opamp", "cannot be kept", "--gone YZA-21")),
-        (("YZR-K",), ("feedback_resistance",), ("--keep, feedback_resistance", "--gone YZR-K")),
+        (("YZA-21",), ("opamp",), ("--keep: found 'opamp'", "cannot be kept", "--gone YZA-21")),
+        (("YZR-K",), ("feedback_resistance",), ("--keep: found 'feedback_resistance'", "--gone YZR-K")),
     ],
 )
 def test_a_wish_that_cannot_be(
@@ -208,6 +218,73 @@ def test_a_blank_that_stops_all_is_named(board: Path) -> None:
 def test_no_such_part_at_all(saved: Path) -> None:
     lack = replaced(saved, "YZA-21").lacks[0]
     assert (lack.nearest, lack.stopped, lack.lacking) == (None, "", ("opamp",))
+
+
+# Second sources
+
+
+@pytest.fixture
+def sourced(board: Path) -> Path:
+    """A request that asks for op-amps of two makers; that of the record has twins of two others."""
+    request = board.parent / "request.toml"
+    text = "\n".join(line for line in request.read_text("utf-8").split("\n") if not _is_resilience(line))
+    request.write_text(f"{text}\n[resilience]\nopamp_sources = 2\n", "utf-8")
+    with_copy(board.parent / "opamps.csv", "YZA-21", part="YZA-28", maker="Ottersill Analog", price="1.80")
+    return board
+
+
+def _is_resilience(line: str) -> bool:
+    return line.startswith(("[resilience]", "opamp_sources"))
+
+
+def test_substitutes_have_second_sources(sourced: Path) -> None:
+    first = replaced(sourced, "YZA-21").substitutes[0]
+    assert (first.change, first.candidate.opamp) == ("drop-in", "YZA-29")
+    assert [other.opamp for other in first.candidate.alternates] == ["YZA-28"]
+
+
+def test_what_is_gone_is_no_second_source(sourced: Path) -> None:
+    """With YZA-28 gone too, the twin that is left would have but the withdrawn part beside it."""
+    answer = replaced(sourced, "YZA-21", "YZA-28")
+    lack = answer.lacks[0]
+    assert lack.change == "drop-in"
+    assert lack.nearest is not None
+    assert lack.nearest.candidate.missed == ("opamp_sources",)
+
+
+def test_an_obsolete_part_is_no_second_source(sourced: Path) -> None:
+    with_cells(sourced.parent / "opamps.csv", "YZA-28", status="obsolete")
+    assert replaced(sourced, "YZA-21").lacks[0].change == "drop-in"
+
+
+# Real parts
+
+
+def test_yields_are_drawn_and_those_that_do_not_reach_go_last(board: Path) -> None:
+    request = board.parent / "request.toml"
+    spreads = (
+        '[tolerance]\nmethod = "nominal"\nyield = "99 %"\ndraws = 400\ngbw = "30 %"\nvoltage_noise = "90 %"\n'
+    )
+    request.write_text(request.read_text("utf-8") + "\n" + spreads, "utf-8")
+    answer = replaced(board, "YZD-01")
+    for change in ("footprint", "redesign"):
+        reached = [
+            one.candidate.simulated is not None and one.candidate.simulated.reaches(0.99)
+            for one in answer.substitutes
+            if one.change == change
+        ]
+        assert reached == sorted(reached, reverse=True)
+    assert all("yield" in row for row in record_of(answer).data["candidates"])
+
+
+def test_corners_hold_for_substitutes(board: Path) -> None:
+    request = board.parent / "request.toml"
+    text = request.read_text("utf-8")
+    request.write_text(f'{text}\n[tolerance]\nmethod = "corners"\ngbw = "20 %"\n', "utf-8")
+    answer = replaced(board, "YZA-21")
+    assert answer.substitutes[0].candidate.opamp == "YZA-29"
+    for one in answer.substitutes:
+        assert all(target.worst is not None and target.margin >= 0.0 for target in one.candidate.targets)
 
 
 # The old candidate
@@ -284,9 +361,11 @@ def test_every_row_of_the_record_can_be_reviewed(saved: Path, gone: str) -> None
     assert answer.substitutes
     path = saved_again(saved, record_of(answer))
     reopened = reopen(path)
+    study = reopened.study
     for row in reopened.record.candidates:
-        dossier = gather(reopened, place_of(path, reopened, "page.html"), row["rank"])
-        assert dossier.candidate == row
+        space = dividers.recorded(whole(study.request, study.catalogs), study.catalogs, row)
+        (now,) = assemble.candidates(space, study.catalogs, locate(space, study.catalogs, row))
+        assert list(differences(row, asdict(now))) == []
 
 
 def test_a_record_of_an_earlier_version_can_be_replaced(saved: Path) -> None:

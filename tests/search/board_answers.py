@@ -13,12 +13,11 @@ from typing import Any
 
 import numpy as np
 
-from optimizer import margins
 from optimizer.catalog.parts import Parts
 from optimizer.figures import evaluate
 from optimizer.search import plain
 from optimizer.search import space as spaces
-from optimizer.search.roles import PASSES
+from optimizer.search.corners import judged_whole
 from optimizer.search.space import Space
 from tests.search import whole
 from tests.search.board_changes import (
@@ -106,9 +105,10 @@ def _members(
             if in_place and not _keeps(one, old, (int(o), int(d))):
                 continue
             ways = (True,) if in_place else (False, True)
-            for change, changed, reach, row in _settings(one, old, (space, tables, ways), (int(o), int(d))):
+            every = _settings(one, old, (space, tables, ways), (int(o), int(d)))
+            for change, changed, (reach, admitted), row in every:
                 reached[change] = max(reached.get(change, -1), reach)
-                if reach == PASSES:
+                if admitted:
                     members[change].append((changed, row))
     return space, members
 
@@ -194,17 +194,20 @@ def _source(one: Case, role: str, wanted: set[float], how: tuple[Any, bool, bool
 
 def _settings(
     one: Case, old: Setting, compiled: tuple[Space, Tables, tuple[bool, ...]], pair: tuple[int, int]
-) -> Iterator[tuple[str, set[str], int, whole.Row]]:
-    """Each setting of a pair as (change, positions changed, check reached, row)."""
+) -> Iterator[tuple[str, set[str], tuple[int, bool], whole.Row]]:
+    """Each setting of a pair: change, positions changed, check reached and whether it is admitted, row."""
     space, tables, ways = compiled
+    by = one.request.ranking.by
     for fitting in ways:
         costs = [np.nan if table[fitting] is None else table[fitting][2] for table in tables]
-        priced = replace(space, contexts=replace(space.contexts, cost=np.array(costs)))
+        spreads = [_spread(one, table[fitting]) for table in tables]
+        contexts = replace(space.contexts, cost=np.array(costs), spread=np.array(spreads))
+        priced = replace(space, contexts=contexts)
         for choice in plain.every_choice(priced, *pair):
             with np.errstate(all="ignore"):
-                judged = plain.judge(priced, choice, "cost")
+                judged = judged_whole(priced, plain.judge(priced, choice, by), by)
                 figures = evaluate(priced.bench, spaces.settings(priced, choice)).figures
-            table = margins.margins(figures, priced.limits)
+            table = judged.margin_columns
             for i in range(choice.opamp.size):
                 bought = tables[int(choice.context[i])][fitting]
                 if bought is None:
@@ -214,8 +217,18 @@ def _settings(
                 if (change in ("drop-in", "values")) != fitting or frozen(one, old, new):
                     continue
                 ranks = {name: float(figures[name][i]) for name in ("cost", "snr", "supply_current")}
+                ranks["snr"] = -float(judged.primary[i]) if by == "snr" else ranks["snr"]
                 row = whole._row(priced, one.catalogs, choice, i, (ranks, tuple(table[i].tolist())))
-                yield change, changed, int(judged.reach[i]), row
+                yield change, changed, (int(judged.reach[i]), bool(judged.admitted[i])), row
+
+
+def _spread(one: Case, bought: Bought | None) -> float:
+    """The tolerance of a divider's resistors; the tempco of the boards is 0."""
+    if bought is None or bought[0] is None:
+        return 0.0
+    parts = one.catalogs.resistors
+    here = (parts.text["family"] == bought[0][0]) & (parts.text["maker"] == bought[0][1])
+    return float(parts.number["tolerance"][np.flatnonzero(here)[0]])
 
 
 def each_gone(one: Case) -> Iterator[tuple[str, Case]]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -36,8 +37,9 @@ def old_of(one: Case) -> Setting:
     }
     if reference["kind"] == "divider" and old["divider"] is None:
         pair = {reference["top"], reference["bottom"]}
-        old["divider"] = cheapest(one, "resistors", pair, lambda _: True)
-        old["bypass"] = cheapest(one, "capacitors", {one.request.space.divider.bypass}, lambda _: True)
+        before = replace(one, gone=frozenset())
+        old["divider"] = cheapest(before, "resistors", pair, lambda _: True)
+        old["bypass"] = cheapest(before, "capacitors", {one.request.space.divider.bypass}, lambda _: True)
     return old
 
 

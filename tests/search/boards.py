@@ -11,11 +11,11 @@ import numpy as np
 
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.record.build import plain as as_json
-from optimizer.request.types import WIRINGS, Divider, Request
+from optimizer.request.types import WIRINGS, Divider, Request, Tolerance
 from optimizer.search import assemble, plain
 from optimizer.search import space as spaces
+from optimizer.search.corners import judged_whole
 from optimizer.search.positions import Fitted, Out, Plan, board_of
-from optimizer.search.roles import PASSES
 from optimizer.search.space import Space
 from tests.search import made
 from tests.search.instances import sampled, some, with_targets
@@ -93,6 +93,9 @@ def _request(rng: np.random.Generator) -> Request:
             "status": pick(("active",), ("active", "obsolete")),
         },
         ranking={"by": pick("cost", "margin", "snr", "supply_current"), "comfort": pick(0.05, 0.3, 0.5)},
+        tolerance=pick(
+            *[Tolerance()] * 8, Tolerance(method="corners", gbw=0.2, dark_current=0.5, stated=True)
+        ),
     )
 
 
@@ -104,10 +107,6 @@ def _catalogs(rng: np.random.Generator) -> Catalogs:
         if rng.random() < 0.12:
             return {"package": "", "pinout": ""}
         return {"package": str(rng.choice(OUTLINES, p=ODDS)), "pinout": str(rng.choice(OUTLINES, p=ODDS))}
-
-    def several(*values: float) -> list[float]:
-        kept = [value for value in values if rng.random() < 0.7]
-        return kept or [values[0]]
 
     amps = [
         made.opamp(
@@ -135,6 +134,19 @@ def _catalogs(rng: np.random.Generator) -> Catalogs:
         )
         for k in range(3)
     ]
+    return made.catalogs(amps, sensors, *_families(rng))
+
+
+def _families(rng: np.random.Generator) -> tuple[list[made.Row], list[made.Row]]:
+    """Families of resistors and of capacitors."""
+
+    def pick(*choices: Any) -> Any:
+        return choices[int(rng.integers(len(choices)))]
+
+    def several(*values: float) -> list[float]:
+        kept = [value for value in values if rng.random() < 0.7]
+        return kept or [values[0]]
+
     resistors = [
         made.resistor(
             family=f"YZR-{k}",
@@ -142,6 +154,8 @@ def _catalogs(rng: np.random.Generator) -> Catalogs:
             package=str(rng.choice(OUTLINES, p=FAMILY_ODDS)),
             price=[(1.0, pick(0.01, 0.02, 0.1))],
             parasitic_capacitance=pick(0.05e-12, 0.1e-12),
+            tolerance=pick(0.01, 0.05),
+            tempco=0.0,
             **made.listed(*several(10e3, 22e3), *several(220e3, 470e3, 1e6)),
         )
         for k in range(3)
@@ -151,11 +165,12 @@ def _catalogs(rng: np.random.Generator) -> Catalogs:
             family=f"YZC-{k}",
             package=str(rng.choice(OUTLINES, p=FAMILY_ODDS)),
             price=[(1.0, pick(0.01, 0.03, 0.3))],
+            tolerance=pick(0.02, 0.1),
             **made.listed(*several(1e-12, 2.2e-12, 4.7e-12), *several(100e-9)),
         )
         for k in range(3)
     ]
-    return made.catalogs(amps, sensors, resistors, capacitors)
+    return resistors, capacitors
 
 
 def _candidate(rng: np.random.Generator, asked: Request, every: Catalogs) -> dict[str, Any] | None:
@@ -165,9 +180,9 @@ def _candidate(rng: np.random.Generator, asked: Request, every: Catalogs) -> dic
         return None
     with np.errstate(all="ignore"):
         choice = sampled(rng, space, 3000)
-        judged = plain.judge(space, choice, "cost")
+        judged = judged_whole(space, plain.judge(space, choice, "cost"), "cost")
     good = np.flatnonzero(judged.meets)
-    good = good if good.size else np.flatnonzero(judged.reach == PASSES)
+    good = good if good.size else np.flatnonzero(judged.admitted)
     if not good.size:
         return None
     row = choice.take(np.array([rng.choice(good)]))

@@ -6,8 +6,9 @@ figures, the checks and the declared choices are the engine's.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from itertools import chain, combinations
 
 import numpy as np
@@ -19,6 +20,7 @@ from optimizer.figures import evaluate
 from optimizer.request.types import Request
 from optimizer.search import corners, plain, spreads
 from optimizer.search import space as spaces
+from optimizer.search.result import SOURCES
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space
 from tests.search.test_corners import every_corner
@@ -29,7 +31,7 @@ Bools = NDArray[np.bool_]
 HIGHER = (*margins.AT_LEAST, *margins.DECIBELS, "phase_margin")
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class All:
     """The eligible settings of a space, and the value of every target (one array a target)."""
 
@@ -48,20 +50,37 @@ class All:
         meets = np.asarray(np.all(self.margins(limits) >= 0.0, axis=1))
         return meets & self.sourced(meets) if self.space.sources > 1 else meets
 
+    def can_meet(self, asked: Collection[str]) -> bool:
+        """Whether some setting meets the targets among `asked`; with second sources where those are too."""
+        limits = {name: limit for name, limit in self.space.limits.items() if name in asked}
+        alone = np.all(self.margins(limits) >= 0.0, axis=1)
+        return bool((self.meets(limits) if SOURCES in asked else alone).any())
+
     def sourced(self, meets: Bools) -> Bools:
         """Where makers enough have an op-amp of the same package and pinout among those that meet."""
-        o, d, *rest = self.choice.columns()
-        text = self.catalogs.opamps.text
-        makers: dict[Name, set[str]] = {}
-        sockets = []
+        sockets, makers = self.sockets, self.makers
+        known: dict[Name, set[str]] = {}
+        for row in np.flatnonzero(meets):
+            known.setdefault(sockets[row], set()).add(makers[row])
+        return np.array([len(known.get(socket, ())) >= self.space.sources for socket in sockets], dtype=bool)
+
+    @cached_property
+    def sockets(self) -> list[Name]:
+        """By setting, everything but the op-amp, and the package and pinout that it must have."""
+        o, *rest = self.choice.columns()
+        package, pinout = (self.catalogs.opamps.text[name] for name in ("package", "pinout"))
+        found: list[Name] = []
         for row in range(o.size):
-            outline = (str(text["package"][o[row]]), str(text["pinout"][o[row]]))
+            outline = (str(package[o[row]]), str(pinout[o[row]]))
             # what is blank fits nothing else
             fits = outline if all(outline) else (str(o[row]),)
-            sockets.append((*fits, int(d[row]), *(int(column[row]) for column in rest)))
-            if meets[row]:
-                makers.setdefault(sockets[-1], set()).add(str(text["maker"][o[row]]))
-        return np.array([len(makers.get(socket, ())) >= self.space.sources for socket in sockets], dtype=bool)
+            found.append((*fits, *(int(column[row]) for column in rest)))
+        return found
+
+    @cached_property
+    def makers(self) -> list[str]:
+        """By setting, the maker of the op-amp."""
+        return [str(maker) for maker in self.catalogs.opamps.text["maker"][self.choice.opamp]]
 
     def cheapest(self, limits: Mapping[str, float]) -> Name | None:
         """What a shortlist by cost with one row would show; None where nothing meets `limits`."""
@@ -105,22 +124,30 @@ def everything(request: Request, catalogs: Catalogs) -> All:
 
 def at_worst(space: Space, choice: Choice) -> tuple[dict[str, Floats], Bools]:
     """Every target at nominal, or at the worst of all corners; and where all of them are eligible."""
-    corners_too = space.request.tolerance.method == "corners"
     worst: dict[str, Floats] = {}
     fine = np.ones(choice.opamp.size, dtype=bool)
-    for corner in every_corner(space, choice) if corners_too else [{}]:
-        there, deviation = corners.deviations(space, choice, (corner,))
-        with np.errstate(all="ignore"):
-            moved = spreads.moved(space, there, deviation)
-            result = evaluate(space.bench, moved)
-            fine &= result.eligible & ~np.any(
-                list(spreads.moved_checks(space, there, moved).values()), axis=0
-            )
+    for figures, eligible in _evaluated(space, choice):
+        fine &= eligible
         for name in margins.TARGETS:
-            value = np.broadcast_to(result.figures[name], choice.opamp.shape)
+            value = np.broadcast_to(figures[name], choice.opamp.shape)
             least = np.minimum if name in HIGHER else np.maximum
             worst[name] = least(worst[name], value) if name in worst else np.array(value)
     return worst, fine
+
+
+def _evaluated(space: Space, choice: Choice) -> Iterator[tuple[Mapping[str, Floats], Bools]]:
+    """Figures and eligibility at nominal, then at each corner where corners are graded."""
+    with np.errstate(all="ignore"):
+        result = evaluate(space.bench, spaces.settings(space, choice))
+        yield result.figures, result.eligible
+        if space.request.tolerance.method != "corners":
+            return
+        for corner in every_corner(space, choice):
+            there, deviation = corners.deviations(space, choice, (corner,))
+            moved = spreads.moved(space, there, deviation)
+            result = evaluate(space.bench, moved)
+            outside = np.any(list(spreads.moved_checks(space, there, moved).values()), axis=0)
+            yield result.figures, result.eligible & ~outside
 
 
 def _choices(space: Space) -> Iterator[Choice]:
@@ -153,15 +180,34 @@ def front(every: All, rest: Mapping[str, float], target: str) -> list[tuple[floa
     return found
 
 
+def best(every: All, rest: Mapping[str, float], target: str) -> tuple[float, Name] | None:
+    """The best value of `target` with `rest` met, and its cheapest setting."""
+    points = front(every, rest, target)
+    return points[-1][1:] if points else None
+
+
 def sourced_front(every: All, rest: Mapping[str, float], target: str) -> list[tuple[float, float]]:
-    """Every (cost, value) such that no dearer limit than `value` can be met at `cost`: with second sources."""
-    values = every.values[target]
-    costs: dict[float, float] = {}
-    for value in sorted(set(values[~np.isnan(values)].tolist()), reverse=target not in HIGHER):
-        meets = every.meets({**rest, target: value})
-        if meets.any():
-            costs[float(every.values["cost"][meets].min())] = value
-    return sorted(costs.items())
+    """The front where a setting is worth what the least of its sources reaches: as many as are asked for,
+
+    each of another maker, the best of them.
+    """
+    better = 1.0 if target in HIGHER else -1.0
+    values = better * every.values[target]
+    meets = np.all(every.margins(rest) >= 0.0, axis=1) & ~np.isnan(values)
+    sockets, makers = every.sockets, every.makers
+    reach: dict[Name, dict[str, float]] = {}
+    for row in np.flatnonzero(meets):
+        known = reach.setdefault(sockets[row], {})
+        known[makers[row]] = max(known.get(makers[row], -np.inf), float(values[row]))
+    found: list[tuple[float, float]] = []
+    for level in np.unique(every.values["cost"][meets]):
+        for row in np.flatnonzero(meets & (every.values["cost"] == level)):
+            others = [v for maker, v in reach[sockets[row]].items() if maker != makers[row]]
+            sources = sorted(others, reverse=True)[: every.space.sources - 1]
+            value = min([float(values[row]), *sources])
+            if len(sources) == every.space.sources - 1 and (not found or value > found[-1][1]):
+                found = [*(one for one in found if one[0] < level), (float(level), value)]
+    return [(cost, better * value + 0.0) for cost, value in found]
 
 
 def minimal_conflicts(

@@ -18,7 +18,7 @@ from optimizer.figures import CHECKS, evaluate
 from optimizer.request.types import Request
 from optimizer.search import plain
 from optimizer.search import space as spaces
-from optimizer.search.best import FINE, Best
+from optimizer.search.best import Best
 from optimizer.search.finding import Finding
 from optimizer.search.lookup import Part, every
 from optimizer.search.roles import PASSES
@@ -145,7 +145,7 @@ def best_of(found: list[Setting], name: str) -> float | None:
 
 
 def same(said: Best, expected: float | None, name: str) -> bool:
-    """Whether a best value is proven, and right but for what FINE allows."""
+    """Whether a best value is proven, and right to a few ten-millionths."""
     if said.bound is not None or (said.value is None) != (expected is None):
         return False
     if said.value is None or expected is None:
@@ -155,7 +155,7 @@ def same(said: Best, expected: float | None, name: str) -> bool:
     scale = {"phase_margin": 30.0, "snr": 9.0, "dynamic_range": 9.0}.get(name, abs(expected))
     better = 1.0 if VOCABULARY[name].better == "higher" else -1.0
     short = better * (expected - said.value)
-    return -1e-12 * scale <= short <= 2.0 * FINE * scale
+    return -1e-12 * scale <= short <= 2e-7 * scale
 
 
 def differences(request: Request, catalogs: Catalogs, asked: Sequence[Part]) -> list[str]:

@@ -15,14 +15,17 @@ from optimizer.search.space import Choice
 from tests.search.looked_at import best_of, every_setting, instance, is_small, partners, same
 
 
-@pytest.mark.parametrize("steps", [0, 1, 3])
+@pytest.mark.parametrize("steps", [0, 1, 3, 1000])
 def test_an_unproven_value_is_bounded(steps: int, monkeypatch: pytest.MonkeyPatch) -> None:
-    """With hardly any steps for the search, the best of all settings lies between value and bound."""
+    """From two settings without a climb: with hardly any steps for the search, the best of all settings lies
+
+    between value and bound; with enough, the value is that best.
+    """
     monkeypatch.setattr(bests, "STEPS", steps)
     monkeypatch.setattr(bests, "SWEEPS", 0)
     monkeypatch.setattr(bests, "DRAWN", 2)
     unproven = 0
-    for seed in range(0, 40, 2):
+    for seed in range(0, 24, 2):
         request, catalogs = instance(seed)
         space = spaces.build(request, catalogs)
         opamps, diodes = (np.array(rows, dtype=np.int64) for rows in partners(space, ()))
@@ -42,4 +45,4 @@ def test_an_unproven_value_is_bounded(steps: int, monkeypatch: pytest.MonkeyPatc
             assert expected is not None
             low, high = sorted((said.value, said.bound))
             assert isnan(said.value) or low - 1e-6 * abs(low) <= expected <= high + 1e-6 * abs(high), name
-    assert unproven >= (10 if not steps else 0)
+    assert unproven >= 10 if not steps else unproven == 0 or steps < 1000

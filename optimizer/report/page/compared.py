@@ -1,44 +1,65 @@
-"""Parts that were asked about by name: what each reaches, what stops it."""
+"""Parts that were asked about by name: what stops each, what it reaches, where it comes closest."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
 
 from optimizer.errors import clean
-from optimizer.report.page.blocks import Cell, Part, Table, cells
-from optimizer.report.page.terms import term
-from optimizer.report.words import figure, margin_words
-from optimizer.review.findings import Compared, Reach
+from optimizer.report.answer import answer
+from optimizer.report.chosen import parts_list
+from optimizer.report.page.blocks import Block, Cell, Part, Table, Words, cells
+from optimizer.report.page.terms import in_terms, merged, term
+from optimizer.report.reached import proof, reach_columns
+from optimizer.report.whynot import check_rows
+from optimizer.review.findings import Compared
+from optimizer.search.eligibility import NOT_CHECKED, PASSED, Check
+from optimizer.search.finding import Finding
 
 
-def compared_part(found: Sequence[Compared], request: Mapping[str, Any]) -> Part:
-    """The part of a section on the parts that were named for comparison."""
-    rows = tuple(cells(*_row(part)) for part in found)
-    headings = ("part", "what stops it", "best margin", "closest with", "checks that it fails")
-    overview = Table("Parts named for comparison", headings, rows)
-    return Part("Why not these", (overview, *(_reached(part, request) for part in found if part.reaches)))
+def compared_parts(found: Sequence[Compared], request: Mapping[str, Any]) -> Iterator[Part]:
+    """One part of a section for each part that was named for comparison."""
+    for one in found:
+        yield Part(f"Why not {clean(one.name)}", tuple(_blocks(one, request)))
 
 
-def _row(part: Compared) -> tuple[str, ...]:
-    fails = "; ".join(f"{check}: {clean(words)}" for check, words in part.fails)
-    return (
-        clean(part.part),
-        "nothing, it meets the request" if part.stopped_by is None else term(part.stopped_by),
-        "-" if part.margin is None else margin_words(part.margin),
-        "-" if part.closest is None else clean(part.closest),
-        fails or "none",
+def _blocks(one: Compared, request: Mapping[str, Any]) -> Iterator[Block]:
+    finding, name = one.finding, clean(one.name)
+    if finding.impossible:
+        yield Words(f"No part could meet the request: {'; '.join(map(clean, finding.impossible))}.")
+        return
+    yield Words(in_terms(" ".join(answer(finding, one.data))))
+    failed = [check for check in _checks(finding) if check.verdict not in (PASSED, NOT_CHECKED)]
+    if failed:
+        rows = tuple(cells(*row) for row in check_rows(failed))
+        yield Table(f"Checks that {name} fails, or passes in part", ("check", "verdict", "numbers"), rows)
+    if finding.reaches and finding.largest is not None:
+        yield _reached(finding, name, request)
+        yield Words(in_terms(_sentences(proof(finding, request))), "note")
+        setting = parts_list(one.data["near_misses"][0], request)
+        caption = f"The setting of largest margin with {name}"
+        yield Table(caption, ("position", "part"), tuple(cells(*pair) for pair in merged(setting)))
+
+
+def _sentences(texts: Iterable[str]) -> str:
+    return " ".join(text if text.endswith(".") else f"{text}." for text in texts)
+
+
+def _checks(finding: Finding) -> Iterator[Check]:
+    for subject in finding.subjects:
+        yield from subject.checks
+    yield from finding.settings
+
+
+def _reached(finding: Finding, name: str, request: Mapping[str, Any]) -> Table:
+    columns = reach_columns(finding, request)
+    rows = tuple(
+        (
+            *cells(term(reach.name), *(column.cells[index] for column in columns[1:-1])),
+            Cell(columns[-1].cells[index], tone="" if reach.margin >= 0.0 else "bad"),
+        )
+        for index, reach in enumerate(finding.reaches)
     )
-
-
-def _reached(part: Compared, request: Mapping[str, Any]) -> Table:
-    headings = ("target", "limit", "best alone", "with the others", "margin there")
-    rows = tuple(_reach(reach, request) for reach in part.reaches)
-    caption = f"What {clean(part.part)} reaches of each target"
-    return Table(caption, headings, rows, numbers=frozenset({1, 2, 3}))
-
-
-def _reach(reach: Reach, request: Mapping[str, Any]) -> tuple[Cell, ...]:
-    numbers = (figure(reach.name, value, request) for value in (reach.limit, reach.alone, reach.together))
-    tone = "" if reach.margin >= 0.0 else "bad"
-    return (*cells(term(reach.name), *numbers), Cell(margin_words(reach.margin), tone=tone))
+    headings = tuple(column.heading.replace("\n", " ") for column in columns)
+    numbers = frozenset(index for index, column in enumerate(columns) if column.right)
+    return Table(f"What {name} reaches of each target", headings, rows, numbers)

@@ -12,8 +12,9 @@ from optimizer.report.page.blocks import Page
 from optimizer.report.page.decision import compliance, decision
 from optimizer.report.page.formulas import formulas
 from optimizer.report.page.grounds import limits, sources
+from optimizer.report.page.prices import prices
 from optimizer.report.page.spread import spread
-from optimizer.report.page.supply import exposure, prices
+from optimizer.report.page.supply import exposure
 from optimizer.report.words import count
 from optimizer.review.dossier import Dossier
 

@@ -13,7 +13,7 @@ from optimizer.report.chosen import parts_list
 from optimizer.report.corner import at_corner, corner_words, graded_value, has_corner
 from optimizer.report.notes import ORDERS
 from optimizer.report.page.blocks import Block, Cell, Facts, Part, Section, Table, Words, cells
-from optimizer.report.page.terms import counted, joined, money, term
+from optimizer.report.page.terms import arrows, counted, joined, merged, money, term
 from optimizer.report.words import beside, count, figure, margin_words, side, spoken, told_apart
 from optimizer.review.dossier import Dossier
 from optimizer.vocabulary import VOCABULARY
@@ -29,7 +29,7 @@ def decision(dossier: Dossier) -> Section:
     blocks.append(Words(_standing(dossier)))
     blocks.append(Facts(tuple(_strip(dossier)), "strip", "Key figures"))
     parts = parts_list(row, request)
-    rows = tuple(cells(*pair) for pair in _merged(parts))
+    rows = tuple(cells(*pair) for pair in merged(parts))
     build = Part("What to build", (Table("The receiver, part by part", ("position", "part"), rows),))
     return Section("decision", "Decision", tuple(blocks), (build, *_replaced(dossier), *_alternates(dossier)))
 
@@ -39,10 +39,10 @@ def _replaced(dossier: Dossier) -> Iterator[Part]:
     old, row = dossier.data.get("replaces", {}).get("candidate"), dossier.candidate
     if old is None or "changed" not in row:
         return
-    rows = tuple(cells(*pair) for pair in changes(old, row, row["changed"]))
+    rows = tuple(cells(name, arrows(said)) for name, said in changes(old, row, row["changed"]))
     caption = "What changes against the receiver that it replaces"
-    said = f"Kind of change: {clean(row['change'])}. Cost: {cost_words(old, row, dossier.request)}."
-    yield Part("What it replaces", (Words(said), Table(caption, ("position", "old -> new"), rows)))
+    said = f"Kind of change: {clean(row['change'])}. Cost: {arrows(cost_words(old, row, dossier.request))}."
+    yield Part("What it replaces", (Words(said), Table(caption, ("position", arrows("old -> new")), rows)))
 
 
 def _alternates(dossier: Dossier) -> Iterator[Part]:
@@ -69,12 +69,15 @@ def sentence(row: Mapping[str, Any], request: Mapping[str, Any]) -> str:
     targets = {target["name"]: target for target in row["targets"]}
     limiting = targets[row["limiting"]]
     met = "meets its one graded target" if len(targets) == 1 else f"meets all {counted(len(targets))} targets"
-    value, limit = beside(limiting["name"], graded_value(limiting), limiting["limit"], request)
-    corner = f" {at_corner(limiting)}" if at_corner(limiting) else ""
+    values = (graded_value(limiting), limiting["value"])
+    (value, nominal), limit = told_apart(limiting["name"], values, limiting["limit"], request)
+    corner, held = "", value
+    if at_corner(limiting):
+        corner, held = " at its worst corner", f"{value} there, {nominal} at nominal"
     return (
         f"Build the receiver with photodiode {named(row, 'photodiode')} and op-amp {named(row, 'opamp')}, "
         f"wired {row['wiring']}: it {met}, limited by {term(limiting['name'])} with "
-        f"{margin_words(limiting['margin'])}{corner} ({value}, {side(limiting['name'])} {limit})."
+        f"{margin_words(limiting['margin'])}{corner} ({held}, {side(limiting['name'])} {limit})."
     )
 
 
@@ -135,20 +138,9 @@ def _strip(dossier: Dossier) -> Iterator[tuple[str, str]]:
     yield "targets met", f"{met} of {len(targets)}"
     yield "limiting target", f"{term(row['limiting'])}, {margin_words(row['margin'])}"
     yield f"cost at {count(request['quantity'])} built", money(row["figures"]["cost"], data)
+    nominal = ", nominal" if any(has_corner(target) for target in targets) else ""
     for name in STRIP:
-        yield term(name), figure(name, row["figures"][name], request)
-
-
-def _merged(parts: list[tuple[str, str]]) -> Iterator[tuple[str, str]]:
-    """The parts list with words that go on joined to the line before."""
-    label, text = parts[0]
-    for following, words in parts[1:]:
-        if following:
-            yield label, text
-            label, text = following, words
-        else:
-            text = "; ".join(said for said in (text, words) if said)
-    yield label, text
+        yield f"{term(name)}{nominal}", figure(name, row["figures"][name], request)
 
 
 def compliance(dossier: Dossier) -> Section:
@@ -164,7 +156,11 @@ def compliance(dossier: Dossier) -> Section:
         numbers=frozenset(range(1, len(values) + 2)),
         marked=frozenset(i for i, target in enumerate(targets) if target["name"] == row["limiting"]),
     )
-    blocks: list[Block] = [Words(_limiting(row, request)), table, Words(_key(request), "note")]
+    blocks: list[Block] = [
+        Words(_limiting(row, request)),
+        table,
+        Words(_key(request, cornered=cornered), "note"),
+    ]
     if cornered:
         places = tuple(cells(term(target["name"]), _where(target)) for target in targets)
         blocks.append(Table("Where each target is worst", ("target", "worst corner"), places))
@@ -187,11 +183,12 @@ def _where(target: Mapping[str, Any]) -> str:
     return corner_words(target["corner"]) if target.get("corner") else "no corner is worse than nominal"
 
 
-def _key(request: Mapping[str, Any]) -> str:
+def _key(request: Mapping[str, Any], *, cornered: bool) -> str:
     comfort = show(request["ranking"]["comfort"], "fraction")
+    where = " Margins are those of the worst corner; all other figures on this page are nominal."
     return (
         "A margin is a fraction of the limit, so that unlike quantities compare; 0 is exactly met. From "
-        f"{comfort} up a margin is comfortable, and all such rank alike."
+        f"{comfort} up a margin is comfortable, and all such rank alike.{where if cornered else ''}"
     )
 
 

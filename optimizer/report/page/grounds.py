@@ -96,4 +96,12 @@ def _commands(dossier: Dossier) -> Iterator[str]:
     if "replaces" not in dossier.data:  # else the record of luxsift replace, which does not name its own
         yield printable(f"{search} --save {quote(place.record)}")
     rank = dossier.candidate["rank"]
-    yield printable(f"luxsift justify {quote(place.record)} --rank {rank} -o {quote(place.output)}")
+    compare = "".join(f" {_option('--compare', one.name)}" for one in dossier.findings.compared)
+    output = _option("-o", place.output)
+    yield printable(f"luxsift justify {quote(place.record)} --rank {rank}{compare} {output}")
+
+
+def _option(name: str, value: str) -> str:
+    """An option with its value, which may begin with a dash."""
+    joint = "=" if value.startswith("-") else " "
+    return f"{name}{joint}{quote(value)}"

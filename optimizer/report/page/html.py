@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from markupsafe import Markup
 
 TEMPLATES = Path(__file__).parent / "template"
-SHORT, MIDDLING, UNBROKEN = 10, 16, 18  # characters
+SHORT, MIDDLING, UNBROKEN, LONG = 10, 16, 18, 40  # characters
 NEEDS = 'an HTML page needs Jinja2 and matplotlib: pip install "luxsift[report]", or write it as .md'
 
 
@@ -59,12 +59,12 @@ def _drawn(figure: Figure) -> Markup:
 
 
 def _wrapping(text: str) -> str:
-    """How a cell may be folded: not at all, on paper only, between words, or anywhere."""
+    """How a cell may be folded: not at all, on paper only, between words (if long not narrowly), anywhere."""
     if len(text) <= SHORT:
         return "short"
     if max(len(word) for word in text.split()) > UNBROKEN:
         return "unbroken"
-    return "middling" if len(text) <= MIDDLING else ""
+    return "middling" if len(text) <= MIDDLING else "long" if len(text) > LONG else ""
 
 
 def _kind(block: Any) -> str:

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from optimizer.report.page.blocks import Block, Cell, Figure, Section, Table, Words, cells
 from optimizer.report.page.draw.spread import Panel, draw_spread
-from optimizer.report.page.terms import joined, term
+from optimizer.report.page.terms import in_terms, joined, term
 from optimizer.report.real_parts import sentences
 from optimizer.report.words import beside, count, figure, percent, side
 from optimizer.report.yields import yield_words
@@ -33,7 +33,7 @@ def spread(dossier: Dossier) -> Section | None:
         blocks.append(Words(f"{words}.", "alert", "Yield"))
     elif words:
         blocks.append(Words(f"{words}.", "lead"))
-    blocks.append(Words(" ".join(said)))
+    blocks.append(Words(in_terms(" ".join(said))))
     if dossier.findings.drawn and row.get("yield", {}).get("draws"):
         blocks.append(_figure(dossier.findings.drawn, dossier))
     return Section("tolerance", "Real parts", tuple(blocks))

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+import re
+from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from optimizer.errors import clean
+from optimizer.report.changes import ARROW
 from optimizer.report.words import figure
-from optimizer.vocabulary import VOCABULARY
+from optimizer.vocabulary import TARGETS, VOCABULARY
 
 CONTRIBUTIONS: Mapping[str, str] = {
     "feedback_resistor": "Rf thermal",
@@ -27,6 +29,32 @@ CONTRIBUTIONS: Mapping[str, str] = {
 def term(name: str) -> str:
     """What a target or figure is called in a sentence: 'phase margin', 'SNR'."""
     return VOCABULARY[name].heading if name in VOCABULARY else clean(name).replace("_", " ")
+
+
+_NAMES = "|".join(name for name in TARGETS if "_" in name or name == "snr")  # no words of every day
+_KEYS = re.compile(rf"(?<![\w/-])({_NAMES})(?![\w/-])")
+
+
+def in_terms(text: str) -> str:
+    """`text` with targets called as in a sentence, where it has them by their keys: 'phase_margin', 'snr'."""
+    return _KEYS.sub(lambda key: term(key[0]), text)
+
+
+def arrows(text: str) -> str:
+    """`text` with 'old -> new' written by a sign that no line end parts."""
+    return text.replace(ARROW, " \u2192 ")
+
+
+def merged(parts: Sequence[tuple[str, str]]) -> Iterator[tuple[str, str]]:
+    """A parts list with words that go on joined to the line before."""
+    label, text = parts[0]
+    for following, words in parts[1:]:
+        if following:
+            yield label, text
+            label, text = following, words
+        else:
+            text = "; ".join(said for said in (text, words) if said)
+    yield label, text
 
 
 def contribution(name: str) -> str:

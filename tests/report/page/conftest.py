@@ -4,7 +4,7 @@ import pytest
 
 from optimizer.report.page import compose, to_html
 from optimizer.review.dossier import Dossier
-from tests.report.page.made import CORNERS, HOSTILE, TOLERANCE, case, with_everything
+from tests.report.page.made import COMPARED, CORNERS, HOSTILE, MARKUP, SCRIPT, TOLERANCE, case
 
 
 @pytest.fixture(scope="session")
@@ -15,8 +15,8 @@ def dossier(tmp_path_factory: pytest.TempPathFactory) -> Dossier:
 
 @pytest.fixture(scope="session")
 def full(tmp_path_factory: pytest.TempPathFactory) -> Dossier:
-    """The same with tolerances and every other finding."""
-    return with_everything(case(tmp_path_factory.mktemp("full"), TOLERANCE).dossier)
+    """The same with tolerances, and beside other parts."""
+    return case(tmp_path_factory.mktemp("full"), TOLERANCE).weighed(COMPARED)
 
 
 @pytest.fixture(scope="session")
@@ -30,7 +30,7 @@ def hostile(tmp_path_factory: pytest.TempPathFactory) -> Dossier:
     """The same, its parts named so that they would do harm if they were not escaped."""
     name = 'name = "<script>alert(2)</script>"'
     folder = tmp_path_factory.mktemp("hostile")
-    return with_everything(case(folder, names=HOSTILE, title=name).dossier)
+    return case(folder, names=HOSTILE, title=name).weighed((SCRIPT, MARKUP))
 
 
 @pytest.fixture(scope="session")

@@ -1,16 +1,15 @@
-"""Dossiers of the starter: as it is, with tolerances, with every finding, and with awkward names."""
+"""Dossiers of the starter: as it is, with tolerances, with parts compared, and with awkward names."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from collections.abc import Sequence
+from dataclasses import dataclass
 from pathlib import Path
-
-import numpy as np
 
 from optimizer.cli import main
 from optimizer.review.dossier import Dossier, gather, place_of
-from optimizer.review.findings import Cloud, Compared, Exposed, Findings, Price, Reach
 from optimizer.review.reopen import Reopened, reopen
+from optimizer.review.weighing import weigh
 
 TOLERANCE = """
 [tolerance]
@@ -34,6 +33,8 @@ SCRIPT = "<script>alert(1)</script>"
 MARKUP = "a`b|c**d** ![x](http://made.up/x.png) $\\frac{1}{2}$ </svg><b>&amp;"
 LONG = "Q" * 180
 HOSTILE = {"photodiode": SCRIPT, "opamp": MARKUP}
+COMPARED = ("YZA-41", "YZA-31", "Yonderbeck Analog/YZA-22", "YZR-N")
+"""Parts of the starter: one fails a check, one misses a target, one meets, and a family of resistors."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +47,10 @@ class Case:
     @property
     def dossier(self) -> Dossier:
         return gather(self.reopened, place_of(self.record, self.reopened, "review.html"))
+
+    def weighed(self, compare: Sequence[str] = ()) -> Dossier:
+        """The dossier with everything that takes a search, and with parts to compare."""
+        return weigh(self.dossier, compare)
 
 
 def case(folder: Path, extra: str = "", *, names: dict[str, str] | None = None, title: str = TITLE) -> Case:
@@ -74,32 +79,3 @@ def _rename(catalog: Path, old: str, new: str) -> None:
     text = catalog.read_text("utf-8")
     assert f"\n{old}," in text
     catalog.write_text(text.replace(f"\n{old},", f"\n{quoted},"), "utf-8")
-
-
-def with_everything(dossier: Dossier) -> Dossier:
-    """The dossier with made-up findings of every kind besides those that it has."""
-    return replace(dossier, findings=replace(findings(), drawn=dossier.findings.drawn))
-
-
-def findings() -> Findings:
-    """Made-up findings, one or more of each kind, computed by nobody."""
-    rng = np.random.default_rng(5)
-    cost = np.sort(rng.uniform(1.0, 4.0, 60)).round(2)
-    cloud = Cloud(
-        cost, rng.uniform(0.0, 0.9, 60).round(3), tuple(f"YZ-{i}" for i in range(60)), complete=True
-    )
-    prices = (
-        Price("snr", 0.2, 36.8, 1.05, 0.11, (("opamp", "YZA-11 -> YZA-12"),)),
-        Price("snr", -0.5, 69.0, None, None),
-        Price("bandwidth", None, None, 0.98, 0.3),
-    )
-    exposure = (
-        Exposed("YZD-9", "photodiode", "active", 120.0, 200, 14.0, 1, 0, 0),
-        Exposed("YZA-11", "op-amp", "not-for-new-designs", None, 200, None, 2, 3, 5),
-    )
-    reaches = (Reach("snr", 46.0, 51.2, 44.1, -0.2), Reach("cost", 4.0, 1.2, 1.9, 0.4))
-    compared = (
-        Compared("YZA-99", (("stock", "40 in stock, 200 needed"),), (), "stock", None, None),
-        Compared("YZA-50", (), reaches, "snr", -0.2, "YZD-9"),
-    )
-    return Findings({}, cloud, prices, exposure, compared)

@@ -15,7 +15,7 @@ from playwright.sync_api import Browser, Page, ViewportSize, sync_playwright
 
 from optimizer.report.page import compose, to_html
 from optimizer.review.dossier import Dossier
-from tests.report.page.made import LONG, case, with_everything
+from tests.report.page.made import LONG, case
 
 pytestmark = pytest.mark.browser
 
@@ -61,7 +61,7 @@ def files(
     """The pages as files: as it is, with every finding, with awkward names, with endless ones."""
     folder = tmp_path_factory.mktemp("pages")
     names = {"photodiode": LONG, "opamp": LONG[:-1]}
-    endless = with_everything(case(folder / "endless", names=names).dossier)
+    endless = case(folder / "endless", names=names).weighed(tuple(names.values()))
     pages = {"plain": dossier, "full": full, "hostile": hostile, "endless": endless}
     for name, each in pages.items():
         (folder / f"{name}.html").write_text(to_html(compose(each)), "utf-8")

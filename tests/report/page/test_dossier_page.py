@@ -13,15 +13,19 @@ from optimizer.cli.arguments import parse
 from optimizer.margins import margin
 from optimizer.quantities import show
 from optimizer.record import Record
+from optimizer.report.answer import answer
 from optimizer.report.corner import at_corner
 from optimizer.report.page import compose
 from optimizer.report.page.blocks import Block, Code, Facts, Figure, Formulas, Page, Section, Table, Words
-from optimizer.report.page.terms import CONTRIBUTIONS, term
+from optimizer.report.page.terms import CONTRIBUTIONS, in_terms, money, term
+from optimizer.report.reached import reach_columns
+from optimizer.report.stepped import runs
 from optimizer.report.words import beside, figure, margin_words, told_apart
 from optimizer.review.dossier import Dossier
 from optimizer.review.findings import Findings
 from optimizer.review.reopen import Changed
 from optimizer.vocabulary import VOCABULARY
+from tests.report.page.made import COMPARED
 
 
 @pytest.fixture(scope="module")
@@ -125,7 +129,7 @@ def test_every_drawing_is_there_with_its_data(page: Page) -> None:
     assert figures(page).keys() == expected
     for key, drawing in figures(page).items():
         assert drawing.alternative.endswith("."), key
-        assert drawing.data is not None or key == "cloud"
+        assert drawing.data is not None, key
 
 
 def test_the_noise_budget_sums_to_the_recorded_noise(full: Dossier) -> None:
@@ -171,7 +175,12 @@ def test_corners_stand_beside_the_nominal_values(cornered: Dossier) -> None:
         assert len(place[1].text.split(", ")) == max(1, len(target["corner"]))
     limiting = next(t for t in cornered.candidate["targets"] if t["name"] == cornered.candidate["limiting"])
     assert at_corner(limiting)
-    assert at_corner(limiting) in words(section(page, "decision"))
+    assert at_corner(limiting) in words(section(page, "compliance"))
+    (worst, nominal), _limit = told_apart(
+        limiting["name"], (limiting["worst"], limiting["value"]), limiting["limit"], cornered.request
+    )
+    said = words(section(page, "decision"))
+    assert f"at its worst corner ({worst} there, {nominal} at nominal" in said
     assert "at the worst corner of these spreads" in words(section(page, "tolerance"))
 
 
@@ -193,6 +202,119 @@ def test_every_alternative_is_there_with_what_limits_or_stops_it(page: Page, ful
     for row in full.data["near_misses"]:
         mine = next(texts for texts in every if texts[0] == str(row["rank"]))
         assert "misses by" in " ".join(mine)
+
+
+def test_the_cloud_names_the_cheapest_the_widest_and_the_front(page: Page, full: Dossier) -> None:
+    cloud, drawing = full.findings.cloud, figures(page)["cloud"]
+    assert cloud is not None
+    assert cloud.complete
+    assert f"The {cloud.cost.size} pairs that meet the request" in drawing.alternative
+    assert drawing.data is not None
+    assert [row[0].text for row in drawing.data.rows] == np.array(cloud.names)[cloud.front].tolist()
+    row = full.candidate
+    chosen = f"stands at {money(row['figures']['cost'], full.data)} and {margin_words(row['margin'])}."
+    assert chosen in drawing.alternative
+
+
+def test_a_cloud_that_is_cut_short_is_not_called_everything(full: Dossier) -> None:
+    cloud = full.findings.cloud
+    assert cloud is not None
+    cut = replace(full, findings=replace(full.findings, cloud=replace(cloud, complete=False)))
+    drawing = figures(compose(cut))["cloud"]
+    assert "everything" not in drawing.title
+    assert f"The {cloud.cost.size} lowest in cost of the pairs" in drawing.alternative
+    assert "more meet" in drawing.alternative
+
+
+def test_a_setting_that_is_not_the_cheapest_of_its_pair_is_said_to_be_so(full: Dossier) -> None:
+    row = {**full.candidate, "figures": {**full.candidate["figures"], "cost": 3.0}}
+    said = figures(compose(replace(full, candidate=row)))["cloud"].alternative
+    assert "in a setting that is not the cheapest of its pair" in said
+    assert "not the cheapest of its pair" not in figures(compose(full))["cloud"].alternative
+
+
+def test_every_part_named_for_comparison_is_answered(page: Page, full: Dossier) -> None:
+    parts = {part.heading: part for part in section(page, "alternatives").parts}
+    for one in full.findings.compared:
+        part = parts[f"Why not {one.name}"]
+        texts = [block.text for block in part.blocks if isinstance(block, Words)]
+        for sentence in answer(one.finding, one.data):
+            assert in_terms(sentence) in texts[0]
+        captions = [block.caption for block in part.blocks if isinstance(block, Table)]
+        assert any("reaches" in caption for caption in captions) == bool(one.finding.reaches)
+    assert "is not eligible: it fails supply" in str(parts["Why not YZA-41"])
+    assert "SNR" in str(parts["Why not YZA-31"])
+
+
+def test_what_a_part_reaches_is_the_same_as_on_a_terminal(page: Page, full: Dossier) -> None:
+    one = next(one for one in full.findings.compared if one.name == "YZA-31")
+    part = next(p for p in section(page, "alternatives").parts if p.heading == "Why not YZA-31")
+    table = next(b for b in part.blocks if isinstance(b, Table) and "reaches" in b.caption)
+    columns = reach_columns(one.finding, full.request)
+    assert [row[0].text for row in table.rows] == [term(name) for name in columns[0].cells]
+    for place, column in enumerate(columns[1:], 1):
+        assert tuple(row[place].text for row in table.rows) == column.cells
+
+
+def test_every_step_of_every_target_has_its_cost(page: Page, full: Dossier) -> None:
+    found, table = full.findings.prices, next(tables(section(page, "prices")))
+    assert found is not None
+    assert found.base is not None
+    base = figure("cost", found.base.figures["cost"], full.request)
+    assert [row[0].text for row in table.rows] == [term(row.target) for row in found.rows]
+    for row, said in zip(found.rows, table.rows, strict=True):
+        texts = [cell.text for cell in said[2:]]
+        assert float(texts.pop(texts.index(next(t for t in texts if t.startswith(base))))) > 0.0
+        for step, text in zip(row.steps, texts, strict=True):
+            if step.candidate is None:
+                assert text == "none"
+            elif not step.changes:
+                assert text == "same"
+            else:
+                assert float(text) == pytest.approx(step.candidate.figures["cost"], rel=5e-3)
+
+
+def test_what_the_steps_change_is_said_once_for_neighbours(page: Page, full: Dossier) -> None:
+    found = full.findings.prices
+    assert found is not None
+    _overview, changed = tables(section(page, "prices"))
+    moving = [row for row in found.rows if any(step.changes or not step.candidate for step in row.steps)]
+    assert [row[0].text for row in changed.rows] == [
+        term(row.target) for row in moving for _run in runs(row.steps)
+    ]
+    still = [term(row.target) for row in found.rows if row not in moving]
+    for name in still:
+        assert name in words(section(page, "prices"))
+    assert "It is the one justified here" in words(section(page, "prices"))
+
+
+def test_the_prices_say_where_another_row_is_justified(full: Dossier) -> None:
+    other = replace(full, candidate=full.data["candidates"][1])
+    assert "It is not the one justified here" in words(section(compose(other), "prices"))
+
+
+def test_the_supply_of_every_part_is_there(page: Page, full: Dossier) -> None:
+    (table,) = tables(section(page, "exposure"))
+    for part, row in zip(full.findings.exposure, table.rows, strict=True):
+        assert row[0].text.startswith(part.part)
+        assert [cell.text for cell in row[6:9]] == [str(part.makers), str(part.drop_ins), str(part.values)]
+        assert ("no substitute" in row[9].text) == part.alone
+        assert (part.part in words(section(page, "exposure"))) == part.alone
+
+
+def test_a_near_miss_that_lacks_sources_alone_says_so(full: Dossier) -> None:
+    row = {**full.data["candidates"][1], "rank": 9, "missed": ["opamp_sources"]}
+    request = {**full.request, "resilience": {"opamp_sources": 2}}
+    record = Record({**full.data, "request": request, "near_misses": [row]})
+    every = [
+        cell.text for table in tables(compose(replace(full, record=record))) for r in table.rows for cell in r
+    ]
+    assert "op-amps of 1 of 2 makers serve, in this package and pinout" in every
+
+
+def test_targets_are_called_as_in_a_sentence() -> None:
+    assert in_terms("full_scale misses; snr (1 dB), slew") == "full scale misses; SNR (1 dB), slew"
+    assert in_terms("photodiode snr-7 or my_snr") == "photodiode snr-7 or my_snr"
 
 
 def test_assumptions_and_cautions_are_there(page: Page, full: Dossier) -> None:
@@ -223,6 +345,7 @@ def test_the_commands_are_commands(page: Page, full: Dossier) -> None:
     assert search.request == full.place.request
     assert (search.by, search.show) == ("cost", str(full.request["ranking"]["show"]))
     assert (justify.command, justify.record, justify.rank) == ("justify", search.save, "1")
+    assert tuple(justify.compare) == COMPARED
 
 
 def test_changed_inputs_are_said_first_and_in_the_table(full: Dossier) -> None:

@@ -14,6 +14,7 @@ from optimizer.report.page.draw.canvas import (
     INK,
     LIMIT,
     LINES,
+    PAPER,
     QUIET,
     RULE,
     apart,
@@ -72,7 +73,7 @@ def _bars(axes: Axes, rows: Sequence[Bars], values: np.ndarray) -> None:
 def draw_cloud(cloud: Cloud, chosen: tuple[float, float], comfort: float, key: str) -> str:
     """Cost against margin of everything that met the request, the chosen candidate ringed.
 
-    Margins are drawn up to `comfort`, from where on they rank alike.
+    Margins from `comfort` up rank alike and are drawn there; a stepped line joins the front.
     """
     with settings():
         figure = canvas(3.4)
@@ -80,13 +81,16 @@ def draw_cloud(cloud: Cloud, chosen: tuple[float, float], comfort: float, key: s
         axes.set_title("Margin over cost")
         dots = np.minimum(cloud.margin, comfort)
         axes.plot(cloud.cost, dots, marker="o", markersize=3.5, linestyle="none", color=LINES[0], alpha=0.7)
+        best = cloud.front
+        axes.step(cloud.cost[best], dots[best], where="post", color=QUIET, linewidth=1.0)
         axes.axhline(comfort, color=LIMIT, linewidth=0.9, linestyle=DASHES[1])
         at = (chosen[0], min(chosen[1], comfort))
         axes.plot([at[0]], [at[1]], marker="o", markersize=10, markerfacecolor="none", color=INK)
-        axes.annotate("chosen", at, xytext=(9, 4), textcoords="offset points")
+        ground = {"facecolor": PAPER, "edgecolor": "none", "pad": 1.0}
+        axes.annotate("chosen", at, xytext=(0, 10), textcoords="offset points", ha="center", bbox=ground)
         axes.set_xlabel("cost")
         axes.set_ylabel("margin")
-        axes.set_ylim(0.0, 1.06 * comfort)
+        axes.set_ylim(0.0, min(1.06 * comfort, 1.5 * max(float(dots.max()), at[1], 0.1 * comfort)))
         units(axes.xaxis, "price")
         units(axes.yaxis, "fraction")
         grid(axes)
