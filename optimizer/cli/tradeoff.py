@@ -106,8 +106,8 @@ def _save(found: Tradeoff | Front, csv: str | None) -> OutputError | None:
 
 
 def _print(found: Tradeoff | Front, about: dict[str, Any], options: TradeoffOptions) -> None:
-    from optimizer.report.terminal import width_of
     from optimizer.report.front import front_lines
+    from optimizer.report.terminal import width_of
     from optimizer.report.tradeoff import tradeoff_lines
     from optimizer.search.front import Front
 

@@ -38,11 +38,17 @@ def conflict_lines(found: Conflicts | None, data: Mapping[str, Any], width: int)
 def _sets(found: Conflicts, width: int) -> list[Text]:
     out = styled("Targets that cannot hold together, the smallest sets first", width, BOLD)
     for names in found.sets:
-        out += styled(f"- {' and '.join(names)}", width, indent="  ")
+        out += styled(f"- {listed(names)}", width, indent="  ")
     if not found.complete:
-        count = len(found.sets)
-        out += styled(f"Only {count} sets were looked for; there may be more, none of them smaller.", width)
+        text = f"There are more; these {len(found.sets)} were looked for, and none of the others is smaller."
+        out += styled(text, width)
     return out
+
+
+def listed(names: Sequence[str]) -> str:
+    """Names in running text: 'bandwidth, snr and cost'."""
+    *most, last = names
+    return f"{', '.join(most)} and {last}" if most else last
 
 
 def _relaxations(every: Sequence[Relaxation], data: Mapping[str, Any], width: int) -> list[Text]:

@@ -24,7 +24,15 @@ def best_words(reach: Reach, found: Best, request: Request) -> str:
     if math.isnan(found.value):
         return NONE
     said, _limit = beside(reach.name, found.value, reach.limit, request)
-    return said if found.bound is None else said + UNPROVEN
+    return said + UNPROVEN if is_open(reach, found, request) else said
+
+
+def is_open(reach: Reach, found: Best, request: Request) -> bool:
+    """Whether something better than the value shown is not ruled out: its bound reads otherwise."""
+    if found.bound is None or found.value is None or math.isnan(found.value):
+        return found.bound is not None
+    shown, most = (figure(reach.name, value, request) for value in (found.value, found.bound))
+    return shown != most
 
 
 def limit_words(reach: Reach, request: Request) -> str:
@@ -73,7 +81,7 @@ def proof(finding: Finding, request: Request) -> Iterator[str]:
     )
     for reach in finding.reaches:
         for how, found in (("alone", reach.alone), ("with the others met", reach.together)):
-            if found.bound is not None:
+            if is_open(reach, found, request):
                 yield f"{UNPROVEN} {reach.name} {how}: {_bound(reach, found, request)}"
 
 

@@ -56,9 +56,9 @@ def tradeoff_lines(found: Tradeoff, data: Mapping[str, Any], width: int) -> list
 
 def _covered(found: Tradeoff) -> str:
     return (
-        f"Decided {count(found.questions)} sets of limits, each over {spoken(found.combinations)} combinations, "
-        f"in {found.seconds:.3g} s; {count(found.evaluated)} settings evaluated, the others excluded by proven "
-        "bounds."
+        f"Decided {count(found.questions)} sets of limits, each over {spoken(found.combinations)} "
+        f"combinations, in {found.seconds:.3g} s; {count(found.evaluated)} settings evaluated, the others "
+        "excluded by proven bounds."
     )
 
 
@@ -134,9 +134,8 @@ def _changed(found: Tradeoff, data: Mapping[str, Any], width: int) -> list[Text]
         for run in runs(row.steps):
             if _says(run[0], found):
                 out += [Text(f"  {line}") for line in _run(row, run, found, data, width - 2)]
-    if still:
-        said = "No step of these changes the receiver" if found.base else "Nothing meets at any step of these"
-        out += styled(f"{said}: {', '.join(still)}.", width)
+    if still and found.base is not None:
+        out += styled(f"No step of these changes the receiver: {', '.join(still)}.", width)
     return out
 
 

@@ -39,7 +39,7 @@ SWEEPS = 12
 """Changes of one axis at a time that a climb takes at most."""
 PATIENCE = 6
 """Steps after which a search that finds nothing better gives way to a climb."""
-STEPS = 128
+STEPS = 96
 """Steps of the search, of some thousand boxes each, that one value may take to be proven."""
 
 _LEAST_POSSIBLE = ("peaking", "offset", "supply_current", "cost")

@@ -50,34 +50,71 @@ class Relaxation:
 class Conflicts:
     """Why nothing meets: `sets` of targets that cannot hold together, minimal, the smallest first.
 
-    `complete` is False where there may be more sets than were looked for; all smaller than the last are
-    there. Nothing is `eligible` where no setting passes the checks even without targets.
+    `complete` is False where there are more sets than were looked for; all smaller than the last are
+    there. Nothing is `eligible` where no setting passes the checks even without targets. `evaluated`
+    counts settings.
     """
 
     sets: tuple[tuple[str, ...], ...]
     relaxations: tuple[Relaxation, ...]
     complete: bool = True
     eligible: bool = True
+    evaluated: int = 0
 
 
 def conflicts(ground: Ground, limits: Mapping[str, float]) -> tuple[Conflicts, tuple[Choice, ...]]:
     """Why nothing on `ground` meets `limits`; and the settings of the relaxations that there are."""
-    eased = [_relaxation(ground, limits, name) for name in limits]
+    work = _Work(ground, _unsourced(ground), limits)
+    eased = [_relaxation(work, name) for name in limits]
     choices = tuple(choice for _, choice in eased if choice is not None)
-    known = [_met_by(ground, choice, limits) for choice in choices]
+    known = [work.met_by(choice) for choice in choices]
+    names = tuple(limits)
     if ground.space.sources > 1:
-        known += [frozenset({*limits, SOURCES}) - {one.target} for one, choice in eased if choice is not None]
-    names = (*limits, SOURCES) if ground.space.sources > 1 else tuple(limits)
-    sets, complete = minimal(names, _oracle(ground, limits), known)
+        names = (*names, SOURCES)
+        known += [frozenset(names) - {one.target} for one, choice in eased if choice is not None]
+    sets, complete = minimal(names, work.witness, known)
     eligible = sets != ((),)
-    found = Conflicts(sets if eligible else (), tuple(one for one, _ in eased), complete, eligible)
-    return found, choices
+    relaxations = tuple(one for one, _ in eased)
+    return Conflicts(sets if eligible else (), relaxations, complete, eligible, work.evaluated), choices
+
+
+@dataclass(slots=True)
+class _Work:
+    """What is looked into: `limits` on `ground`, or `alone` where one source is enough."""
+
+    ground: Ground
+    alone: Ground
+    limits: Mapping[str, float]
+    evaluated: int = 0
+
+    def witness(self, asked: Names) -> Sequence[Names]:
+        """Look for any setting that meets `asked` (the sources, where those are among them)."""
+        where = self.ground if SOURCES in asked else self.alone
+        some = {name: limit for name, limit in self.limits.items() if name in asked}
+        found = first(where, under(where, some), Rules("cost", 1, 0.0), any_will_do=True)
+        self.evaluated += found.evaluated
+        return (asked, self.met_by(found.choice)) if found.cost.size else ()
+
+    def met_by(self, choice: Choice) -> Names:
+        """The targets that one eligible setting meets."""
+        values = valued(self.ground.space, choice, tuple(self.limits)).values[0]
+        pairs = zip(self.limits.items(), values, strict=True)
+        return frozenset(name for (name, limit), value in pairs if margins.margin(name, value, limit) >= 0.0)
+
+    def eased(self, target: tuple[str, float], least: float) -> tuple[Choice, float] | None:
+        """The setting with the best value of a target (name, limit), at margin `least` or more; others met."""
+        name, against = target
+        rest = {other: limit for other, limit in self.limits.items() if other != name}
+        asked = under(self.ground, {name: against}, musts=rest)
+        found = first(self.ground, asked, Rules("margin", 1, least))
+        self.evaluated += found.evaluated
+        return (found.choice, value_of(asked, found.choice, name)) if found.cost.size else None
 
 
 def minimal(
     names: Sequence[str], witness: Witness, known: Sequence[Names], most: int = MOST_SETS
 ) -> tuple[tuple[tuple[str, ...], ...], bool]:
-    """The minimal sets of `names` that `witness` finds nothing for, and whether they are all.
+    """The minimal sets of `names` that `witness` finds nothing for, and whether they are all (at `most`).
 
     `known` are sets that can be met. The empty set is the only one where even that cannot be.
     """
@@ -85,10 +122,10 @@ def minimal(
     for tried in _by_size(names):
         if any(tried <= one for one in met) or any(one <= tried for one in failed):
             continue
-        if len(failed) == most:
-            return _in_order(failed, names), False
         found = witness(tried)
         met += found
+        if not found and len(failed) == most:
+            return _in_order(failed, names), False
         if not found:
             failed.append(tried)
     return _in_order(failed, names), True
@@ -103,21 +140,6 @@ def _in_order(sets: Sequence[Names], names: Sequence[str]) -> tuple[tuple[str, .
     return tuple(tuple(name for name in names if name in one) for one in sets)
 
 
-def _oracle(ground: Ground, limits: Mapping[str, float]) -> Witness:
-    """Look for any setting that meets some of `limits` (and the sources, where those are among them)."""
-    alone = _unsourced(ground)
-
-    def witness(asked: Names) -> Sequence[Names]:
-        where = ground if SOURCES in asked else alone
-        some = {name: limit for name, limit in limits.items() if name in asked}
-        found = first(where, under(where, some), Rules("cost", 1, 0.0), any_will_do=True)
-        if not found.choice.opamp.size:
-            return ()
-        return (asked, _met_by(ground, found.choice, limits))
-
-    return witness
-
-
 def _unsourced(ground: Ground) -> Ground:
     """`ground` where one source is enough."""
     if ground.space.sources < 2:
@@ -127,40 +149,22 @@ def _unsourced(ground: Ground) -> Ground:
     return replace(ground, asked=asked, pairs=pairs_of(asked.index, *asked.eligible, by="cost"))
 
 
-def _met_by(ground: Ground, choice: Choice, limits: Mapping[str, float]) -> Names:
-    """The targets that one eligible setting meets."""
-    values = valued(ground.space, choice, tuple(limits)).values[0]
-    pairs = zip(limits.items(), values.tolist(), strict=True)
-    return frozenset(name for (name, limit), v in pairs if margins.margin(name, np.array(v), limit) >= 0.0)
-
-
-def _relaxation(ground: Ground, limits: Mapping[str, float], name: str) -> tuple[Relaxation, Choice | None]:
+def _relaxation(work: _Work, name: str) -> tuple[Relaxation, Choice | None]:
     """The least relaxation of target `name`, and its setting.
 
     A hunt gives the best value only up to what margins tell apart, so another asks for a better one.
     """
-    limit, best = limits[name], None
+    limit, best = work.limits[name], None
     for start, least in ((steps.far_below(name, limit), 0.0), (steps.loosest(name), -1.0)):
-        found = _eased(ground, limits, (name, start), least)
+        found = work.eased((name, start), least)
         if found is not None:
             break
     while found is not None:
         best, value = found
         against = steps.stricter(name, value)
-        found = None if against is None else _eased(ground, limits, (name, against), 0.0)
+        found = None if against is None else work.eased((name, against), 0.0)
     if best is None:
         return Relaxation(name, limit), None
-    candidate = assemble.candidates(ground.space, ground.catalogs, best)[0]
+    candidate = assemble.candidates(work.ground.space, work.ground.catalogs, best)[0]
     margin = float(np.round(margins.raw_margin(name, np.array(value), limit), 9))
     return Relaxation(name, limit, value, margin, candidate), best
-
-
-def _eased(
-    ground: Ground, limits: Mapping[str, float], target: tuple[str, float], least: float
-) -> tuple[Choice, float] | None:
-    """The setting with the best value of a target (name, limit) at a margin of `least`, the others met."""
-    name, against = target
-    rest = {other: limit for other, limit in limits.items() if other != name}
-    asked = under(ground, {name: against}, musts=rest)
-    found = first(ground, asked, Rules("margin", 1, least))
-    return (found.choice, value_of(asked, found.choice, name)) if found.cost.size else None

@@ -122,7 +122,8 @@ def front(request: Request, catalogs: Catalogs, target: str, *, progress: Report
     hits = list(_corners(_walked(walk, progress)))
     points = tuple(_point(ground, (target, limit), hit) for hit in hits)
     why = None if points else conflicts(ground, rest)[0]
-    spent = (walk.evaluated, time.perf_counter() - begun)
+    evaluated = walk.evaluated + (0 if why is None else why.evaluated)
+    spent = (evaluated, time.perf_counter() - begun)
     return Front(target, limit, tuple(rest), points, *spent, known, why)
 
 

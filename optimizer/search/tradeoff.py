@@ -110,7 +110,7 @@ def tradeoff(request: Request, catalogs: Catalogs, *, progress: Report | None = 
         known,
         space.combinations,
         table.questions.size,
-        table.work.evaluated,
+        table.work.evaluated + (0 if why is None else why.evaluated),
         time.perf_counter() - begun,
     )
 

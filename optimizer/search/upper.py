@@ -28,14 +28,13 @@ from optimizer.search.bounds import (
     tightened,
 )
 from optimizer.search.output_noise import output_floor
-from optimizer.search.resonance import least_square, lines
 from optimizer.search.view import View
 
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 
 _NEWTON_STEPS = 5
-EARLIER = (1.0, 0.6, 0.35, 0.15)
+EARLIER = (1.0, 0.2)
 """Where the response is looked at, as shares of the square of the frequency in question."""
 _STEPS = 5
 """Bisections between level and comfort that place the bound on the bandwidth margin."""
@@ -130,7 +129,7 @@ def _ceilings(v: View, state: _State, goals: Goals, *, level: Floats, snr: Float
     limits = {**goals.musts, **goals.limits}
     scale = margins.PHASE_SCALE
     bounds: dict[str, Callable[[], Floats]] = {
-        "bandwidth": lambda: _bandwidth(v, (left, c), goals, level),
+        "bandwidth": lambda: _bandwidth(v, c, goals, level),
         "snr": lambda: margins.raw_margin("snr", snr, limits["snr"]),
         "dynamic_range": lambda: margins.raw_margin(
             "dynamic_range", _dynamic_range(v, state, goals), limits["dynamic_range"]
@@ -179,9 +178,8 @@ def _slew(v: View, left: Narrow, goals: Goals) -> Floats:
     return v.slew_rate / (np.pi * frequency * amplitude)
 
 
-def _bandwidth(v: View, state: tuple[Narrow, Coefficients], goals: Goals, level: Floats) -> Floats:
+def _bandwidth(v: View, c: Coefficients, goals: Goals, level: Floats) -> Floats:
     """The margin up to comfort that the bandwidth can have: where |H| is certainly below H0/sqrt 2."""
-    c, straight = state[1], lines(v, *state)
     target = 2.0 * np.pi * _limit(goals, "bandwidth")
     if "bandwidth" not in goals.limits:
         level = np.zeros_like(level)
@@ -190,13 +188,12 @@ def _bandwidth(v: View, state: tuple[Narrow, Coefficients], goals: Goals, level:
         real = np.maximum(np.maximum(1.0 - c.e2_high * x, c.e2_low * x - 1.0), 0.0)
         imaginary = np.maximum(np.maximum(c.e1_low - c.e3_high * x, c.e3_low * x - c.e1_high), 0.0)
         poles = (1.0 + v.pole**2 * x) * (1.0 + v.lag_low**2 * x)
-        square = real**2 + x * imaginary**2
-        return np.asarray(square * poles > 2.0 * (1.0 + 1e-9))
+        return np.asarray((real**2 + x * imaginary**2) * poles > 2.0 * (1.0 + 1e-9))
 
     def excluded(margin: Floats) -> Bools:
         # a response that falls below earlier and rises again in a resonance has the lower bandwidth
         x = (target * np.maximum(1.0 + margin, 0.0)) ** 2
-        return np.any([below(part * x) for part in EARLIER], axis=0)
+        return np.asarray(np.any([below(part * x) for part in EARLIER], axis=0))
 
     low, high = level, np.full(level.shape, goals.comfort)
     # just above the level first: margins that cannot exceed it are then known to tie with it

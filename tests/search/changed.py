@@ -88,24 +88,36 @@ class All:
         if not meets.size:
             return None
         cost = self.values["cost"][meets]
+        meets = meets[cost == cost.min()]
+        table = self.margins(limits)[meets]
+        first = np.sort(np.minimum(table, self.space.comfort), axis=1)
         best: dict[Name, Row] = {}
-        for place in meets[cost == cost.min()].tolist():
-            row = self.row(place, limits)
-            if row.pair not in best or self.rank(row) < self.rank(best[row.pair]):
-                best[row.pair] = row
+        for pair in set(
+            zip(self.choice.opamp[meets].tolist(), self.choice.diode[meets].tolist(), strict=True)
+        ):
+            own = np.flatnonzero(
+                (self.choice.opamp[meets] == pair[0]) & (self.choice.diode[meets] == pair[1])
+            )
+            rows = [self.row(int(meets[i]), tuple(table[i].tolist())) for i in own[_first_of(first[own])]]
+            best[pair] = min(rows, key=self.rank)
         return min(best.values(), key=lambda row: between(row, "cost", self.space)).name
 
-    def row(self, place: int, limits: Mapping[str, float]) -> Row:
-        """One setting with its margins against `limits`."""
+    def row(self, place: int, graded: tuple[float, ...] = ()) -> Row:
+        """One setting with its margins."""
         ranked_by = {"cost": float(self.values["cost"][place])}
-        graded = tuple(float(margins.margin(n, self.values[n][place], v)) for n, v in limits.items()) or (
-            margins.LARGEST,
-        )
-        return _row(self.space, self.catalogs, self.choice, place, (ranked_by, graded))
+        return _row(self.space, self.catalogs, self.choice, place, (ranked_by, graded or (margins.LARGEST,)))
 
     def rank(self, row: Row) -> Name:
         """The order within a pair."""
         return (*ranked(row, "cost", self.space), *row.ties)
+
+
+def _first_of(table: Floats) -> Bools:
+    """The rows that come first by sorted margins, the larger first, so that only they need be ranked."""
+    first = np.ones(table.shape[0], dtype=bool)
+    for column in table.T:
+        first &= column == column[first].max()
+    return first
 
 
 def everything(request: Request, catalogs: Catalogs) -> All:
@@ -174,7 +186,7 @@ def front(every: All, rest: Mapping[str, float], target: str) -> list[tuple[floa
         value = values[alike].max()
         if value > highest:
             highest = value
-            rows = [every.row(int(place), {}) for place in alike[values[alike] == value]]
+            rows = [every.row(int(place)) for place in alike[values[alike] == value]]
             first = min(rows, key=lambda row: (row.pair, row.ties))
             found.append((float(level), float(better * value) + 0.0, first.name))
     return found

@@ -169,6 +169,11 @@ def shifted(module: object, name: str, amount: float) -> Callable[[pytest.Monkey
     return apply
 
 
+def swapped(module: object, name: str, value: object) -> Callable[[pytest.MonkeyPatch], None]:
+    """Mutate a constant of the bounds."""
+    return lambda patch: patch.setattr(module, name, value)
+
+
 def louder(name: str, factor: float) -> Callable[[pytest.MonkeyPatch], None]:
     """Mutate one field of the noise floor."""
 
@@ -197,6 +202,7 @@ MUTANTS = {
     "flicker of fast noise half as loud again": scaled(bounds, "flicker_span", 1.5),
     "noise at the output 3 % too loud": scaled(upper, "output_floor", 1.06),
     "lead of the network 1 deg too small": shifted(upper, "_lead", -0.0175),
+    "crossover whatever Rf half as high again": scaled(upper, "_slowest", 1.5),
     "phase margin 1 deg too low": shifted(upper, "_phase_margin", -1.0),
     "crossover half as high again": scaled(upper, "_crossover", 1.5),
     "peaking 0.05 dB too high": shifted(upper, "_peaking", 0.05),
@@ -206,6 +212,7 @@ MUTANTS = {
     "error slope twice too steep": scaled(upper, "error_slope", 2.0),
     "error that does not grow doubled": scaled(upper, "error_offset", 2.0),
     "gain 2 % too low": scaled(upper, "_gain_low", 1.02),
+    "response looked at above the bandwidth": swapped(upper, "EARLIER", (1.0, 1.4)),
     "slack forgotten, and more": shifted(upper, "_decibels", -0.05),
 }
 
