@@ -19,7 +19,7 @@ WALK, PAGES = "walk.txt", ("review.html", "review.md")
 
 _DRAWING = re.compile(r"<svg\b.*?</svg>", re.DOTALL)
 _MOMENT = re.compile(r"\d{4}-\d\d-\d\d[T ]\d\d:\d\d(:\d\d)?(\+00:00| UTC)?")
-_SEARCHED = re.compile(r" in \S+ s, [\d,]+\s+of\s+them\s+evaluated,")
+_SEARCHED = re.compile(r"\sin\s\S+?\ss,\s[\d,]+\s+of\s+them\s+evaluated,")
 _VERSION = re.compile(r"luxsift (\d+\.\d+\.\d+\S*|unknown)")
 
 

@@ -8,13 +8,13 @@ from typing import Any
 from rich.text import Text
 
 from optimizer.errors import clean
-from optimizer.report.layout import Column, fit, lines
+from optimizer.report.layout import Column
 from optimizer.report.paragraphs import styled
-from optimizer.report.stepped import as_row
+from optimizer.report.stepped import BOLD, as_row, stacked
 from optimizer.report.words import beside, figure, side
 from optimizer.search.conflicts import Conflicts, Relaxation
 
-BOLD, BAD = "bold", "bold red"
+BAD = "bold red"
 
 
 def cannot_lines(reasons: Sequence[str], width: int) -> list[Text]:
@@ -58,10 +58,7 @@ def _relaxations(every: Sequence[Relaxation], data: Mapping[str, Any], width: in
     out = []
     if helpful:
         title = "The smallest relaxation of one target alone that lets something through"
-        columns = list(_columns(helpful, data["request"]))
-        widths = fit(columns, width)
-        out = styled(title, width, BOLD) + [Text(line, BOLD) for line in lines(columns, widths, -1)]
-        out += [Text(line) for row in range(len(helpful)) for line in lines(columns, widths, row)]
+        out = styled(title, width, BOLD) + stacked(list(_columns(helpful, data["request"])), width)
     if helpless:
         which = "No single target helps, not even dropped"
         text = (
@@ -85,5 +82,7 @@ def _columns(eased: Sequence[Relaxation], request: Mapping[str, Any]) -> Iterato
 
 
 def relaxed(one: Relaxation) -> str:
-    """How far a target must be eased, in margin: '52 %'."""
-    return "-" if one.margin is None else f"{-one.margin * 100:.3g} %"
+    """How far a target must be eased, in margin: '52 %'; what is not all of it is not rounded to it."""
+    if one.margin is None:
+        return "-"
+    return "over 99.9 %" if -1.0 < one.margin < -0.999 else f"{-one.margin * 100:.3g} %"

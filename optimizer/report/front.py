@@ -10,10 +10,10 @@ from rich.text import Text
 
 from optimizer.errors import clean
 from optimizer.quantities import show
-from optimizer.report.conflicts import BOLD, cannot_lines, conflict_lines
-from optimizer.report.layout import Column, fit, lines
+from optimizer.report.conflicts import cannot_lines, conflict_lines
+from optimizer.report.layout import Column
 from optimizer.report.paragraphs import styled
-from optimizer.report.stepped import as_row, ending, in_currency, joined
+from optimizer.report.stepped import BOLD, as_row, ending, in_currency, joined, stacked
 from optimizer.report.words import count, figure, margin_words, several, side
 from optimizer.search.front import Front, Point
 
@@ -63,9 +63,7 @@ def _points(front: Front, data: Mapping[str, Any], width: int) -> list[Text]:
         Column("Rf", tuple(show(row["feedback_resistance"], "resistance") for row in rows), right=True),
         Column("Cf", tuple(_placed(row["feedback_capacitance"]) for row in rows), right=True),
     ]
-    widths = fit(columns, width)
-    out = [Text(line, BOLD) for line in lines(columns, widths, -1)]
-    return out + [Text(line) for place in range(len(rows)) for line in lines(columns, widths, place)]
+    return stacked(columns, width)
 
 
 def _meets(point: Point) -> bool:

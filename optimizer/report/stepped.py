@@ -11,6 +11,7 @@ from rich.text import Text
 from optimizer.errors import clean
 from optimizer.record.build import candidate_row, plain
 from optimizer.report.cautions import cautions, left_out
+from optimizer.report.layout import GAP, Column, fit, lines
 from optimizer.report.paragraphs import styled
 from optimizer.report.words import figure, margin_words
 from optimizer.search.result import Candidate
@@ -18,6 +19,8 @@ from optimizer.search.tradeoff import Row, Step, differences
 
 SAME, NONE = "same", "none"
 LEAST = " to spare"
+BOLD = "bold"
+INDENT, LEAST_COLUMN = 4, 8
 
 
 def as_row(candidate: Candidate) -> dict[str, Any]:
@@ -87,6 +90,37 @@ def margins_words(run: Sequence[Step]) -> str:
     margins = sorted(step.candidate.margin for step in run if step.candidate is not None)
     least, most = margin_words(margins[0]), margin_words(margins[-1])
     return least if least == most else f"{least.removesuffix(LEAST)} to {most}"
+
+
+def stacked(columns: Sequence[Column], width: int) -> list[Text]:
+    """A table; columns that find no room stand on further lines, under a row's first and moved in."""
+    groups = _parted(columns, width)
+    inner = [width if place == 0 else width - INDENT for place in range(len(groups))]
+    widths = [fit(group, room, LEAST_COLUMN) for group, room in zip(groups, inner, strict=True)]
+    out = []
+    for row in range(-1, len(columns[0].cells)):
+        for place, (group, own) in enumerate(zip(groups, widths, strict=True)):
+            lead = " " * INDENT if place else ""
+            out += [
+                Text(f"{lead}{line}".rstrip(), BOLD if row < 0 else "") for line in lines(group, own, row)
+            ]
+    return out
+
+
+def _parted(columns: Sequence[Column], width: int) -> list[list[Column]]:
+    groups: list[list[Column]] = [[]]
+    for column in columns:
+        room = width if len(groups) == 1 else width - INDENT
+        if groups[-1] and sum(map(_least, groups[-1])) + _least(column) + GAP * len(groups[-1]) > room:
+            groups.append([])
+        groups[-1].append(column)
+    return groups
+
+
+def _least(column: Column) -> int:
+    """The least width that a column takes."""
+    heading = max(map(len, column.heading.split("\n")))
+    return min(column.width, max(LEAST_COLUMN, heading)) if column.gives else column.width
 
 
 def in_currency(data: Mapping[str, Any]) -> str:

@@ -10,10 +10,11 @@ from rich.text import Text
 from optimizer.errors import clean
 from optimizer.report.cells import named
 from optimizer.report.changes import short
-from optimizer.report.conflicts import BAD, BOLD, cannot_lines, conflict_lines
-from optimizer.report.layout import Column, fit, lines
+from optimizer.report.conflicts import BAD, cannot_lines, conflict_lines
+from optimizer.report.layout import Column
 from optimizer.report.paragraphs import paragraph, styled
 from optimizer.report.stepped import (
+    BOLD,
     NONE,
     SAME,
     as_row,
@@ -25,6 +26,7 @@ from optimizer.report.stepped import (
     margins_words,
     moves,
     runs,
+    stacked,
     steps_words,
 )
 from optimizer.report.words import count, figure, margin_words, side, spoken, told_apart
@@ -93,11 +95,8 @@ def _overview(found: Tradeoff, data: Mapping[str, Any], width: int) -> list[Text
             for row in rows
         )
         columns.append(Column(_short(step.step), tuple(cells), right=True))
-    widths = fit(columns, width)
     title = f"Lowest cost{in_currency(data)} with one target moved or dropped and all others as stated"
-    out = styled(title, width, BOLD)
-    out += [Text(line, BOLD) for line in lines(columns, widths, -1)]
-    out += [Text(line) for row in range(len(rows)) for line in lines(columns, widths, row)]
+    out = styled(title, width, BOLD) + stacked(columns, width)
     same = f"{SAME}: the same receiver; " if found.base is not None else ""
     return out + styled(f"{same}{NONE}: nothing meets. {MEANING}", width)
 

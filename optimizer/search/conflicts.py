@@ -102,7 +102,7 @@ class _Work:
         return frozenset(name for (name, limit), value in pairs if margins.margin(name, value, limit) >= 0.0)
 
     def eased(self, target: tuple[str, float], least: float) -> tuple[Choice, float] | None:
-        """The setting with the best value of a target (name, limit), at margin `least` or more; others met."""
+        """The setting with the best value of a target (name, limit) at margin `least`, the others met."""
         name, against = target
         rest = {other: limit for other, limit in self.limits.items() if other != name}
         asked = under(self.ground, {name: against}, musts=rest)

@@ -16,6 +16,7 @@ from hypothesis import strategies as st
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request, Resilience
+from optimizer.search import steps
 from optimizer.search.conflicts import MOST_SETS, Conflicts, Names, Relaxation, minimal
 from optimizer.search.result import SOURCES
 from optimizer.search.tradeoff import tradeoff
@@ -113,6 +114,21 @@ def test_a_target_that_no_setting_meets_conflicts_with_itself() -> None:
     assert offset.candidate is not None
     assert offset.value == offset.candidate.figures["offset"]
     assert offset.limit == 1e-9
+
+
+def test_the_least_relaxation_does_not_hang_on_what_one_hunt_tells_apart(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """Against a limit so loose that all margins are the largest, a hunt takes the cheapest of all."""
+    hard = replace(GOOD, targets=replace(GOOD.targets, offset=1e-9))
+    parts = made.catalogs([made.opamp(), made.opamp(part="YZA-2", offset_voltage=0.1e-3, price=[(1.0, 9.0)])])
+    usual = found_for(hard, parts)
+    with monkeypatch.context() as patch:
+        patch.setattr("optimizer.search.steps.far_below", lambda name, _limit: steps.loosest(name))
+        assert found_for(hard, parts).relaxations == usual.relaxations
+    eased = next(one for one in usual.relaxations if one.target == "offset")
+    assert eased.candidate is not None
+    assert eased.candidate.opamp == "YZA-2"
 
 
 def test_nothing_is_eligible() -> None:
