@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator, Mapping
 from typing import Any
 
@@ -11,7 +10,7 @@ from optimizer.report.checks import check_words, listed
 from optimizer.report.misses import missed_words
 from optimizer.report.notes import at_every_corner
 from optimizer.report.reached import best_words
-from optimizer.report.words import beside, figure, margin_words, side
+from optimizer.report.words import beside, figure, margin_words, several, side
 from optimizer.search.best import Best
 from optimizer.search.eligibility import FAILED
 from optimizer.search.finding import CORNERS, Finding, Reach
@@ -64,7 +63,7 @@ def _without_setting(finding: Finding) -> str:
         return "is eligible, but nothing in the catalogs that it could be paired with is"
     if finding.stopped_by == CORNERS:
         return "is eligible at nominal values, but in no setting at every corner of the spreads"
-    return f"has no eligible setting: {finding.stopped_by}"
+    return "has no eligible setting"
 
 
 def _refusals(finding: Finding) -> str:
@@ -117,7 +116,7 @@ def _place(finding: Finding, record: Record) -> Iterator[str]:
         yield "Nothing else in the catalogs meets the request."
         return
     if place.rank is None:
-        where = f"It stands below the {place.rows} rows that the shortlist by {by} shows"
+        where = f"It stands below the {several(place.rows, 'row')} of the shortlist by {by}"
     elif place.listed:
         where = f"It is row {place.rank} of the shortlist by {by}"
     else:
@@ -159,30 +158,36 @@ def _stops(finding: Finding, record: Record) -> Iterator[str]:
     request = record["request"]
     failed = [check for check in finding.settings if check.verdict == FAILED]
     for check in failed:
-        yield f"{check.key}: {check_words(check)}."
+        yield f"The setting that gets furthest fails {check.key}: {check_words(check)}."
     if finding.best is not None or finding.largest is None or finding.largest.margin >= 0.0:
         return
     hopeless = [reach for reach in finding.reaches if _misses(reach, reach.alone)]
     if hopeless:
         said = "; ".join(f"{r.name} ({_best_of(r, r.alone, request)})" for r in hopeless)
         yield f"Out of reach even alone, whatever the others do: {said}."
-    single = [r for r in finding.reaches if r.together.value is not None and _misses(r, r.together)]
+    single = [reach for reach in finding.reaches if reach.together.value is not None]
     if single:
         said = "; ".join(f"{r.name} ({_best_of(r, r.together, request)})" for r in single)
-        which = "This target alone stands" if len(single) == 1 else "Each of these targets alone stands"
-        yield f"{which} in the way, for all others can be met together: {said}."
-    elif not hopeless:
-        yield "Each target can be met alone; no single one, if dropped, would let it through."
+        which = "this one target" if len(single) == 1 else "any one of these targets"
+        yield f"Dropping {which} would let it through. With all others met: {said}."
+    else:
+        each = "Each target can be met alone, but d" if all(map(_met_alone, finding.reaches)) else "D"
+        yield f"{each}ropping no single target would let it through."
 
 
 def _misses(reach: Reach, found: Best) -> bool:
-    """Whether the best value, or what bounds it, misses the limit."""
-    if found.value is None:
-        return False
+    """Whether the best value is proven to miss the limit."""
     most = found.value if found.bound is None else found.bound
-    if math.isnan(most):
-        return True
-    return most < reach.limit if side(reach.name) == "at least" else most > reach.limit
+    return most is not None and not _holds(reach, most)
+
+
+def _met_alone(reach: Reach) -> bool:
+    return reach.alone.value is not None and _holds(reach, reach.alone.value)
+
+
+def _holds(reach: Reach, value: float) -> bool:
+    """Whether a value meets the limit; one that does not exist (NaN) does not."""
+    return value >= reach.limit if side(reach.name) == "at least" else value <= reach.limit
 
 
 def _best_of(reach: Reach, found: Best, request: Mapping[str, Any]) -> str:

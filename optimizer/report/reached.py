@@ -75,19 +75,26 @@ def _corners(finding: Finding) -> bool:
 
 def proof(finding: Finding, request: Request) -> Iterator[str]:
     """What is proven, and the bounds of what is not."""
+    open_ = list(_open(finding, request))
+    save = f", those marked {UNPROVEN} apart," if open_ else ""
     yield (
-        f"Proven over every setting of {several(finding.pairs, 'pair')}: none beats a best value by more "
-        "than a ten-millionth of it, and none has a smallest margin above that of the setting shown below."
+        f"Proven over every setting of {several(finding.pairs, 'pair')}: none reads better than a best value"
+        f"{save} and none has a smallest margin above that of the setting shown below."
     )
+    if open_:
+        yield f"{UNPROVEN} found, but not proven the best: {'; '.join(open_)}."
+
+
+def _open(finding: Finding, request: Request) -> Iterator[str]:
+    """What bounds the values that are not proven."""
     for reach in finding.reaches:
         for how, found in (("alone", reach.alone), ("with the others met", reach.together)):
             if is_open(reach, found, request):
-                yield f"{UNPROVEN} {reach.name} {how}: {_bound(reach, found, request)}"
+                yield f"{reach.name} {how} is {_bound(reach, found, request)}"
 
 
 def _bound(reach: Reach, found: Best, request: Request) -> str:
     if found.bound is None or math.isinf(found.bound):
-        return "found, but not proven the best"
-    most = figure(reach.name, found.bound, request)
+        return "not bounded"
     never = "above" if side(reach.name) == "at least" else "below"
-    return f"found, but not proven the best; proven is only that it is never {never} {most}"
+    return f"never {never} {figure(reach.name, found.bound, request)}"

@@ -13,7 +13,7 @@ from optimizer.report.answer import answer, called
 from optimizer.report.cautions import cautions, left_out
 from optimizer.report.checks import check_words
 from optimizer.report.chosen import parts_list
-from optimizer.report.layout import Column, fit, lines
+from optimizer.report.layout import GAP, Column, fit, lines
 from optimizer.report.notes import filled, impossible_lines
 from optimizer.report.paragraphs import paragraph, styled
 from optimizer.report.reached import proof, reach_columns
@@ -23,6 +23,8 @@ from optimizer.search.finding import Finding, Subject, Wired
 
 HEADING, BAD, GOOD = "bold", "red", "green"
 MEETS, MISSES = "bold", "bold red"
+REACHED = 4
+"""Columns of what can be reached; those of the setting of largest margin follow."""
 
 
 def whynot_lines(finding: Finding, record: Mapping[str, Any], width: int) -> list[Text]:
@@ -135,9 +137,16 @@ def _reached(finding: Finding, record: Mapping[str, Any], width: int) -> list[Te
     if not finding.reaches or finding.largest is None:
         return []
     columns = reach_columns(finding, record["request"])
+    tables = [columns]
+    if not _fits(columns, width):
+        tables = [columns[:REACHED], (columns[0], *columns[REACHED:])]
     title = styled("What is reached of each target", width, HEADING)
     notes = [line for text in proof(finding, record["request"]) for line in styled(text, width)]
-    return title + _table(columns, width) + notes
+    return title + [line for table in tables for line in _table(table, width)] + notes
+
+
+def _fits(columns: Sequence[Column], width: int) -> bool:
+    return sum(fit(columns, width - 2)) + GAP * (len(columns) - 1) <= width - 2
 
 
 def _setting(record: Mapping[str, Any], width: int) -> list[Text]:

@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 
 from optimizer import margins
 from optimizer.search import hunt as hunting
+from optimizer.search.corners import active
 from optimizer.search.hunt import Hunt, Rules
 from optimizer.search.query import Query, graded
 from optimizer.search.space import Choice
@@ -35,12 +36,14 @@ So no setting beats that value by more than this fraction of it (3e-6 deg, 1e-6 
 
 DRAWN = 4096
 """Random settings to climb from."""
+DRAWN_AT_CORNERS = 128
+"""The same where each has to be evaluated at every corner."""
 SWEEPS = 12
 """Changes of one axis at a time that a climb takes at most."""
 PATIENCE = 6
 """Steps after which a search that finds nothing better gives way to a climb."""
 STEPS = 96
-"""Steps of the search, of some thousand boxes each, that one value may take to be proven."""
+"""Steps of the search, of some thousand boxes each, that a value alone may take; with the others, twice."""
 
 _LEAST_POSSIBLE = ("peaking", "offset", "supply_current", "cost")
 """Targets that nothing can take below 0."""
@@ -61,11 +64,12 @@ def ground(asked: Query, opamps: Ints, diodes: Ints, hints: Choice) -> Ground:
     """What to climb on: random eligible settings (the same ones every time) and the eligible `hints`."""
     space = asked.space
     rng = np.random.default_rng(0)
+    drawn = DRAWN_AT_CORNERS if active(space) else DRAWN
     sizes = (space.contexts.size, space.resistors.size, space.capacitors.size, space.low_passes.size)
     columns = (
-        rng.choice(opamps, DRAWN),
-        rng.choice(diodes, DRAWN),
-        *(rng.integers(s, size=DRAWN) for s in sizes),
+        rng.choice(opamps, drawn),
+        rng.choice(diodes, drawn),
+        *(rng.integers(n, size=drawn) for n in sizes),
     )
     start = Choice(*(np.concatenate(both) for both in zip(hints.columns(), columns, strict=True)))
     names = tuple(space.limits)
@@ -86,7 +90,7 @@ class Best:
 
 def best(on: Ground, name: str, musts: Mapping[str, float]) -> Best:
     """The best value of target `name` among eligible settings that meet `musts`."""
-    top, left = _highest(on, name, musts, on.known), 8 * STEPS if musts else STEPS
+    top, left = _highest(on, name, musts, on.known), 2 * STEPS if musts else STEPS
     while True:
         if top is not None:
             top = _climbed(on, name, musts, top)
@@ -128,18 +132,26 @@ def _score(on: Ground, name: str, musts: Mapping[str, float], among: Valued) -> 
 def _climbed(on: Ground, name: str, musts: Mapping[str, float], top: Valued) -> Valued:
     """The best that changes along one axis at a time lead to from `top`."""
     for _ in range(SWEEPS):
-        around = valued(on.asked.space, _neighbours(on, top.choice), on.names)
-        found = _highest(on, name, musts, around)
-        if found is None or not _above(on, name, found, top):
+        found = _highest(on, name, musts, _better(on, name, musts, top))
+        if found is None:
             return top
         top = found
     return top
 
 
-def _above(on: Ground, name: str, found: Valued, top: Valued) -> bool:
-    _, height = _score(on, name, {}, found)
-    _, before = _score(on, name, {}, top)
-    return bool(height[0] > before[0])
+def _better(on: Ground, name: str, musts: Mapping[str, float], top: Valued) -> Valued:
+    """The neighbours of `top` that are better and meet `musts`.
+
+    Values only get worse from corner to corner, so those that are no better at nominal are dropped first.
+    """
+    _, least = _score(on, name, {}, top)
+
+    def useful(given: Valued) -> NDArray[np.bool_]:
+        misses, height = _score(on, name, musts, given)
+        return np.asarray((misses >= 0.0) & (height > least[0]))
+
+    around = valued(on.asked.space, _neighbours(on, top.choice), on.names, useful)
+    return around.take(useful(around))
 
 
 def _neighbours(on: Ground, one: Choice) -> Choice:

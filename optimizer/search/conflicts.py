@@ -9,7 +9,7 @@ that fails then is minimal. A search ends at the first setting found, or proves 
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from itertools import combinations
 
 import numpy as np
@@ -19,6 +19,7 @@ from optimizer.search import assemble, steps
 from optimizer.search.feed import pairs_of
 from optimizer.search.ground import Ground, first, under, value_of
 from optimizer.search.hunt import Rules
+from optimizer.search.query import Query
 from optimizer.search.result import SOURCES, Candidate
 from optimizer.search.space import Choice
 from optimizer.search.valued import valued
@@ -64,18 +65,16 @@ class Conflicts:
 
 def conflicts(ground: Ground, limits: Mapping[str, float]) -> tuple[Conflicts, tuple[Choice, ...]]:
     """Why nothing on `ground` meets `limits`; and the settings of the relaxations that there are."""
+    names = (*limits, SOURCES) if ground.space.sources > 1 else tuple(limits)
     work = _Work(ground, _unsourced(ground), limits)
-    eased = [_relaxation(work, name) for name in limits]
-    choices = tuple(choice for _, choice in eased if choice is not None)
-    known = [work.met_by(choice) for choice in choices]
-    names = tuple(limits)
-    if ground.space.sources > 1:
-        names = (*names, SOURCES)
-        known += [frozenset(names) - {one.target} for one, choice in eased if choice is not None]
-    sets, complete = minimal(names, work.witness, known)
+    without = {name: work.witness(frozenset(names) - {name}) for name in names}
+    eased = [_relaxation(work, name) for name in limits if without[name]]
+    sets, complete = minimal(names, work.witness, [one for met in without.values() for one in met])
     eligible = sets != ((),)
-    relaxations = tuple(one for one, _ in eased)
-    return Conflicts(sets if eligible else (), relaxations, complete, eligible, work.evaluated), choices
+    helped = {one.target: one for one, _ in eased}
+    relaxations = tuple(helped.get(name, Relaxation(name, limit)) for name, limit in limits.items())
+    found = Conflicts(sets if eligible else (), relaxations, complete, eligible, work.evaluated)
+    return found, tuple(choice for _, choice in eased)
 
 
 @dataclass(slots=True)
@@ -85,10 +84,16 @@ class _Work:
     ground: Ground
     alone: Ground
     limits: Mapping[str, float]
+    known: dict[Names, Sequence[Names]] = field(default_factory=dict)
     evaluated: int = 0
 
     def witness(self, asked: Names) -> Sequence[Names]:
         """Look for any setting that meets `asked` (the sources, where those are among them)."""
+        if asked not in self.known:
+            self.known[asked] = self._witness(asked)
+        return self.known[asked]
+
+    def _witness(self, asked: Names) -> Sequence[Names]:
         where = self.ground if SOURCES in asked else self.alone
         some = {name: limit for name, limit in self.limits.items() if name in asked}
         found = first(where, under(where, some), Rules("cost", 1, 0.0), any_will_do=True)
@@ -103,12 +108,22 @@ class _Work:
 
     def eased(self, target: tuple[str, float], least: float) -> tuple[Choice, float] | None:
         """The setting with the best value of a target (name, limit) at margin `least`, the others met."""
-        name, against = target
-        rest = {other: limit for other, limit in self.limits.items() if other != name}
-        asked = under(self.ground, {name: against}, musts=rest)
+        asked = self._alone(target)
         found = first(self.ground, asked, Rules("margin", 1, least))
         self.evaluated += found.evaluated
-        return (found.choice, value_of(asked, found.choice, name)) if found.cost.size else None
+        return (found.choice, value_of(asked, found.choice, target[0])) if found.cost.size else None
+
+    def can(self, target: tuple[str, float]) -> bool:
+        """Whether some setting meets a target (name, limit) with the others met."""
+        found = first(self.ground, self._alone(target), Rules("cost", 1, 0.0), any_will_do=True)
+        self.evaluated += found.evaluated
+        return bool(found.cost.size)
+
+    def _alone(self, target: tuple[str, float]) -> Query:
+        """One target graded against another limit, the others to be met."""
+        name, against = target
+        rest = {other: limit for other, limit in self.limits.items() if other != name}
+        return under(self.ground, {name: against}, musts=rest)
 
 
 def minimal(
@@ -149,22 +164,22 @@ def _unsourced(ground: Ground) -> Ground:
     return replace(ground, asked=asked, pairs=pairs_of(asked.index, *asked.eligible, by="cost"))
 
 
-def _relaxation(work: _Work, name: str) -> tuple[Relaxation, Choice | None]:
-    """The least relaxation of target `name`, and its setting.
+def _relaxation(work: _Work, name: str) -> tuple[Relaxation, Choice]:
+    """The least relaxation of target `name`, which helps if it is dropped, and its setting.
 
-    A hunt gives the best value only up to what margins tell apart, so another asks for a better one.
+    A hunt gives the best value only up to what margins tell apart, so a better one is asked for.
     """
-    limit, best = work.limits[name], None
-    for start, least in ((steps.far_below(name, limit), 0.0), (steps.loosest(name), -1.0)):
-        found = work.eased((name, start), least)
-        if found is not None:
-            break
-    while found is not None:
-        best, value = found
-        against = steps.stricter(name, value)
-        found = None if against is None else work.eased((name, against), 0.0)
-    if best is None:
-        return Relaxation(name, limit), None
-    candidate = assemble.candidates(work.ground.space, work.ground.catalogs, best)[0]
+    limit = work.limits[name]
+    found = work.eased((name, steps.far_below(name, limit)), 0.0)
+    found = found or work.eased((name, steps.loosest(name)), -1.0)
+    assert found is not None, name
+    better: tuple[Choice, float] | None = found
+    while better is not None:
+        found, better = better, None
+        against = steps.stricter(name, found[1])
+        if against is not None and work.can((name, against)):
+            better = work.eased((name, against), 0.0)
+    choice, value = found
+    candidate = assemble.candidates(work.ground.space, work.ground.catalogs, choice)[0]
     margin = float(np.round(margins.raw_margin(name, np.array(value), limit), 9))
-    return Relaxation(name, limit, value, margin, candidate), best
+    return Relaxation(name, limit, value, margin, candidate), choice

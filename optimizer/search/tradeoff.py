@@ -97,7 +97,7 @@ def tradeoff(request: Request, catalogs: Catalogs, *, progress: Report | None = 
     why = None
     if table.work.best.found[0]:
         table.solve(table.dropped)
-        table.settle()
+        table.solve(table.loosest)
         table.solve(table.open)
     else:
         why, choices = conflicts(ground, space.limits)
@@ -155,13 +155,21 @@ class _Table:
         """The questions that are not settled."""
         return [k for k in range(self.questions.size) if k not in self.settled]
 
+    @property
+    def loosest(self) -> list[int]:
+        """Of each target the loosest open question to either side of the stated limit: they settle others."""
+        sides = (part for chain in _chains(self.questions) for part in _split(chain))
+        open_ = ([k for k in side if k not in self.settled] for side in sides)
+        return [side[0] for side in open_ if side]
+
     def solve(self, asked: Sequence[int]) -> None:
         """Settle the questions `asked`."""
         self.asked = len(asked)
         many.solve(self.work, np.array(asked, dtype=np.int64), self._watch)
         self.settled |= set(asked)
+        self._settle()
 
-    def settle(self) -> None:
+    def _settle(self) -> None:
         """Settle, and set floors, by what is known of looser limits of the same target."""
         best = self.work.best
         for chain in _chains(self.questions):
@@ -197,6 +205,12 @@ def _chains(questions: Questions) -> Iterator[list[int]]:
     each, loose = len(steps.STEPS), 1 + len(steps.RELAXED)
     for begin in range(1, questions.size, each):
         yield [*range(begin, begin + loose), 0, *range(begin + loose, begin + each)]
+
+
+def _split(chain: Sequence[int]) -> tuple[Sequence[int], Sequence[int]]:
+    """A chain up to the request as it stands, and from there."""
+    middle = chain.index(0)
+    return chain[:middle], chain[middle + 1 :]
 
 
 def _candidates(table: _Table) -> list[Candidate | None]:

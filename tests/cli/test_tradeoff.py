@@ -11,6 +11,8 @@ import pytest
 
 import optimizer as lux
 from optimizer.cli import main
+from optimizer.cli.options import tradeoff as options
+from optimizer.search.front import AGAINST
 
 Capture = pytest.CaptureFixture[str]
 
@@ -116,6 +118,21 @@ def test_a_bad_option_is_named_before_any_work(
     out, err = capsys.readouterr()
     assert out == ""
     assert said in err
+
+
+def test_slew_is_no_figure_without_a_bandwidth_target(request_file: Path, capsys: Capture) -> None:
+    text = request_file.read_text("utf-8")
+    kept = [line for line in text.splitlines() if not line.startswith(("bandwidth =", "slew ="))]
+    path = request_file.with_name("edited.toml")
+    path.write_text("\n".join(kept), "utf-8")
+    assert main(["tradeoff", str(path), "--against", "slew"]) == 2
+    out, err = capsys.readouterr()
+    assert out == ""
+    assert "slew needs a bandwidth target" in err
+
+
+def test_the_targets_offered_are_those_of_the_search() -> None:
+    assert options.AGAINST == AGAINST
 
 
 def test_a_request_that_is_not_there(tmp_path: Path, capsys: Capture) -> None:
