@@ -16,8 +16,8 @@ from optimizer.cli.progress import watch
 from optimizer.errors import InputError, OutputError, Problem
 
 if TYPE_CHECKING:
-    from optimizer.search.front import Front
-    from optimizer.search.tradeoff import Tradeoff
+    from optimizer.search.weigh.front import Front
+    from optimizer.search.weigh.tradeoff import Tradeoff
     from optimizer.study import Study
 
 MEETS, NOTHING_MEETS = 0, 1
@@ -63,16 +63,16 @@ def _no_figure(study: Study, against: str | None) -> list[Problem]:
 
 def _asked(study: Study, options: TradeoffOptions, watcher: Any) -> Tradeoff | Front:
     if options.against is None:
-        from optimizer.search.tradeoff import tradeoff as table
+        from optimizer.search.weigh.tradeoff import tradeoff as table
 
         return table(study.request, study.catalogs, progress=watcher)
-    from optimizer.search.front import front
+    from optimizer.search.weigh.front import front
 
     return front(study.request, study.catalogs, options.against, progress=watcher)
 
 
 def _meets(found: Tradeoff | Front) -> bool:
-    from optimizer.search.front import Front
+    from optimizer.search.weigh.front import Front
 
     return found.meets if isinstance(found, Front) else found.base is not None
 
@@ -92,7 +92,7 @@ def _save(found: Tradeoff | Front, csv: str | None) -> OutputError | None:
         return None
     from optimizer.record import write_text
     from optimizer.report.tradeoff_csv import front_csv, tradeoff_csv
-    from optimizer.search.front import Front
+    from optimizer.search.weigh.front import Front
 
     text = front_csv(found) if isinstance(found, Front) else tradeoff_csv(found)
     try:
@@ -109,7 +109,7 @@ def _print(found: Tradeoff | Front, about: dict[str, Any], options: TradeoffOpti
     from optimizer.report.front import front_lines
     from optimizer.report.terminal import width_of
     from optimizer.report.tradeoff import tradeoff_lines
-    from optimizer.search.front import Front
+    from optimizer.search.weigh.front import Front
 
     stream = sys.stderr if options.csv == STANDARD_OUTPUT else sys.stdout
     width = width_of(stream)

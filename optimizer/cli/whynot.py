@@ -25,8 +25,8 @@ def whynot(parsed: argparse.Namespace) -> int:
     from optimizer.record.whynot import as_record
     from optimizer.report.terminal import width_of
     from optimizer.report.whynot import whynot_lines
-    from optimizer.search.whynot import steps as name_steps
-    from optimizer.search.whynot import whynot as look_into
+    from optimizer.search.inquiry.whynot import steps as name_steps
+    from optimizer.search.inquiry.whynot import whynot as look_into
 
     todo = name_steps(study.request)
     with steps("steps", len(todo)) as tell:

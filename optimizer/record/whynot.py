@@ -8,7 +8,7 @@ from optimizer.record.build import build
 from optimizer.record.model import Record
 
 if TYPE_CHECKING:
-    from optimizer.search.finding import Finding
+    from optimizer.search.inquiry.finding import Finding
     from optimizer.study import Study
 
 

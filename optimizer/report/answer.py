@@ -11,10 +11,10 @@ from optimizer.report.misses import missed_words
 from optimizer.report.notes import at_every_corner
 from optimizer.report.reached import best_words
 from optimizer.report.words import beside, figure, margin_words, several, side
-from optimizer.search.best import Best
-from optimizer.search.eligibility import FAILED
-from optimizer.search.finding import CORNERS, Finding, Reach
-from optimizer.search.lookup import ONE, Part
+from optimizer.search.inquiry.best import Best
+from optimizer.search.inquiry.eligibility import FAILED
+from optimizer.search.inquiry.finding import CORNERS, Finding, Reach
+from optimizer.search.inquiry.lookup import ONE, Part
 from optimizer.search.result import SOURCES, Candidate
 
 Record = Mapping[str, Any]

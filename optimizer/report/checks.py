@@ -9,7 +9,7 @@ from typing import Any
 from optimizer.errors import clean
 from optimizer.quantities import show
 from optimizer.report.words import count, several
-from optimizer.search.eligibility import FAILED, NOT_CHECKED, NOT_REACHED, UNKNOWN, Check
+from optimizer.search.inquiry.eligibility import FAILED, NOT_CHECKED, NOT_REACHED, UNKNOWN, Check
 
 Facts = Mapping[str, Any]
 

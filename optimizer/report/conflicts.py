@@ -12,7 +12,7 @@ from optimizer.report.layout import Column
 from optimizer.report.paragraphs import styled
 from optimizer.report.stepped import BOLD, as_row, stacked
 from optimizer.report.words import beside, figure, side
-from optimizer.search.conflicts import Conflicts, Relaxation
+from optimizer.search.weigh.conflicts import Conflicts, Relaxation
 
 BAD = "bold red"
 

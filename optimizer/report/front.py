@@ -15,7 +15,7 @@ from optimizer.report.layout import Column
 from optimizer.report.paragraphs import styled
 from optimizer.report.stepped import BOLD, as_row, ending, in_currency, joined, stacked
 from optimizer.report.words import count, figure, margin_words, several, side
-from optimizer.search.front import Front, Point
+from optimizer.search.weigh.front import Front, Point
 
 MOST_DIGITS = 9
 

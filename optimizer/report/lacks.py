@@ -15,7 +15,7 @@ from optimizer.report.paragraphs import styled
 from optimizer.report.reasons import WORDS
 from optimizer.report.words import percent
 from optimizer.review.replacement import Lack, Replacement
-from optimizer.search.substitutes import CORNER
+from optimizer.search.change.substitutes import CORNER
 
 Row = Mapping[str, Any]
 INDENT = 4

@@ -9,8 +9,8 @@ from typing import Any
 from optimizer.report.layout import Column
 from optimizer.report.paragraphs import bound
 from optimizer.report.words import beside, figure, margin_words, several, side
-from optimizer.search.best import Best
-from optimizer.search.finding import Finding, Reach
+from optimizer.search.inquiry.best import Best
+from optimizer.search.inquiry.finding import Finding, Reach
 
 Request = Mapping[str, Any]
 UNPROVEN = "+"

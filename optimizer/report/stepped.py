@@ -15,7 +15,7 @@ from optimizer.report.layout import GAP, Column, fit, lines
 from optimizer.report.paragraphs import styled
 from optimizer.report.words import figure, margin_words
 from optimizer.search.result import Candidate
-from optimizer.search.tradeoff import Row, Step, differences
+from optimizer.search.weigh.tradeoff import Row, Step, differences
 
 SAME, NONE = "same", "none"
 LEAST = " to spare"

@@ -31,7 +31,7 @@ from optimizer.report.stepped import (
 )
 from optimizer.report.words import count, figure, margin_words, side, spoken, told_apart
 from optimizer.search.result import Candidate
-from optimizer.search.tradeoff import Row, Step, Tradeoff
+from optimizer.search.weigh.tradeoff import Row, Step, Tradeoff
 
 MEANING = (
     "Steps are margins against the stated limit: -10 % admits what misses it by 10 %, +10 % asks for 10 % to "

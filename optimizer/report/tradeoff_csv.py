@@ -8,9 +8,9 @@ from typing import Any
 from optimizer.record.rows import CHOICE, flat
 from optimizer.report.csv_file import table_text
 from optimizer.report.stepped import as_row
-from optimizer.search.front import Front
 from optimizer.search.result import Candidate
-from optimizer.search.tradeoff import Tradeoff
+from optimizer.search.weigh.front import Front
+from optimizer.search.weigh.tradeoff import Tradeoff
 
 CHOSEN = tuple(name for name in CHOICE if name != "rank")
 STEPS = ("target", "step", "limit", "cost", "margin", "limiting", "changes", *CHOSEN)

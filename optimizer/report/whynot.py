@@ -18,8 +18,8 @@ from optimizer.report.notes import filled, impossible_lines
 from optimizer.report.paragraphs import paragraph, styled
 from optimizer.report.reached import proof, reach_columns
 from optimizer.report.words import several
-from optimizer.search.eligibility import FAILED, Check
-from optimizer.search.finding import Finding, Subject, Wired
+from optimizer.search.inquiry.eligibility import FAILED, Check
+from optimizer.search.inquiry.finding import Finding, Subject, Wired
 
 HEADING, BAD, GOOD = "bold", "red", "green"
 MEETS, MISSES = "bold", "bold red"

@@ -15,12 +15,13 @@ from optimizer.errors import InputError, Problem
 from optimizer.record import Record
 from optimizer.review.findings import Findings, Floats
 from optimizer.review.reopen import Changed, Reopened, chosen_of
-from optimizer.search import assemble, dividers
+from optimizer.search import assemble
+from optimizer.search.change import dividers
 from optimizer.search.examine import Glass, examine
 from optimizer.search.locate import NotFound, locate
-from optimizer.search.montecarlo import samples
 from optimizer.search.query import whole
 from optimizer.search.space import Choice, Space
+from optimizer.search.spread.montecarlo import samples
 from optimizer.study import Study
 
 AGREES = 1e-7  # relative; both sides were rounded to 9 digits

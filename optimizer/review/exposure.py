@@ -23,13 +23,13 @@ from optimizer.review.reopen import Reopened
 from optimizer.review.shelf import Taken
 from optimizer.review.supply import Case, Exposure, pieces, summed, worst_first
 from optimizer.review.withdrawal import CATALOG_OF, Wish, taken_away
-from optimizer.search import dividers
+from optimizer.search.change import dividers
+from optimizer.search.change.positions import USES, Board, Fitted, board_of
+from optimizer.search.change.serving import Serving, serving
 from optimizer.search.locate import NotFound, locate
 from optimizer.search.plain import judge
-from optimizer.search.positions import USES, Board, Fitted, board_of
 from optimizer.search.query import whole
 from optimizer.search.roles import PASSES
-from optimizer.search.serving import Serving, serving
 from optimizer.search.space import Space
 
 Tell = Callable[[str], None]

@@ -13,8 +13,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.review.supply import Exposure
-from optimizer.search.finding import Finding
-from optimizer.search.tradeoff import Tradeoff
+from optimizer.search.inquiry.finding import Finding
+from optimizer.search.weigh.tradeoff import Tradeoff
 
 Floats = NDArray[np.float64]
 

@@ -20,14 +20,15 @@ from optimizer.record.build import plain
 from optimizer.request.types import Request
 from optimizer.review.reopen import Reopened
 from optimizer.review.withdrawal import Wish, Withdrawal, withdrawal
-from optimizer.search import assemble, substitutes
-from optimizer.search.positions import CHANGES, Board, outlines_of, positions_of
+from optimizer.search import assemble
+from optimizer.search.change import substitutes
+from optimizer.search.change.positions import CHANGES, Board, outlines_of, positions_of
+from optimizer.search.change.substitutes import Offer
 from optimizer.search.query import whole
 from optimizer.search.result import Candidate, Outcome
 from optimizer.search.space import Choice
-from optimizer.search.substitutes import Offer
+from optimizer.search.spread.yields import drawn
 from optimizer.search.unusable import unusable
-from optimizer.search.yields import drawn
 
 Tell = Callable[[str], None]
 

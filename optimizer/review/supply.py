@@ -10,8 +10,8 @@ import numpy as np
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.review.withdrawal import VANISHED, catalog_of, rows_of
-from optimizer.search.positions import USES, Fitted
-from optimizer.search.serving import Serving
+from optimizer.search.change.positions import USES, Fitted
+from optimizer.search.change.serving import Serving
 from optimizer.vocabulary import NAMES
 
 STATUS_ORDER = (VANISHED, "obsolete", "last-time-buy", "not-for-new-designs", "active", "")

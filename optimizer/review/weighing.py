@@ -17,12 +17,12 @@ from optimizer.review.dossier import Dossier
 from optimizer.review.exposure import exposed
 from optimizer.review.findings import Cloud, Compared
 from optimizer.review.reopen import Reopened
-from optimizer.search.ground import lay_out
 from optimizer.search.hunt import Rules
-from optimizer.search.lookup import lookup
+from optimizer.search.inquiry.lookup import lookup
+from optimizer.search.inquiry.whynot import whynot
 from optimizer.search.query import ask_pairs
-from optimizer.search.tradeoff import tradeoff
-from optimizer.search.whynot import whynot
+from optimizer.search.weigh.ground import lay_out
+from optimizer.search.weigh.tradeoff import tradeoff
 from optimizer.study import Study
 
 MOST = 200

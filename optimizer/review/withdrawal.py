@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.errors import InputError, Problem, clean, did_you_mean
 from optimizer.review.reopen import COMMAND_LINE, Reopened
-from optimizer.search.positions import USES, Board, Fitted, Out, Plan, board_of
+from optimizer.search.change.positions import USES, Board, Fitted, Out, Plan, board_of
 from optimizer.search.space import Space
 from optimizer.study import part_names
 from optimizer.vocabulary import NAMES

@@ -12,11 +12,11 @@ from optimizer import margins
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import FIGURES, evaluate
 from optimizer.request.types import WIRINGS
-from optimizer.search.outlines import outlines
+from optimizer.search.change.outlines import outlines
 from optimizer.search.result import SOURCES, Alternate, Candidate, Reference, TargetValue
 from optimizer.search.sources import Served, alternates
 from optimizer.search.space import Choice, Space, settings
-from optimizer.search.worst import Worst, worst
+from optimizer.search.spread.worst import Worst, worst
 
 Floats = NDArray[np.float64]
 

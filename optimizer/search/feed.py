@@ -13,7 +13,7 @@ from optimizer.search import hunt as hunting
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.hunt import Hunt, Rules
-from optimizer.search.shifted import bounded
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import Index, totals, view
 
 Floats = NDArray[np.float64]

@@ -19,12 +19,12 @@ from optimizer.figures import rounded
 from optimizer.search import keys
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes, Span, settings_of, single, whole
-from optimizer.search.corners import blocks, worsened
 from optimizer.search.incumbents import Incumbents, improve
 from optimizer.search.plain import Judged, judge
-from optimizer.search.shifted import bounded
 from optimizer.search.sources import is_sourced, may_be_sourced
 from optimizer.search.split import filled, halves, narrowed
+from optimizer.search.spread.corners import blocks, worsened
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.upper import Bound
 from optimizer.search.view import Index, view
 

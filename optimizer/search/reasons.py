@@ -15,8 +15,8 @@ from optimizer.search.boxes import whole
 from optimizer.search.reach import furthest
 from optimizer.search.result import SOURCES
 from optimizer.search.roles import PASSES, Verdicts
-from optimizer.search.shifted import bounded
 from optimizer.search.sources import offered
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import Index, view
 
 Floats = NDArray[np.float64]

@@ -13,7 +13,7 @@ from optimizer.catalog.parts import Catalogs
 from optimizer.errors import LuxsiftError
 from optimizer.quantities import show
 from optimizer.request.types import Request
-from optimizer.search import assemble, feed, impossible, reasons, yields
+from optimizer.search import assemble, feed, impossible, reasons
 from optimizer.search.bounds import Goals
 from optimizer.search.crew import Crew, Found
 from optimizer.search.hunt import Rules
@@ -21,6 +21,7 @@ from optimizer.search.query import query
 from optimizer.search.result import SOURCES, Outcome, Progress
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space, build
+from optimizer.search.spread import yields
 from optimizer.search.unusable import unusable
 from optimizer.search.view import Index
 

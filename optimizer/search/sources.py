@@ -14,11 +14,11 @@ from numpy.typing import NDArray
 
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes
-from optimizer.search.corners import judged_whole
 from optimizer.search.plain import Judged, judge
 from optimizer.search.roles import PASSES
-from optimizer.search.shifted import bounded
 from optimizer.search.space import Choice, Space
+from optimizer.search.spread.corners import judged_whole
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import Index, view
 
 Floats = NDArray[np.float64]

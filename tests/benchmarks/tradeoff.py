@@ -17,7 +17,7 @@ from optimizer import study
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request
 from optimizer.search import shortlist
-from optimizer.search.tradeoff import tradeoff
+from optimizer.search.weigh.tradeoff import tradeoff
 from tests.benchmarks.synthetic import write_catalogs, write_request
 
 KINDS = ("easy-by-cost", "dual-by-cost", "fast-by-cost")

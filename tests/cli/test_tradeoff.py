@@ -12,7 +12,7 @@ import pytest
 import optimizer as lux
 from optimizer.cli import main
 from optimizer.cli.options import tradeoff as options
-from optimizer.search.front import AGAINST
+from optimizer.search.weigh.front import AGAINST
 
 Capture = pytest.CaptureFixture[str]
 

@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from optimizer.cli import main
-from optimizer.search.whynot import steps
+from optimizer.search.inquiry.whynot import steps
 from optimizer.study import load
 
 Captured = pytest.CaptureFixture[str]
@@ -85,7 +85,7 @@ def test_a_catalog_that_has_vanished_is_named(request_file: Path, opamp: str, ca
 
 
 def test_every_step_is_told_as_it_begins(request_file: Path, opamp: str) -> None:
-    from optimizer.search.whynot import whynot
+    from optimizer.search.inquiry.whynot import whynot
 
     study = load(request_file)
     told: list[str] = []
@@ -98,6 +98,6 @@ def test_interrupted(request_file: Path, opamp: str, capsys: Captured) -> None:
         raise KeyboardInterrupt
 
     with pytest.MonkeyPatch.context() as patch:
-        patch.setattr("optimizer.search.whynot.whynot", stop)
+        patch.setattr("optimizer.search.inquiry.whynot.whynot", stop)
         assert main(["whynot", str(request_file), opamp]) == 130
     assert "interrupted; nothing was decided or written" in capsys.readouterr().err

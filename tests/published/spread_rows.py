@@ -21,7 +21,7 @@ from optimizer.figures import Settings, amplifier_of, evaluate, input_capacitanc
 from optimizer.physics import loop as loops
 from optimizer.request.types import Tolerance
 from optimizer.search.space import Choice, Space, build
-from optimizer.search.spreads import half_widths, moved
+from optimizer.search.spread.spreads import half_widths, moved
 from tests.search import made
 
 Values = float | tuple[float, ...]

@@ -9,7 +9,15 @@ import pytest
 
 from optimizer.figures import CHECKS
 from optimizer.report.checks import WORDS, check_words
-from optimizer.search.eligibility import FAILED, NOT_CHECKED, NOT_REACHED, PARTLY, PASSED, UNKNOWN, Check
+from optimizer.search.inquiry.eligibility import (
+    FAILED,
+    NOT_CHECKED,
+    NOT_REACHED,
+    PARTLY,
+    PASSED,
+    UNKNOWN,
+    Check,
+)
 
 
 def test_every_check_has_its_words() -> None:

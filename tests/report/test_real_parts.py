@@ -17,7 +17,7 @@ from optimizer.report.interrupted import interrupted
 from optimizer.report.words import share
 from optimizer.request.types import SPREADS
 from optimizer.search.result import Candidate, Simulated, TargetValue, Unusable
-from optimizer.search.spreads import AXES as DEVIATING
+from optimizer.search.spread.spreads import AXES as DEVIATING
 from tests.made_up import CANDIDATE, CORNERED, CORNERS, DRAWN, MISS, REQUEST, outcome, record
 
 WIDTHS = [60, 66, 72, 80, 100, 120, 160, 200]

@@ -17,9 +17,9 @@ from optimizer.report.tradeoff import tradeoff_lines
 from optimizer.report.tradeoff_csv import front_csv, tradeoff_csv
 from optimizer.request.in_force import in_force
 from optimizer.request.types import Request
-from optimizer.search.conflicts import Conflicts, Relaxation
-from optimizer.search.front import Front, front
-from optimizer.search.tradeoff import Row, Step, Tradeoff, tradeoff
+from optimizer.search.weigh.conflicts import Conflicts, Relaxation
+from optimizer.search.weigh.front import Front, front
+from optimizer.search.weigh.tradeoff import Row, Step, Tradeoff, tradeoff
 from tests.search import made
 
 TARGETS = {"bandwidth": 500e3, "phase_margin": 45.0, "offset": 5e-3}

@@ -16,10 +16,10 @@ from optimizer.report.answer import answer
 from optimizer.report.reached import best_words, proof, reach_margin
 from optimizer.report.whynot import whynot_lines
 from optimizer.request.types import Ambient, Request, Resilience
-from optimizer.search.best import Best
-from optimizer.search.finding import Finding, Reach, Subject
-from optimizer.search.lookup import Part
-from optimizer.search.whynot import whynot
+from optimizer.search.inquiry.best import Best
+from optimizer.search.inquiry.finding import Finding, Reach, Subject
+from optimizer.search.inquiry.lookup import Part
+from optimizer.search.inquiry.whynot import whynot
 from optimizer.study import Study
 from tests.made_up import MISS, study
 from tests.search import made

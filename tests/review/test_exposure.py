@@ -21,8 +21,8 @@ from optimizer.review.reopen import chosen_of, reopen
 from optimizer.review.shelf import take_up
 from optimizer.review.supply import Case, Exposure, summed, worst_first
 from optimizer.review.withdrawal import VANISHED
-from optimizer.search.positions import Fitted
-from optimizer.search.serving import Serving
+from optimizer.search.change.positions import Fitted
+from optimizer.search.change.serving import Serving
 from tests.review.catalog_edits import with_cells, with_copy, without
 from tests.saved_record import saved_in
 from tests.search.made import catalogs, opamp

@@ -15,7 +15,8 @@ from optimizer.review.dossier import differences
 from optimizer.review.reopen import chosen_of, reopen
 from optimizer.review.replacement import Replacement, before, record_of, replacement
 from optimizer.review.withdrawal import NAMED, OBSOLETE, VANISHED, Wish
-from optimizer.search import assemble, dividers
+from optimizer.search import assemble
+from optimizer.search.change import dividers
 from optimizer.search.locate import locate
 from optimizer.search.query import whole
 from tests.review.catalog_edits import with_cells, with_copy, without

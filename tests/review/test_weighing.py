@@ -16,7 +16,7 @@ from optimizer.review.exposure import exposed
 from optimizer.review.findings import Cloud
 from optimizer.review.reopen import reopen
 from optimizer.review.weighing import cloud, compared, steps, unknown_parts, weigh
-from optimizer.search.whynot import whynot
+from optimizer.search.inquiry.whynot import whynot
 
 
 def dossier_of(record: Path) -> Dossier:

@@ -17,8 +17,8 @@ from optimizer.catalog.parts import Parts
 from optimizer.figures import evaluate
 from optimizer.search import plain
 from optimizer.search import space as spaces
-from optimizer.search.corners import judged_whole
 from optimizer.search.space import Space
+from optimizer.search.spread.corners import judged_whole
 from tests.search import whole
 from tests.search.board_changes import (
     Bought,

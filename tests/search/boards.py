@@ -14,9 +14,9 @@ from optimizer.record.build import plain as as_json
 from optimizer.request.types import WIRINGS, Divider, Request, Tolerance
 from optimizer.search import assemble, plain
 from optimizer.search import space as spaces
-from optimizer.search.corners import judged_whole
-from optimizer.search.positions import Fitted, Out, Plan, board_of
+from optimizer.search.change.positions import Fitted, Out, Plan, board_of
 from optimizer.search.space import Space
+from optimizer.search.spread.corners import judged_whole
 from tests.search import made
 from tests.search.instances import sampled, some, with_targets
 

@@ -18,11 +18,12 @@ from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import evaluate
 from optimizer.request.types import Request
-from optimizer.search import corners, plain, spreads
+from optimizer.search import plain
 from optimizer.search import space as spaces
 from optimizer.search.result import SOURCES
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space
+from optimizer.search.spread import corners, spreads
 from tests.search.test_corners import every_corner
 from tests.search.whole import Name, Row, _row, between, ranked
 

@@ -11,9 +11,9 @@ from numpy.typing import NDArray
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import evaluate
 from optimizer.request.types import WIRINGS, Request, Tolerance
-from optimizer.search.montecarlo import monte_carlo
 from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space, build, settings
+from optimizer.search.spread.montecarlo import monte_carlo
 from tests.search import made
 
 Floats = NDArray[np.float64]

@@ -18,12 +18,12 @@ from optimizer.figures import CHECKS, evaluate
 from optimizer.request.types import Request
 from optimizer.search import plain
 from optimizer.search import space as spaces
-from optimizer.search.best import Best
-from optimizer.search.finding import Finding
-from optimizer.search.lookup import Part, every
+from optimizer.search.inquiry.best import Best
+from optimizer.search.inquiry.finding import Finding
+from optimizer.search.inquiry.lookup import Part, every
+from optimizer.search.inquiry.whynot import whynot
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Space
-from optimizer.search.whynot import whynot
 from optimizer.vocabulary import VOCABULARY
 from tests.search.instances import small, some
 from tests.search.made import awkward

@@ -7,9 +7,9 @@ from math import isnan
 import numpy as np
 import pytest
 
-from optimizer.search import best as bests
 from optimizer.search import space as spaces
-from optimizer.search.best import best, ground
+from optimizer.search.inquiry import best as bests
+from optimizer.search.inquiry.best import best, ground
 from optimizer.search.query import query
 from optimizer.search.space import Choice
 from tests.search.looked_at import best_of, every_setting, instance, is_small, partners, same

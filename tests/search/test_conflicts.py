@@ -16,10 +16,10 @@ from hypothesis import strategies as st
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request, Resilience
-from optimizer.search import steps
-from optimizer.search.conflicts import MOST_SETS, Conflicts, Names, Relaxation, minimal
 from optimizer.search.result import SOURCES
-from optimizer.search.tradeoff import tradeoff
+from optimizer.search.weigh import steps
+from optimizer.search.weigh.conflicts import MOST_SETS, Conflicts, Names, Relaxation, minimal
+from optimizer.search.weigh.tradeoff import tradeoff
 from tests.search import changed, made
 from tests.search.changed import All, everything
 from tests.search.test_tradeoff import GOOD, INSTANCES, is_small
@@ -124,7 +124,7 @@ def test_the_least_relaxation_does_not_hang_on_what_one_hunt_tells_apart(
     parts = made.catalogs([made.opamp(), made.opamp(part="YZA-2", offset_voltage=0.1e-3, price=[(1.0, 9.0)])])
     usual = found_for(hard, parts)
     with monkeypatch.context() as patch:
-        patch.setattr("optimizer.search.steps.far_below", lambda name, _limit: steps.loosest(name))
+        patch.setattr("optimizer.search.weigh.steps.far_below", lambda name, _limit: steps.loosest(name))
         assert found_for(hard, parts).relaxations == usual.relaxations
     eased = next(one for one in usual.relaxations if one.target == "offset")
     assert eased.candidate is not None

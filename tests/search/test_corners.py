@@ -15,13 +15,14 @@ from optimizer import margins, search
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import evaluate
 from optimizer.request.types import Request, Tolerance
-from optimizer.search import assemble, corners, plain, shifted, split
+from optimizer.search import assemble, plain, split
 from optimizer.search import space as spaces
 from optimizer.search import view as views
 from optimizer.search.bounds import Goals
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space
-from optimizer.search.spreads import AXES, PARTS, half_widths, moved, moved_checks
+from optimizer.search.spread import corners, shifted
+from optimizer.search.spread.spreads import AXES, PARTS, half_widths, moved, moved_checks
 from tests.search.instances import KINDS, drawn, sampled, small, some, varied, with_targets
 from tests.search.test_bounds import _holds, around
 from tests.search.whole import Name, Row, _row, between, named, ranked

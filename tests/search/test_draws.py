@@ -11,11 +11,11 @@ import pytest
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import evaluate
 from optimizer.request.types import Tolerance
-from optimizer.search import montecarlo
-from optimizer.search.montecarlo import monte_carlo, samples
 from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space, build
-from optimizer.search.spreads import moved
+from optimizer.search.spread import montecarlo
+from optimizer.search.spread.montecarlo import monte_carlo, samples
+from optimizer.search.spread.spreads import moved
 from tests.search import made
 from tests.search.drawn import (
     TARGETS,

@@ -11,15 +11,16 @@ import pytest
 from optimizer.errors import InputError
 from optimizer.figures import CHECKS, evaluate
 from optimizer.request.types import Ambient
-from optimizer.search import eligibility, plain, reach
+from optimizer.search import plain, reach
 from optimizer.search import space as spaces
-from optimizer.search.eligibility import FAILED, NOT_CHECKED, PARTLY, PASSED, UNKNOWN
-from optimizer.search.families import family_checks
-from optimizer.search.lookup import every, lookup
-from optimizer.search.nearest import NUMBERS
+from optimizer.search.inquiry import eligibility
+from optimizer.search.inquiry.eligibility import FAILED, NOT_CHECKED, PARTLY, PASSED, UNKNOWN
+from optimizer.search.inquiry.families import family_checks
+from optimizer.search.inquiry.lookup import every, lookup
+from optimizer.search.inquiry.nearest import NUMBERS
+from optimizer.search.inquiry.whynot import SETTING, whynot
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space
-from optimizer.search.whynot import SETTING, whynot
 from tests.search import made
 from tests.search.looked_at import instance
 from tests.search.made import awkward

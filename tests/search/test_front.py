@@ -13,8 +13,8 @@ from hypothesis import strategies as st
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request
-from optimizer.search.front import AGAINST, Front, front
 from optimizer.search.result import Progress
+from optimizer.search.weigh.front import AGAINST, Front, front
 from tests.search import changed, made
 from tests.search.changed import All, everything
 from tests.search.test_tradeoff import GOOD, INSTANCES, is_small

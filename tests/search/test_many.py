@@ -7,12 +7,12 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from optimizer.search import many, steps
-from optimizer.search.ground import Ground, lay_out
-from optimizer.search.many import Many
-from optimizer.search.questions import COST, Questions
-from optimizer.search.screen import Screen
-from optimizer.search.tradeoff import questions_of
+from optimizer.search.weigh import many, steps
+from optimizer.search.weigh.ground import Ground, lay_out
+from optimizer.search.weigh.many import Many
+from optimizer.search.weigh.questions import COST, Questions
+from optimizer.search.weigh.screen import Screen
+from optimizer.search.weigh.tradeoff import questions_of
 from tests.search import made
 from tests.search.changed import All, everything
 from tests.search.instances import small

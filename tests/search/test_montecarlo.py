@@ -15,11 +15,11 @@ from scipy import integrate, stats
 from optimizer import margins, statistics
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import WIRINGS, Ambient, Tolerance
-from optimizer.search import montecarlo
-from optimizer.search.montecarlo import monte_carlo, samples
 from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space, build
-from optimizer.search.spreads import AXES, half_widths, moved
+from optimizer.search.spread import montecarlo
+from optimizer.search.spread.montecarlo import monte_carlo, samples
+from optimizer.search.spread.spreads import AXES, half_widths, moved
 from optimizer.vocabulary import VOCABULARY
 from tests.search import made
 from tests.search.drawn import (

@@ -12,8 +12,9 @@ import pytest
 from optimizer import search
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Ambient, Request, Tolerance
-from optimizer.search import crew, yields
+from optimizer.search import crew
 from optimizer.search.result import Candidate, Outcome, Simulated, Unusable
+from optimizer.search.spread import yields
 from optimizer.search.unusable import unusable
 from tests.search import made
 from tests.search.made import capacitor, diode, listed, opamp, resistor

@@ -11,8 +11,9 @@ import pytest
 from optimizer.catalog.parts import Catalogs
 from optimizer.record.build import plain
 from optimizer.request.types import Request
-from optimizer.search import assemble, dividers
-from optimizer.search.positions import (
+from optimizer.search import assemble
+from optimizer.search.change import dividers
+from optimizer.search.change.positions import (
     DROP_IN,
     FOOTPRINT,
     OUT,

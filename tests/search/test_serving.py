@@ -7,9 +7,9 @@ from collections import Counter
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from optimizer.search.positions import USES
+from optimizer.search.change.positions import USES
+from optimizer.search.change.serving import serving
 from optimizer.search.query import whole as compiled
-from optimizer.search.serving import serving
 from tests.search import board_answers, boards
 from tests.search.boards import Case
 

@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from optimizer import margins
 from optimizer.figures import rounded
-from optimizer.search import steps
+from optimizer.search.weigh import steps
 
 TARGETS = st.sampled_from(margins.TARGETS)
 FINEST = {"snr": 1e-8, "dynamic_range": 1e-8, "phase_margin": 1e-7}

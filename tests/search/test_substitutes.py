@@ -11,8 +11,9 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from optimizer.figures import CHECKS
-from optimizer.search import assemble, substitutes
-from optimizer.search.positions import CHANGES, USES, positions_of
+from optimizer.search import assemble
+from optimizer.search.change import substitutes
+from optimizer.search.change.positions import CHANGES, USES, positions_of
 from optimizer.search.query import whole as compiled
 from optimizer.search.roles import PASSES
 from tests.search import board_answers, boards

@@ -15,10 +15,10 @@ from optimizer import margins, search
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request
 from optimizer.search import space as spaces
-from optimizer.search import steps
 from optimizer.search.result import Progress
 from optimizer.search.roles import PASSES
-from optimizer.search.tradeoff import POSITIONS, Step, Tradeoff, differences, questions_of, tradeoff
+from optimizer.search.weigh import steps
+from optimizer.search.weigh.tradeoff import POSITIONS, Step, Tradeoff, differences, questions_of, tradeoff
 from tests.search import made
 from tests.search.changed import All, everything
 from tests.search.instances import small
@@ -232,7 +232,7 @@ def test_questions_hold_one_changed_limit_each() -> None:
 
 
 def test_progress_counts_questions(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("optimizer.search.tradeoff.REPORT_EVERY", 0.0)
+    monkeypatch.setattr("optimizer.search.weigh.tradeoff.REPORT_EVERY", 0.0)
     told: list[Progress] = []
     found = tradeoff(GOOD, made.catalogs(), progress=told.append)
     assert told

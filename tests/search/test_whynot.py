@@ -14,12 +14,12 @@ from optimizer import margins
 from optimizer.request.types import Ambient, Resilience, Tolerance
 from optimizer.search import plain
 from optimizer.search import space as spaces
-from optimizer.search.eligibility import FAILED
-from optimizer.search.finding import CORNERS
-from optimizer.search.lookup import Part
+from optimizer.search.inquiry.eligibility import FAILED
+from optimizer.search.inquiry.finding import CORNERS
+from optimizer.search.inquiry.lookup import Part
+from optimizer.search.inquiry.whynot import SETTING, whynot
 from optimizer.search.result import SOURCES
-from optimizer.search.valued import valued
-from optimizer.search.whynot import SETTING, whynot
+from optimizer.search.weigh.valued import valued
 from optimizer.vocabulary import VOCABULARY
 from tests.search import made
 from tests.search.looked_at import SEEN, differences, instance, partners, same, subjects

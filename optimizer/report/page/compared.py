@@ -13,8 +13,8 @@ from optimizer.report.page.terms import in_terms, merged, term
 from optimizer.report.reached import proof, reach_columns
 from optimizer.report.whynot import check_rows
 from optimizer.review.findings import Compared
-from optimizer.search.eligibility import NOT_CHECKED, PASSED, Check
-from optimizer.search.finding import Finding
+from optimizer.search.inquiry.eligibility import NOT_CHECKED, PASSED, Check
+from optimizer.search.inquiry.finding import Finding
 
 
 def compared_parts(found: Sequence[Compared], request: Mapping[str, Any]) -> Iterator[Part]:

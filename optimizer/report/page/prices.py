@@ -24,7 +24,7 @@ from optimizer.report.stepped import (
 )
 from optimizer.report.words import figure, side, told_apart
 from optimizer.review.dossier import Dossier
-from optimizer.search.tradeoff import Row, Step, Tradeoff
+from optimizer.search.weigh.tradeoff import Row, Step, Tradeoff
 
 STEP = (
     "A step is a margin against the stated limit: 10 % tighter asks for 10 % to spare, 10 % looser admits "

@@ -11,10 +11,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from optimizer.catalog.parts import Catalogs, Parts
-from optimizer.search import dividers, substitutes
-from optimizer.search.positions import DROP_IN, OUT, VALUES, Axis, Plan, fits, graded
+from optimizer.search.change import dividers, substitutes
+from optimizer.search.change.positions import DROP_IN, OUT, VALUES, Axis, Plan, fits, graded
+from optimizer.search.change.substitutes import Offer, anything
 from optimizer.search.space import Space
-from optimizer.search.substitutes import Offer, anything
 
 Name = tuple[str, str]
 """Part (or family) and maker."""

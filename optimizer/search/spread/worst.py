@@ -9,9 +9,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer import margins
-from optimizer.search.corners import Corner, active, blocks, deviations, evaluated
 from optimizer.search.space import Choice, Space
-from optimizer.search.spreads import AXES, half_widths
+from optimizer.search.spread.corners import Corner, active, blocks, deviations, evaluated
+from optimizer.search.spread.spreads import AXES, half_widths
 from optimizer.vocabulary import VOCABULARY
 
 Floats = NDArray[np.float64]

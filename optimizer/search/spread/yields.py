@@ -6,9 +6,9 @@ from collections.abc import Sequence
 from dataclasses import replace
 
 from optimizer.catalog.parts import Catalogs
-from optimizer.search.montecarlo import monte_carlo
 from optimizer.search.result import Candidate
 from optimizer.search.space import Choice, Space
+from optimizer.search.spread.montecarlo import monte_carlo
 
 
 def drawn(

@@ -17,12 +17,12 @@ from numpy.typing import NDArray
 
 from optimizer import margins
 from optimizer.search import hunt as hunting
-from optimizer.search.corners import active
 from optimizer.search.hunt import Hunt, Rules
 from optimizer.search.query import Query, graded
 from optimizer.search.space import Choice
-from optimizer.search.steps import moved
-from optimizer.search.valued import Valued, valued
+from optimizer.search.spread.corners import active
+from optimizer.search.weigh.steps import moved
+from optimizer.search.weigh.valued import Valued, valued
 from optimizer.vocabulary import VOCABULARY
 
 Floats = NDArray[np.float64]

@@ -19,13 +19,13 @@ from optimizer.search.bounds import Goals
 from optimizer.search.boxes import Boxes, settings_of, single, whole
 from optimizer.search.feed import Pairs
 from optimizer.search.hunt import inner_level, least_ties
-from optimizer.search.questions import COST, MARGIN, REST, Best, Questions, key_of, offer, promising
-from optimizer.search.shifted import bounded
 from optimizer.search.space import Choice
 from optimizer.search.split import filled, halves, narrowed
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.upper import Bound
-from optimizer.search.valued import Valued, valued
 from optimizer.search.view import Index, view
+from optimizer.search.weigh.questions import COST, MARGIN, REST, Best, Questions, key_of, offer, promising
+from optimizer.search.weigh.valued import Valued, valued
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]

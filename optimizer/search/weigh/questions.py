@@ -11,10 +11,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from optimizer.search import keys, steps
+from optimizer.search import keys
 from optimizer.search.sources import enough, mates
 from optimizer.search.space import Choice, Space
-from optimizer.search.valued import Valued, valued
+from optimizer.search.weigh import steps
+from optimizer.search.weigh.valued import Valued, valued
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]

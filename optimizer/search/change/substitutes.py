@@ -20,11 +20,9 @@ from numpy.typing import NDArray
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import CHECKS
-from optimizer.search import dividers, feed, keys, reach
-from optimizer.search.crew import Found, gathered, nothing
-from optimizer.search.hunt import Hunt, Rules
-from optimizer.search.locate import POSITIONS
-from optimizer.search.positions import (
+from optimizer.search import feed, keys, reach
+from optimizer.search.change import dividers
+from optimizer.search.change.positions import (
     DROP_IN,
     FOOTPRINT,
     REDESIGN,
@@ -35,6 +33,9 @@ from optimizer.search.positions import (
     Plan,
     graded,
 )
+from optimizer.search.crew import Found, gathered, nothing
+from optimizer.search.hunt import Hunt, Rules
+from optimizer.search.locate import POSITIONS
 from optimizer.search.query import Masks, Query, query, restricted
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space

@@ -20,18 +20,19 @@ from numpy.typing import NDArray
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request
-from optimizer.search import assemble, impossible, steps
+from optimizer.search import assemble, impossible
 from optimizer.search.boxes import whole
-from optimizer.search.conflicts import Conflicts, conflicts
 from optimizer.search.feed import Pairs
-from optimizer.search.ground import Ground, first, lay_out, under, value_of
 from optimizer.search.hunt import Rules
 from optimizer.search.query import Query
 from optimizer.search.result import Candidate, Progress
-from optimizer.search.shifted import bounded
 from optimizer.search.shortlist import Report
 from optimizer.search.space import Choice
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import view
+from optimizer.search.weigh import steps
+from optimizer.search.weigh.conflicts import Conflicts, conflicts
+from optimizer.search.weigh.ground import Ground, first, lay_out, under, value_of
 
 Floats = NDArray[np.float64]
 

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from optimizer.physics import noise
 from optimizer.search.bounds import Goals, Narrow
 from optimizer.search.boxes import Boxes, Run, Span
-from optimizer.search.corners import FIRST, UP, Corner, active
+from optimizer.search.spread.corners import FIRST, UP, Corner, active
 from optimizer.search.upper import Bound, bound
 from optimizer.search.view import Index, View
 

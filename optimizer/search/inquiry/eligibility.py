@@ -16,7 +16,7 @@ from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.figures import CHECKS, output_limits
 from optimizer.physics import photodiode
 from optimizer.request.types import Request
-from optimizer.search.lookup import Part, parts_of
+from optimizer.search.inquiry.lookup import Part, parts_of
 from optimizer.search.roles import PASSES, diodes_need, opamps_need
 from optimizer.search.space import Space
 

@@ -26,8 +26,8 @@ from numpy.typing import NDArray
 
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.request.types import WIRINGS
+from optimizer.search.change.outlines import cell
 from optimizer.search.locate import POSITIONS, SAME_CUTOFF, referred, same
-from optimizer.search.outlines import cell
 from optimizer.search.space import Choice, Space
 from optimizer.search.values import Passives
 

@@ -15,14 +15,15 @@ from itertools import combinations
 import numpy as np
 
 from optimizer import margins
-from optimizer.search import assemble, steps
+from optimizer.search import assemble
 from optimizer.search.feed import pairs_of
-from optimizer.search.ground import Ground, first, under, value_of
 from optimizer.search.hunt import Rules
 from optimizer.search.query import Query
 from optimizer.search.result import SOURCES, Candidate
 from optimizer.search.space import Choice
-from optimizer.search.valued import valued
+from optimizer.search.weigh import steps
+from optimizer.search.weigh.ground import Ground, first, under, value_of
+from optimizer.search.weigh.valued import valued
 
 MOST_SETS = 12
 """Conflicting sets that are looked for, at most; the smallest come first."""

@@ -21,16 +21,17 @@ import numpy as np
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request
-from optimizer.search import assemble, impossible, many, steps
-from optimizer.search.conflicts import Conflicts, conflicts
+from optimizer.search import assemble, impossible
 from optimizer.search.crew import REPORT_EVERY
-from optimizer.search.ground import NOTHING_GRADED, Ground, lay_out
-from optimizer.search.questions import COST, Questions, choice_of, offer
 from optimizer.search.result import Candidate, Progress, TargetValue
-from optimizer.search.screen import Screen
 from optimizer.search.shortlist import Report
 from optimizer.search.space import Choice, Space
-from optimizer.search.valued import valued
+from optimizer.search.weigh import many, steps
+from optimizer.search.weigh.conflicts import Conflicts, conflicts
+from optimizer.search.weigh.ground import NOTHING_GRADED, Ground, lay_out
+from optimizer.search.weigh.questions import COST, Questions, choice_of, offer
+from optimizer.search.weigh.screen import Screen
+from optimizer.search.weigh.valued import valued
 
 POSITIONS = (
     "photodiode",

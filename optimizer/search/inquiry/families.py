@@ -7,8 +7,8 @@ from dataclasses import replace
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.request.types import Request
-from optimizer.search.eligibility import FAILED, PASSED, UNKNOWN, Check, Facts, excluded
-from optimizer.search.lookup import Part, every, parts_of
+from optimizer.search.inquiry.eligibility import FAILED, PASSED, UNKNOWN, Check, Facts, excluded
+from optimizer.search.inquiry.lookup import Part, every, parts_of
 from optimizer.search.unusable import unusable
 from optimizer.search.values import family_values
 

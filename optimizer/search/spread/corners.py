@@ -27,7 +27,7 @@ from optimizer.figures import Evaluated, evaluate
 from optimizer.search import keys
 from optimizer.search.plain import Judged
 from optimizer.search.space import Choice, Space
-from optimizer.search.spreads import AXES, PARTS, half_widths, moved, moved_checks
+from optimizer.search.spread.spreads import AXES, PARTS, half_widths, moved, moved_checks
 from optimizer.search.values import corners as asked_for
 
 Floats = NDArray[np.float64]

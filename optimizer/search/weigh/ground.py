@@ -18,7 +18,7 @@ from optimizer.search.hunt import Hunt, Rules
 from optimizer.search.query import Query, graded, is_empty, query
 from optimizer.search.sources import enough, mates, offered
 from optimizer.search.space import Choice, Space, build
-from optimizer.search.valued import valued
+from optimizer.search.weigh.valued import valued
 from optimizer.vocabulary import VOCABULARY
 
 Floats = NDArray[np.float64]

@@ -15,9 +15,9 @@ from optimizer import margins
 from optimizer.search.bounds import Goals
 from optimizer.search.boxes import whole
 from optimizer.search.feed import Pairs
-from optimizer.search.questions import Questions
-from optimizer.search.shifted import bounded
+from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import Index, view
+from optimizer.search.weigh.questions import Questions
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]

@@ -15,8 +15,8 @@ from numpy.typing import NDArray
 
 from optimizer.catalog.parts import Catalogs, Parts
 from optimizer.search import values
+from optimizer.search.change.positions import Board, Plan, board_of, fits
 from optimizer.search.locate import referred
-from optimizer.search.positions import Board, Plan, board_of, fits
 from optimizer.search.space import Space
 
 Bools = NDArray[np.bool_]

@@ -22,15 +22,16 @@ from optimizer import margins
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import CHECKS
 from optimizer.request.types import WIRINGS, Request
-from optimizer.search import assemble, eligibility, impossible, keys
-from optimizer.search.best import best, ground
+from optimizer.search import assemble, impossible, keys
 from optimizer.search.crew import Found
-from optimizer.search.eligibility import FAILED, NOT_CHECKED, NOT_REACHED, PASSED, Check
-from optimizer.search.families import admitting, family_checks
-from optimizer.search.finding import Finding, Place, Reach, Subject, Wired
 from optimizer.search.hunt import Rules
-from optimizer.search.lookup import Part, lookup
-from optimizer.search.nearest import NUMBERS, nearest
+from optimizer.search.inquiry import eligibility
+from optimizer.search.inquiry.best import best, ground
+from optimizer.search.inquiry.eligibility import FAILED, NOT_CHECKED, NOT_REACHED, PASSED, Check
+from optimizer.search.inquiry.families import admitting, family_checks
+from optimizer.search.inquiry.finding import Finding, Place, Reach, Subject, Wired
+from optimizer.search.inquiry.lookup import Part, lookup
+from optimizer.search.inquiry.nearest import NUMBERS, nearest
 from optimizer.search.query import Masks, Query, ask, graded, query, restricted
 from optimizer.search.reach import furthest
 from optimizer.search.result import Candidate

@@ -12,9 +12,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.figures import evaluate
-from optimizer.search.corners import BLOCK, Corner, blocks, deviations, evaluated
 from optimizer.search.roles import PASSES
 from optimizer.search.space import Choice, Space, own_code, settings
+from optimizer.search.spread.corners import BLOCK, Corner, blocks, deviations, evaluated
 from optimizer.vocabulary import VOCABULARY
 
 Floats = NDArray[np.float64]

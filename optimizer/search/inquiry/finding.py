@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from optimizer.search.best import Best
-from optimizer.search.eligibility import FAILED, Check
-from optimizer.search.lookup import Part
+from optimizer.search.inquiry.best import Best
+from optimizer.search.inquiry.eligibility import FAILED, Check
+from optimizer.search.inquiry.lookup import Part
 from optimizer.search.result import SOURCES, Candidate
 
 CORNERS = "corners"

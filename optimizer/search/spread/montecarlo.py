@@ -23,7 +23,7 @@ from optimizer.request.types import WIRINGS
 from optimizer.search.assemble import plain_number
 from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space
-from optimizer.search.spreads import AXES, half_widths, moved, moved_checks
+from optimizer.search.spread.spreads import AXES, half_widths, moved, moved_checks
 from optimizer.vocabulary import VOCABULARY
 
 Floats = NDArray[np.float64]

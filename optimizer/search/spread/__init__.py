@@ -1,0 +1,1 @@
+"""Real parts instead of nominal ones: spreads, their corners, and random draws."""

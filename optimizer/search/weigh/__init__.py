@@ -1,0 +1,1 @@
+"""What targets cost: many questions to the search at once, fronts, and targets in conflict."""
