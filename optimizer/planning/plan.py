@@ -76,14 +76,18 @@ class Level:
 class Build:
     """How one or more copies of a channel are built: the candidate, graded as a receiver by itself.
 
-    The candidate's op-amp is a package on the board that serves it; `copies` are numbered from 1;
-    `level` names the shared level that it uses, None where it has none or a divider of its own.
+    The candidate's op-amp is the smallest package of its family, as its shortlist would buy it; `opamp`
+    and `opamp_maker` name the package on the board that serves these copies (the same amplifier, perhaps
+    two or four of them). `copies` are numbered from 1; `level` names the shared level that they use, None
+    where there is none or a divider of their own.
     """
 
     channel: str
     copies: tuple[int, ...]
     candidate: Candidate
     level: str | None = None
+    opamp: str = ""
+    opamp_maker: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -158,8 +162,8 @@ class Pool:
 
     `combinations` are declared by its request; `pairs` of photodiode and op-amp (packages of one family
     counted once) are eligible; `kept` candidates went to the solver. `complete`: every candidate that a
-    plan as cheap as the first could use is among them; else `left_out` counts those that could matter
-    (None: too many to count) and were cut.
+    plan cheaper than the first could use is among them; else `left_out` counts, at most, the settings
+    within reach of such a plan that were cut (None: not known).
     """
 
     channel: str
@@ -227,7 +231,8 @@ class Planned:
     """What came of it. `status` is that of the first plan; `solver` the one used; `seconds` all in all.
 
     `only`: there are no more plans with other active parts than these. `faults`: what went wrong with a
-    solver, in words. `rounds`: how often the passives were improved, or candidates priced in.
+    solver, in words. `rounds`: how often candidates were priced in. `floor`: no plan at all, over everything
+    that the requests admit, costs less [cents a build].
     """
 
     status: str
@@ -236,6 +241,7 @@ class Planned:
     solver: str
     seconds: float
     rounds: int = 0
+    floor: int | None = None
     only: bool = False
     faults: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()

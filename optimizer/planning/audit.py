@@ -1,0 +1,148 @@
+"""A plan by name looked at anew, from its receivers and the catalogs alone.
+
+What the receivers, packages and levels need is counted and priced again, by code that shares nothing with
+the pools, the model, or the tables behind them.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterator, Mapping
+from fractions import Fraction
+
+from optimizer.catalog.parts import Catalogs, Parts
+from optimizer.planning.outline import Outline
+from optimizer.planning.plan import BoardPlan, Build, Level, LineItem
+from optimizer.planning.told import UnsoundBoardError
+from optimizer.vocabulary import NAMES
+
+Item = tuple[str, str, str, float | None]
+"""Role, maker, part or family, value."""
+
+ROLES = {"photodiode": "photodiodes", "opamp": "opamps", "resistor": "resistors", "capacitor": "capacitors"}
+
+
+def audited(outline: Outline, plan: BoardPlan) -> None:
+    """Raises UnsoundBoardError with everything that is wrong with `plan`."""
+    faults = [*_channels(outline, plan), *_places(plan), *_pieces(outline, plan), *_money(outline, plan)]
+    over = [total.name for total in plan.totals if total.margin is not None and total.margin < -1e-8]
+    faults += [f"{name} is over its limit" for name in over]
+    if faults:
+        raise UnsoundBoardError("; ".join(faults))
+
+
+def _channels(outline: Outline, plan: BoardPlan) -> Iterator[str]:
+    """Every copy of every channel is built once, and meets its request."""
+    for channel in outline.channels:
+        copies = [copy for build in plan.builds if build.channel == channel.name for copy in build.copies]
+        if sorted(copies) != list(range(1, channel.count + 1)):
+            yield f"{channel.name} is built as copies {copies}, of {channel.count}"
+    for build in plan.builds:
+        if any(target.margin < 0.0 for target in build.candidate.targets):
+            yield f"{build.channel} misses a target"
+
+
+def _places(plan: BoardPlan) -> Iterator[str]:
+    """Every copy and every level has an amplifier, in a package that holds so many."""
+    served = Counter(place for package in plan.packages for place in package.places)
+    copies = {(build.channel, copy) for build in plan.builds for copy in build.copies}
+    if {(p.channel, p.copy) for p in served if p.channel is not None} != copies:
+        yield "the packages do not serve the copies"
+    if {p.level for p in served if p.level is not None} != {level.name for level in plan.levels}:
+        yield "the packages do not serve the levels"
+    if any(count > 1 for count in served.values()) or any(package.spare < 0 for package in plan.packages):
+        yield "an amplifier serves twice"
+
+
+def _pieces(outline: Outline, plan: BoardPlan) -> Iterator[str]:
+    """The bill holds what is built, no more and no less."""
+    need: Counter[Item] = Counter()
+    for build in plan.builds:
+        need.update({item: len(build.copies) * n for item, n in Counter(_used(outline, build)).items()})
+    for package in plan.packages:
+        need["opamp", package.maker, package.opamp, None] += 1
+    bill = {(line.role, line.maker, line.part, line.value): line.pieces for line in plan.bill}
+    for level in plan.levels:
+        need.update(_of_level(level, bill))
+    if bill != dict(need):
+        wrong = sorted({item[2] for item, _ in need.items() ^ bill.items()})
+        yield f"the bill does not hold what is built: {', '.join(wrong)}"
+
+
+def _used(outline: Outline, build: Build) -> Iterator[Item]:
+    """What one copy takes besides its amplifiers and what it shares."""
+    one = build.candidate
+    said: Mapping[str, str | None] = one.outlines
+    yield "photodiode", one.photodiode_maker, one.photodiode, None
+    yield "resistor", said["resistor_maker"] or "", one.resistor_family, one.feedback_resistance
+    if one.capacitor_family is not None:
+        yield "capacitor", said["capacitor_maker"] or "", one.capacitor_family, one.feedback_capacitance
+    if one.reference.kind == "divider" and build.level is None:
+        bypass = _bypass(outline, build.channel)
+        yield "resistor", said["divider_maker"] or "", said["divider_family"] or "", one.reference.top
+        yield "resistor", said["divider_maker"] or "", said["divider_family"] or "", one.reference.bottom
+        yield "capacitor", said["bypass_maker"] or "", said["bypass_family"] or "", bypass
+
+
+def _bypass(outline: Outline, channel: str) -> float:
+    wanted = next(one for one in outline.channels if one.name == channel)
+    return wanted.study.request.space.divider.bypass
+
+
+def _of_level(level: Level, bill: Mapping[Item, int]) -> Counter[Item]:
+    """What a shared level takes; its families' makers are those of the bill."""
+    wanted = [
+        ("resistor", level.resistor_family, level.top),
+        ("resistor", level.resistor_family, level.bottom),
+        ("capacitor", level.capacitor_family, level.bypass),
+    ]
+    found: Counter[Item] = Counter()
+    for role, family, value in wanted:
+        makers = [item[1] for item in bill if (item[0], item[2], item[3]) == (role, family, value)]
+        found[role, makers[0] if makers else "", family, value] += 1
+    return found
+
+
+def _money(outline: Outline, plan: BoardPlan) -> Iterator[str]:
+    """Every line is the cheapest way to buy its pieces, in stock; the sum is the plan's cost."""
+    cents = Fraction(0)
+    for line in plan.bill:
+        need = line.pieces * outline.quantity
+        least = _cheapest(_row(outline, line), need)
+        if line.buy < need or least is None or least != round(line.cost * 100):
+            yield f"{line.part} is not bought as the catalog sells it"
+        cents += least or 0
+    money = Fraction(str(outline.costs.placement)) * outline.quantity * 100
+    placed = _half_up(money) * sum(line.pieces for line in plan.bill)
+    lines = _half_up(Fraction(str(outline.costs.line_item)) * 100) * len(plan.bill)
+    if cents + placed + lines != plan.cost:
+        yield f"the cost is {cents + placed + lines} cents, not {plan.cost}"
+
+
+def _half_up(value: Fraction) -> int:
+    return int(value + Fraction(1, 2))
+
+
+def _row(outline: Outline, line: LineItem) -> tuple[Parts, int]:
+    """The catalog row of a line of the bill."""
+    for channel in outline.channels:
+        catalogs: Catalogs = channel.study.catalogs
+        parts: Parts = getattr(catalogs, ROLES[line.role])
+        for row in range(parts.size):
+            if (parts.text[NAMES[parts.role]][row], parts.text["maker"][row]) == (line.part, line.maker):
+                return parts, row
+    raise UnsoundBoardError(f"no catalog holds {line.part}")
+
+
+def _cheapest(where: tuple[Parts, int], need: int) -> int | None:
+    """Cents for at least `need` pieces, whatever quantity is bought; None where the stock is too small."""
+    parts, row = where
+    breaks = parts.points["price"][row]
+    stock = float(parts.number["stock"][row]) if "stock" in parts.number else float("nan")
+    offers = []
+    for quantity in {need, *(-int(-first // 1) for first, _ in breaks if first > need)}:
+        if quantity > stock:
+            continue
+        held = [unit for first, unit in breaks if first <= quantity] or [breaks[0][1]]
+        offers.append(_half_up(min(Fraction(str(float(unit))) for unit in held) * quantity * 100))
+    return min(offers, default=None)

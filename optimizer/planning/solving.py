@@ -1,0 +1,132 @@
+"""Plans from pools: solved, improved over all passives with their active parts kept, and solved again."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from optimizer.board.solution import Progress, Solution, SolveOptions
+from optimizer.board.solve import solve
+from optimizer.planning.columns import Field, Pool, assembled
+from optimizer.planning.gather import Gathering
+from optimizer.planning.told import Chosen
+
+Ints = NDArray[np.int64]
+
+MORE = 400
+"""Candidates with the passives of one plan's active parts, of each kind, that an improvement may add."""
+TURNS = 3
+"""How often the pools are solved at most."""
+SOLVE, IMPROVE = 0.6, 0.1
+"""The shares of the time left that a solve, and an improvement of one plan, may take."""
+LEAST = 0.5
+
+
+@dataclass(frozen=True, slots=True)
+class Solved:
+    """The plans, the cheapest first, and what the last solve said."""
+
+    chosen: tuple[Chosen, ...]
+    solution: Solution
+
+
+class Solving:
+    """Works on the pools of `gathered` until `until` (monotonic seconds)."""
+
+    def __init__(self, gathered: Gathering, until: float) -> None:
+        self.gathered, self.until = gathered, until
+        self.field: Field = gathered.field
+        self.options = gathered.field.outline.solve
+
+    def solved(self) -> Solved:
+        """Solve, improve the passives of each plan, and solve again while that finds anything."""
+        best: list[Chosen] = []
+        for turn in range(1, TURNS + 1):
+            share = SOLVE if turn < TURNS else 1.0
+            pools = [Pool(pool.kind, pool.group, dict(pool.held)) for pool in self.gathered.pools]
+            solution, found = self._solve(pools, self.options.plans, share * self._left())
+            best = _cheapest([*found, *best], self.options.plans)
+            if best:
+                self.gathered.cost = min(self.gathered.cost, best[0].plan.totals.cost)
+            better = list(self._improved(found)) if self._left() > LEAST and turn < TURNS else []
+            best = _cheapest([*best, *better], self.options.plans)
+            if not better or self._left() < LEAST:
+                break
+        # what an earlier solve proved, it proved over smaller pools
+        last = {id(one) for one in found}
+        kept = [one if id(one) in last else unproven(one, self.gathered.floor) for one in best]
+        return Solved(tuple(kept), solution)
+
+    def _left(self) -> float:
+        return self.until - time.monotonic()
+
+    def _solve(self, pools: Sequence[Pool], plans: int, seconds: float) -> tuple[Solution, list[Chosen]]:
+        made = assembled(self.field, pools)
+        options = SolveOptions(
+            time=max(LEAST, seconds), solver=self.options.solver, plans=plans, progress=self._tell
+        )
+        solution = solve(made.board, options)
+        return solution, [Chosen(self.field, pools, made, plan) for plan in solution.plans]
+
+    def _tell(self, progress: Progress) -> None:
+        inf = float("inf")
+        cost = inf if progress.cost is None else float(progress.cost)
+        self.gathered.tell(progress.stage, min(cost, self.gathered.cost), self.gathered.floor)
+
+    def _improved(self, found: Sequence[Chosen]) -> Iterator[Chosen]:
+        """The plans that became cheaper with other passives and the same active parts."""
+        for chosen in found:
+            if self._left() < LEAST:
+                return
+            if not self._enriched(chosen):
+                continue
+            pools = list(self._same_active(chosen))
+            _, again = self._solve(pools, 1, IMPROVE * self._left())
+            if again and again[0].plan.totals.cost < chosen.plan.totals.cost:
+                yield again[0]
+
+    def _enriched(self, chosen: Chosen) -> int:
+        """Take more candidates with the active parts of a plan into the pools; how many are new."""
+        added = 0
+        for i, keys in enumerate(_used(chosen)):
+            rows = np.array([chosen.pools[i].held[key][1][:2] for key in sorted(keys)], dtype=np.int64)
+            pairs = np.unique(rows, axis=0)
+            added += self.gathered.passives(i, (pairs[:, 0], pairs[:, 1]), MORE)
+        return added
+
+    def _same_active(self, chosen: Chosen) -> Iterator[Pool]:
+        """The pools cut to the active parts of a plan."""
+        for pool, keys in zip(self.gathered.pools, _used(chosen), strict=True):
+            active = {key[:2] for key in keys}
+            yield Pool(pool.kind, pool.group, {k: v for k, v in pool.held.items() if k[:2] in active})
+
+
+def _used(chosen: Chosen) -> list[set[tuple[int, int, int, int, int, bool]]]:
+    """By kind, the options that a plan takes."""
+    return [
+        {keys[j] for j in options} for keys, options in zip(chosen.made.keys, chosen.plan.chosen, strict=True)
+    ]
+
+
+def active_of(chosen: Chosen) -> frozenset[int]:
+    """The photodiodes and op-amps of a plan, by place on the shelf."""
+    made = chosen.made
+    return frozenset(made.parts[line.part] for line in chosen.plan.lines if made.board.is_active(line.part))
+
+
+def _cheapest(plans: Sequence[Chosen], most: int) -> list[Chosen]:
+    """The cheapest plan of each set of active parts, the cheapest first; of equal ones the earlier."""
+    best: dict[frozenset[int], Chosen] = {}
+    for one in sorted(plans, key=lambda chosen: chosen.plan.totals.cost):
+        best.setdefault(active_of(one), one)
+    return list(best.values())[:most]
+
+
+def unproven(chosen: Chosen, floor: float) -> Chosen:
+    """The plan with no more than `floor` said of its bound."""
+    least = min(chosen.plan.totals.cost, int(floor))
+    return replace(chosen, plan=replace(chosen.plan, bound=least, proven=False))
