@@ -5,7 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Callable, Iterable, Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from optimizer.catalog import ReadOptions, read_catalogs
@@ -44,7 +44,11 @@ def load(source: str | Path | Request, *, read: Reader = read_catalogs) -> Study
         InputError: with every problem of the request and of its catalogs at once, names in the
             request that no catalog holds among them.
     """
-    draft = _draft_of(source) if isinstance(source, Request) else examine(source)
+    return complete(_draft_of(source) if isinstance(source, Request) else examine(source), read=read)
+
+
+def complete(draft: Draft, *, read: Reader = read_catalogs) -> Study:
+    """Read the catalogs that a draft names; as `load`, for a request whose file is read already."""
     problems = list(draft.problems)
     catalogs = None
     try:
@@ -56,6 +60,16 @@ def load(source: str | Path | Request, *, read: Reader = read_catalogs) -> Study
     if problems or catalogs is None:
         raise InputError(problems)
     return Study(draft.request, catalogs, Source(draft.request.path.name, draft.sha256, 0))
+
+
+def from_here(problems: Iterable[Problem], request: Path) -> Iterator[Problem]:
+    """The problems of the request at a path and of its catalogs, each file named as seen from here.
+
+    Catalogs are named in their problems as the request names them, so as seen from its folder.
+    """
+    for problem in problems:
+        own = problem.file == str(request) or Path(problem.file).is_absolute()
+        yield problem if own else replace(problem, file=str(request.parent / problem.file))
 
 
 def _draft_of(request: Request) -> Draft:

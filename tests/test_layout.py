@@ -25,7 +25,7 @@ TOP_LEVEL = {"README.md", "pyproject.toml", "optimizer", "catalogs", "tests", "e
 ROOMS: dict[str, set[str]] = {
     "errors": set(),
     "input_file": set(),
-    "toml": set(),
+    "toml": {"input_file"},
     "quantities": set(),
     "vocabulary": {"quantities"},
     "series": set(),
@@ -41,12 +41,17 @@ ROOMS: dict[str, set[str]] = {
         "vocabulary",
     },
     "board": {"search", "study", "request", "catalog", "quantities"},
-    "record": {"search", "study", "request", "quantities", "vocabulary"},
-    "review": {
-        "search", "study", "record", "request", "figures", "margins", "catalog", "quantities", "vocabulary",
+    "planning": {
+        "board", "search", "study", "request", "catalog", "quantities", "toml", "input_file", "vocabulary",
+        "margins", "figures", "physics", "series",
     },
-    "report": {"review", "record", "search", "catalog", "quantities", "vocabulary"},
-    "cli": {"record", "review", "report", "search", "study", "request", "catalog"},
+    "record": {"planning", "search", "study", "request", "catalog", "quantities", "vocabulary"},
+    "review": {
+        "planning", "search", "study", "record", "request", "figures", "margins", "catalog", "quantities",
+        "vocabulary",
+    },
+    "report": {"planning", "review", "record", "search", "catalog", "quantities", "vocabulary"},
+    "cli": {"planning", "record", "review", "report", "search", "study", "request", "catalog", "toml"},
 }  # fmt: skip
 TOP_MODULES = {"__init__", "__main__"}
 
@@ -60,6 +65,7 @@ OUTSIDE: dict[str, set[str]] = {
     "statistics": {"numpy", "scipy"},
     "search": {"numpy", "scipy"},
     "board": {"numpy", "pulp", "highspy"},
+    "planning": {"numpy"},
     "record": {"pandas"},
     "review": {"numpy"},
     "report": {"rich", "numpy", "matplotlib", "jinja2", "markupsafe"},

@@ -13,9 +13,9 @@ from optimizer.catalog.text import is_text_encoding
 from optimizer.errors import Problem, did_you_mean
 from optimizer.input_file import InputFile
 from optimizer.quantities.currencies import CURRENCIES
-from optimizer.toml.lines import KeyPath, key_lines
+from optimizer.toml.document import read_document
+from optimizer.toml.lines import KeyPath
 from optimizer.toml.place import Place
-from optimizer.toml.text import decode, parse
 from optimizer.vocabulary import COLUMNS
 from optimizer.vocabulary.allowed import STATUSES
 
@@ -32,10 +32,8 @@ def read_source_map(path: Path, written: str) -> SourceMap:
     if not beside.exists():
         return SourceMap(Place(file))
     source = read_catalog_file(beside, file)
-    text = decode(source.data, file)
-    data = parse(text, file)
-    walker = _Walker(SourceMap(Place(file, key_lines(text))), beside.parent)
-    return walker.whole(data, source)
+    document = read_document(source)
+    return _Walker(SourceMap(document.place), beside.parent).whole(document.tables, source)
 
 
 @dataclass(slots=True)

@@ -14,7 +14,7 @@ from typing import NoReturn
 from optimizer.cli.options.shared import COMMAND_LINE
 from optimizer.errors import InputError, Problem, did_you_mean
 
-COMMANDS = ("start", "inspect", "shortlist", "replace", "exposure", "whynot", "tradeoff", "justify")
+COMMANDS = ("start", "inspect", "shortlist", "board", "replace", "exposure", "whynot", "tradeoff", "justify")
 EXAMPLES = """\
 examples:
   luxsift start receiver             a request and small catalogs to begin from

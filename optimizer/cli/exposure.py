@@ -28,7 +28,7 @@ def exposure(parsed: argparse.Namespace) -> int:
     with steps("records", total=len(taken)) as step:
         found = looked_at(taken, step)
     failure = _save(found, parsed.csv)
-    _print(found, len(taken), parsed.csv)
+    _print(found, len({one.name for one in taken}), parsed.csv)
     if failure is not None:
         raise failure
     return EXPOSED if any(one.alone or one.lost for one in found.parts) else SAFE
@@ -46,8 +46,9 @@ def _taken(parsed: argparse.Namespace) -> list[Taken]:
             taken = take_up(parsed.records, step)
     except InputError as error:
         problems += error.problems
-    for request in (one.reopened.study.request for one in taken):
-        inputs += [request.path, *input_files(request)]
+    for one in taken:
+        request = one.reopened.study.request
+        inputs += [request.path, *input_files(request), *([one.board.path] if one.board else [])]
     problems += output_problems([("--csv", parsed.csv)], dict.fromkeys(inputs))
     if problems:
         raise InputError(problems)

@@ -12,6 +12,7 @@ from optimizer.cli.options.replace import ReplaceOptions, replace_options
 from optimizer.cli.output import write, write_lines
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.reopened import reopened
+from optimizer.cli.replace_board import replace_board
 from optimizer.cli.steps import steps
 from optimizer.errors import InputError, OutputError, Problem
 
@@ -26,6 +27,10 @@ MEETS, NOTHING_MEETS = 0, 1
 def replace(parsed: argparse.Namespace) -> int:
     """Find and print the substitutes that `parsed` asks for; raises InputError and OutputError."""
     options, problems = replace_options(parsed)
+    from optimizer.record import says_board
+
+    if says_board(options.record):
+        return replace_board(options, problems)
     found = _reopened(options, problems)
     from optimizer.review.reopen import chosen_of
     from optimizer.review.replacement import record_of, replacement

@@ -8,13 +8,14 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from optimizer.cli.messages import LONGEST_WORDS, StudyError, where_from
+from optimizer.cli.left_out import tell_left_out
+from optimizer.cli.messages import StudyError, where_from
 from optimizer.cli.options.shared import COMMAND_LINE, STANDARD_OUTPUT
 from optimizer.cli.options.shortlist import ShortlistOptions, shortlist_options
 from optimizer.cli.output import write, write_lines
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.progress import watch
-from optimizer.errors import InputError, OutputError, Problem, clean, shortened
+from optimizer.errors import InputError, OutputError, Problem
 
 if TYPE_CHECKING:
     from optimizer.record import Record
@@ -22,7 +23,6 @@ if TYPE_CHECKING:
     from optimizer.study import Study
 
 MEETS, NOTHING_MEETS, INTERRUPTED = 0, 1, 130
-LISTED = 20
 CUT_SHORT = (
     "luxsift: interrupted after the search, while its answer was being written; "
     "a file is written whole or not at all\n"
@@ -36,7 +36,9 @@ def shortlist(parsed: argparse.Namespace) -> int:
     from optimizer.search import Interrupted
     from optimizer.search import shortlist as search
 
-    _tell_left_out(study, options)
+    left_out = study.catalogs.left_out
+    if left_out and not options.quiet:
+        tell_left_out(left_out, where_from(options.request, {entry.file for entry in left_out}))
     try:
         with watch(quiet=options.quiet) as watcher:
             outcome = search(study.request, study.catalogs, workers=options.workers, progress=watcher)
@@ -126,23 +128,6 @@ def _print(record: Record, options: ShortlistOptions) -> None:
     stream = sys.stderr if options.piped else sys.stdout
     draw = table_only if options.quiet else report
     write_lines(stream, draw(record, width_of(stream)))
-
-
-def _tell_left_out(study: Study, options: ShortlistOptions) -> None:
-    from optimizer.report.words import several
-
-    rows = study.catalogs.left_out
-    if options.quiet or not rows:
-        return
-    heading = f"luxsift: left out of the catalogs as source.toml says: {several(len(rows), 'row')}"
-    lines = [heading + where_from(options.request, {entry.file for entry in rows})]
-    lines += [
-        f"  {clean(entry.file)}, line {entry.row}: {shortened(clean(entry.reason), LONGEST_WORDS)}"
-        for entry in rows[:LISTED]
-    ]
-    if len(rows) > LISTED:
-        lines.append(f"  ... and {len(rows) - LISTED:,} more (luxsift inspect lists them)")
-    write(sys.stderr, "".join(f"{line}\n" for line in lines))
 
 
 def _tell_interrupted(study: Study, outcome: Outcome, last: Progress | None, workers: int) -> None:

@@ -38,9 +38,9 @@ Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 Tell = Callable[[str, float, float], None]
 
-FIRST = 40
-"""Pairs of each kind that begin its pool."""
-EACH, MOST = 200, 800
+FIRST, SIDE = 20, 4
+"""Pairs of each kind that begin its pool, and those for each other view of what is scarce."""
+EACH, MOST = 80, 320
 """Candidates of each kind that a round may add, at first and at last."""
 ROUNDS, IDLE = 12, 2
 """Rounds at most, and those without gain after which no more are made."""
@@ -89,7 +89,7 @@ class Gathering:
         """Gather until nothing changes, or the time is over."""
         each, idle = EACH, 0
         for _ in range(ROUNDS):
-            if time.monotonic() > self.until:
+            if self.rounds and time.monotonic() > self.until:
                 return
             cost, floor = self.cost, self.floor
             added = self._round(each)
@@ -107,24 +107,41 @@ class Gathering:
             rows[self.field.amplifiers.rows[i]] = True
             self.reach.append(everything(self.field, i, able & rows[:, None]))
             self.first_pairs[i] = int(self.reach[i].pairs.sum())
+        self._seen(PLAIN, FIRST)
+
+    def _seen(self, weights: Weights, show: int) -> None:
+        """Take in the best of each kind at the least prices that parts can have under `weights`."""
+        first = Universe(self.field, self.reach, weights).first()
+        for i in range(len(self.pools)):
+            self._hunted(i, self._priced(i, first), show)
+
+    def _widen(self) -> None:
+        """Where nothing in the pools keeps the limits: look for what is scarce, and for op-amps to share."""
         for weights in self._views():
-            first = Universe(self.field, self.reach, weights).first()
-            for i in range(len(kinds)):
-                self._hunted(i, self._priced(i, first), FIRST)
+            if time.monotonic() < self.until:
+                self._seen(weights, SIDE)
+        if self.field.outline.rules.opamp_parts or self.field.outline.limits.line_items:
+            self._spread()
 
     def _views(self) -> list[Weights]:
-        """Plain cost, and cost with a price on each limit in turn: pools must hold what keeps the limits."""
-        outline = self.field.outline
-        limits = {
-            "current": outline.limits.supply_current,
-            "area": outline.limits.area,
-        }
-        scale = 100.0 * outline.quantity * max(outline.limits.cost or 0.0, 10.0)
-        return [
-            PLAIN,
-            *(Weights(**{name: scale / limit}) for name, limit in limits.items() if limit),
-            *(Weights(**{name: 10.0 * scale / limit}) for name, limit in limits.items() if limit),
-        ]
+        """Cost with a price on each limit in turn."""
+        limits = self.field.outline.limits
+        scale = 100.0 * self.field.outline.quantity * max(limits.cost or 0.0, 10.0)
+        stated = {"current": limits.supply_current, "area": limits.area}
+        prices = [(name, scale / limit) for name, limit in stated.items() if limit]
+        return [Weights(**{name: times * price}) for times in (10.0, 1.0) for name, price in prices]
+
+    def _spread(self) -> None:
+        """The best of each kind with every op-amp: where part numbers are few, channels must share them."""
+        first = Universe(self.field, self.reach).first()
+        asked = [self._priced(i, first) for i in range(len(self.pools))]
+        pairs = [self._pairs(i, one) for i, one in enumerate(asked)]
+        for group in range(len(self.field.amplifiers.names)):
+            for i, one in enumerate(asked):
+                mine = self.field.amplifiers.group[i][pairs[i].opamp] == group
+                if mine.any() and time.monotonic() < self.until:
+                    found = ask_pairs(one, pairs[i].take(mine), Rules("cost", SIDE, 0.0))
+                    self._take(i, found.choice, found.vector[:, 0])
 
     def _priced(self, i: int, tariff: Tariff) -> Query:
         return priced(self.asked[i], self.field, i, tariff)
@@ -152,6 +169,10 @@ class Gathering:
         if not all(channel.options for channel in made.board.channels):
             return 0
         self._look(made)
+        if math.isinf(self.cost) and not self.rounds:
+            self._widen()
+            made = assembled(self.field, self.pools)
+            self._look(made)
         tariff = self._tariff(made)
         asked = [self._priced(i, tariff) for i in range(len(self.pools))]
         least = [self._hunted(i, query, 1) for i, query in enumerate(asked)]
@@ -199,6 +220,8 @@ class Gathering:
 
     def passives(self, i: int, pairs: tuple[Ints, Ints], most: int) -> int:
         """More candidates with the active parts of `pairs`, the cheapest at the last prices; how many."""
+        if not self.prices:
+            return 0
         found = collect(self.prices[i], pairs, math.inf, most)
         return self._take(i, found.choice, found.margin)
 

@@ -7,7 +7,7 @@ import time
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import replace
 
-from optimizer.board.solution import INFEASIBLE, INTERRUPTED, PROVEN
+from optimizer.board.solution import INFEASIBLE, PROVEN
 from optimizer.errors import InputError
 from optimizer.planning import plan
 from optimizer.planning.amplifiers import amplifiers_of
@@ -34,7 +34,7 @@ SEVERAL_RAILS = (
     "channels run from different supplies: op-amps on one supply are planned apart from those on another, "
     "so a part number that both could share may be missed"
 )
-STATUS = {PROVEN: plan.OPTIMAL, INTERRUPTED: plan.INTERRUPTED, INFEASIBLE: plan.INFEASIBLE}
+STATUS = {PROVEN: plan.OPTIMAL, INFEASIBLE: plan.INFEASIBLE}
 
 
 def plan_board(outline: Outline, progress: Report | None = None) -> Planned:
@@ -55,6 +55,7 @@ class _Planning:
         self.until = self.began + outline.solve.time
         self.faults: list[str] = []
         self.sound = 0
+        self.interrupted = False
         self.alone: Alone | None = None
 
     def planned(self) -> Planned:
@@ -76,6 +77,7 @@ class _Planning:
         except KeyboardInterrupt:
             return self._ended(plan.INTERRUPTED)
         plans = tuple(self._told(gathered, solved))
+        self.interrupted = interrupted or solved.solution.interrupted
         return self._answer(gathered, solved, plans) if plans else self._refused(gathered, solved)
 
     def _tell(self, doing: str, cost: float, floor: float) -> None:
@@ -98,7 +100,7 @@ class _Planning:
         for chosen in solved.chosen:
             rank = 1 + self.sound
             try:
-                one = told(chosen, rank, _scope(gathered, chosen, rank))
+                one = told(chosen, rank, _scope(gathered, solved, chosen))
                 audited(self.outline, one)
             except UnsoundBoardError as fault:
                 self.faults.append(f"a plan did not stand the check: {fault}")
@@ -110,6 +112,8 @@ class _Planning:
 
     def _answer(self, gathered: Gathering, solved: Solved, plans: tuple[BoardPlan, ...]) -> Planned:
         status = STATUS.get(solved.solution.status, plan.WITHIN)
+        if self.interrupted:
+            status = plan.INTERRUPTED
         if status == plan.OPTIMAL and plans[0].proven == plan.UNPROVEN:
             status = plan.WITHIN
         return replace(
@@ -133,7 +137,7 @@ class _Planning:
         over = limit is not None and gathered.floor > limit
         proven = over or (solution.status == INFEASIBLE and gathered.complete)
         status = plan.INFEASIBLE if proven else plan.NOTHING
-        if solution.status == INTERRUPTED:
+        if self.interrupted:
             return replace(self._ended(plan.INTERRUPTED), faults=solution.faults)
         self._tell("why there is no plan", math.inf, gathered.floor)
         return replace(
@@ -143,7 +147,7 @@ class _Planning:
             rounds=gathered.rounds,
             floor=math.ceil(gathered.floor),
             faults=(*solution.faults, *self.faults),
-            refusal=refusal(gathered.field, made, seconds, self.outline.solve.solver),
+            refusal=refusal(gathered.field, made, seconds, complete=gathered.complete),
             alone=self.alone,
         )
 
@@ -176,12 +180,12 @@ def _limited(outline: Outline) -> tuple[str, ...]:
     return tuple(name for name, limit in stated.items() if limit is not None)
 
 
-def _scope(gathered: Gathering, chosen: Chosen, rank: int) -> str:
+def _scope(gathered: Gathering, solved: Solved, chosen: Chosen) -> str:
     """Over what a plan is proven to be the cheapest."""
     if not chosen.plan.proven:
         return plan.UNPROVEN
-    first = rank == 1 and (gathered.complete or gathered.floor > chosen.plan.totals.cost - 1)
-    return plan.CATALOGS if first else plan.POOLS
+    everything = (gathered.complete and solved.lossless) or gathered.floor > chosen.plan.totals.cost - 1
+    return plan.CATALOGS if everything and chosen is solved.chosen[0] else plan.POOLS
 
 
 def _pools(gathered: Gathering) -> Iterator[Pool]:

@@ -14,21 +14,25 @@ SHARE = 0.5
 """The share of the time that the conflict takes; the relaxations have the rest."""
 
 
-def refusal(field: Field, made: Assembled, seconds: float, solver: str) -> Refusal:
-    """The limits and channels of `made` that cannot be met together, looked into for `seconds`."""
+def refusal(field: Field, made: Assembled, seconds: float, *, complete: bool) -> Refusal:
+    """The limits and channels of `made` that cannot be met together, looked into for `seconds`.
+
+    Only where the pools behind `made` are `complete` is anything proved.
+    """
+    solver = field.outline.solve.solver
     options = SolveOptions(time=seconds * SHARE, solver=solver)
     found = conflict(made.board, options)
     eased = relaxations(made.board, SolveOptions(time=seconds * (1.0 - SHARE), solver=solver))
     return Refusal(
         limits=() if found is None else tuple(NAMES.get(name, name) for name in found.budgets),
         channels=() if found is None else tuple(names_of([field.kinds[i] for i in found.channels])),
-        smallest=found is not None and found.smallest,
+        smallest=found is not None and found.smallest and complete,
         relaxations=tuple(
             Relaxation(
                 name=NAMES.get(one.budget, one.budget),
                 limit=_shown(field, one.budget, one.limit),
                 least=None if one.least is None else _shown(field, one.budget, one.least),
-                proven=one.proven,
+                proven=one.proven and complete,
             )
             for one in eased
         ),

@@ -9,29 +9,38 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from optimizer.board.heuristic import Best, Effort, look
 from optimizer.board.solution import Progress, Solution, SolveOptions
 from optimizer.board.solve import solve
-from optimizer.planning.columns import Field, Pool, assembled
+from optimizer.planning.columns import Field, Key, Pool, assembled
 from optimizer.planning.gather import Gathering
+from optimizer.planning.polish import polished
 from optimizer.planning.told import Chosen
+from optimizer.planning.trim import trimmed
 
 Ints = NDArray[np.int64]
 
-MORE = 400
+MORE = 250
 """Candidates with the passives of one plan's active parts, of each kind, that an improvement may add."""
 TURNS = 3
 """How often the pools are solved at most."""
 SOLVE, IMPROVE = 0.6, 0.1
 """The shares of the time left that a solve, and an improvement of one plan, may take."""
+PREPARE, STEPS = 0.05, 75
+"""The share of the time for a search for good plans before the first solve, and its steps a channel."""
 LEAST = 0.5
 
 
 @dataclass(frozen=True, slots=True)
 class Solved:
-    """The plans, the cheapest first, and what the last solve said."""
+    """The plans, the cheapest first, and what the last solve said.
+
+    `lossless`: it saw everything that matters of the pools.
+    """
 
     chosen: tuple[Chosen, ...]
     solution: Solution
+    lossless: bool
 
 
 class Solving:
@@ -45,21 +54,25 @@ class Solving:
     def solved(self) -> Solved:
         """Solve, improve the passives of each plan, and solve again while that finds anything."""
         best: list[Chosen] = []
+        self._prepare()
         for turn in range(1, TURNS + 1):
             share = SOLVE if turn < TURNS else 1.0
-            pools = [Pool(pool.kind, pool.group, dict(pool.held)) for pool in self.gathered.pools]
-            solution, found = self._solve(pools, self.options.plans, share * self._left())
+            cut = trimmed(self.field, self.gathered.pools)
+            solution, found = self._solve(cut.pools, self.options.plans, share * self._left())
             best = _cheapest([*found, *best], self.options.plans)
             if best:
                 self.gathered.cost = min(self.gathered.cost, best[0].plan.totals.cost)
-            better = list(self._improved(found)) if self._left() > LEAST and turn < TURNS else []
-            best = _cheapest([*best, *better], self.options.plans)
-            if not better or self._left() < LEAST:
+            if solution.interrupted:
                 break
+            better = self._improved(found[0]) if found and turn < TURNS else None
+            if better is None:
+                break
+            best = _cheapest([*best, better], self.options.plans)
         # what an earlier solve proved, it proved over smaller pools
         last = {id(one) for one in found}
         kept = [one if id(one) in last else unproven(one, self.gathered.floor) for one in best]
-        return Solved(tuple(kept), solution)
+        kept = _cheapest([self._polished(one) for one in kept], self.options.plans)
+        return Solved(tuple(kept), solution, cut.lossless)
 
     def _left(self) -> float:
         return self.until - time.monotonic()
@@ -77,23 +90,37 @@ class Solving:
         cost = inf if progress.cost is None else float(progress.cost)
         self.gathered.tell(progress.stage, min(cost, self.gathered.cost), self.gathered.floor)
 
-    def _improved(self, found: Sequence[Chosen]) -> Iterator[Chosen]:
-        """The plans that became cheaper with other passives and the same active parts."""
-        for chosen in found:
-            if self._left() < LEAST:
-                return
-            if not self._enriched(chosen):
-                continue
-            pools = list(self._same_active(chosen))
-            _, again = self._solve(pools, 1, IMPROVE * self._left())
-            if again and again[0].plan.totals.cost < chosen.plan.totals.cost:
-                yield again[0]
+    def _prepare(self) -> None:
+        """More passives for the active parts of good plans, so that the first solve need not be the last."""
+        made = assembled(self.field, self.gathered.pools)
+        known = Best(self.options.plans)
+        look(made.board, known, Effort(STEPS * self.field.copies, PREPARE * max(LEAST, self._left())))
+        for met in known.plans.values():
+            if self._left() > LEAST:
+                used = [{keys[j] for j in js} for keys, js in zip(made.keys, met.chosen, strict=True)]
+                self._enriched(self.gathered.pools, used)
 
-    def _enriched(self, chosen: Chosen) -> int:
-        """Take more candidates with the active parts of a plan into the pools; how many are new."""
+    def _improved(self, chosen: Chosen) -> Chosen | None:
+        """The plan with other passives and the same active parts, where that is cheaper."""
+        if self._left() < LEAST or not self._enriched(chosen.pools, _used(chosen)):
+            return None
+        pools = trimmed(self.field, list(self._same_active(chosen))).pools
+        _, again = self._solve(pools, 1, IMPROVE * self._left())
+        if again and again[0].plan.totals.cost < chosen.plan.totals.cost:
+            return again[0]
+        return None
+
+    def _polished(self, chosen: Chosen) -> Chosen:
+        """The plan with more margin at no more cost."""
+        better = polished(chosen, list(self._same_active(chosen)))
+        cheaper = better.plan.totals.cost < chosen.plan.totals.cost
+        return unproven(better, self.gathered.floor) if cheaper else better
+
+    def _enriched(self, pools: Sequence[Pool], used: Sequence[set[Key]]) -> int:
+        """Take more candidates with the active parts of `used`, by kind, into the pools; how many are new."""
         added = 0
-        for i, keys in enumerate(_used(chosen)):
-            rows = np.array([chosen.pools[i].held[key][1][:2] for key in sorted(keys)], dtype=np.int64)
+        for i, keys in enumerate(used):
+            rows = np.array([pools[i].held[key][1][:2] for key in sorted(keys)], dtype=np.int64)
             pairs = np.unique(rows, axis=0)
             added += self.gathered.passives(i, (pairs[:, 0], pairs[:, 1]), MORE)
         return added
@@ -105,7 +132,7 @@ class Solving:
             yield Pool(pool.kind, pool.group, {k: v for k, v in pool.held.items() if k[:2] in active})
 
 
-def _used(chosen: Chosen) -> list[set[tuple[int, int, int, int, int, bool]]]:
+def _used(chosen: Chosen) -> list[set[Key]]:
     """By kind, the options that a plan takes."""
     return [
         {keys[j] for j in options} for keys, options in zip(chosen.made.keys, chosen.plan.chosen, strict=True)

@@ -42,7 +42,7 @@ def build(study: Study, outcome: Outcome, chosen: int | None = 1) -> Record:
         "left_out": _left_out(study),
         "search": _search(outcome),
         "candidates": [
-            candidate_row(c, rank) | _yield(c.simulated, wanted)
+            candidate_row(c, rank) | yield_row(c.simulated, wanted)
             for rank, c in enumerate(outcome.candidates, 1)
         ],
         "near_misses": [
@@ -143,7 +143,7 @@ def _target(target: TargetValue) -> dict[str, Any]:
     return graded
 
 
-def _yield(simulated: Simulated | None, wanted: float | None) -> dict[str, Any]:
+def yield_row(simulated: Simulated | None, wanted: float | None) -> dict[str, Any]:
     """The key `yield` of a candidate; nothing where nothing was drawn at random."""
     if simulated is None:
         return {}

@@ -105,7 +105,7 @@ def document_problems(file: str, data: Any) -> list[Problem]:
     said = data.get("format") if isinstance(data, dict) else None
     if said != FORMAT:
         return [Problem(file, None, "format", None if said is None else str(said), *_other(said))]
-    return list(_shape(file, "", data, TOP) or _inner(file, data))
+    return list(shape_problems(file, "", data, TOP) or _inner(file, data))
 
 
 def _other(said: object) -> tuple[str, str]:
@@ -116,42 +116,43 @@ def _other(said: object) -> tuple[str, str]:
 
 
 def _inner(file: str, data: Mapping[str, Any]) -> Iterator[Problem]:
-    yield from _shape(file, "search", data["search"], SEARCH)
-    request = _shape(file, "request", data["request"], REQUEST)
+    yield from shape_problems(file, "search", data["search"], SEARCH)
+    request = shape_problems(file, "request", data["request"], REQUEST)
     yield from request
     for table, shape in () if request else (("light", LIGHT), ("space", SPACE), ("ranking", RANKING)):
-        yield from _shape(file, f"request.{table}", data["request"][table], shape)
+        yield from shape_problems(file, f"request.{table}", data["request"][table], shape)
     if "replaces" in data:
         yield from _replaces(file, data["replaces"])
     for group in ("candidates", "near_misses"):
         for index, entry in enumerate(data[group]):
-            yield from _candidate(file, f"{group}[{index}]", entry)
+            yield from candidate_problems(file, f"{group}[{index}]", entry)
 
 
 def _replaces(file: str, table: Any) -> Iterator[Problem]:
     """What is wrong with what a record says of the candidate that its own replace."""
-    own = _shape(file, "replaces", table, REPLACES)
+    own = shape_problems(file, "replaces", table, REPLACES)
     yield from own
     for index, name in enumerate(() if own else table["out"]):
         if not isinstance(name, str):
             yield Problem(file, None, f"replaces.out[{index}]", str(name)[:60], "expected text")
 
 
-def _candidate(file: str, where: str, entry: Any) -> Iterator[Problem]:
-    own = _shape(file, where, entry, CANDIDATE)
+def candidate_problems(file: str, where: str, entry: Any) -> Iterator[Problem]:
+    """What is wrong with one candidate of a record, at `where` in its document."""
+    own = shape_problems(file, where, entry, CANDIDATE)
     if isinstance(entry, dict):
         stated = {key: kinds for key, kinds in OUTLINES.items() if key in entry}
-        own += _shape(file, where, entry, stated)
+        own += shape_problems(file, where, entry, stated)
     yield from own
     if own:
         return
-    yield from _shape(file, f"{where}.reference", entry["reference"], REFERENCE)
+    yield from shape_problems(file, f"{where}.reference", entry["reference"], REFERENCE)
     figures = dict.fromkeys(VOCABULARY, (*NUMBER, type(None)))
-    yield from _shape(file, f"{where}.figures", entry["figures"], figures)
+    yield from shape_problems(file, f"{where}.figures", entry["figures"], figures)
     for index, target in enumerate(entry["targets"]):
         place = f"{where}.targets[{index}]"
         cornered = isinstance(target, dict) and not CORNER.keys().isdisjoint(target)
-        yield from _shape(file, place, target, {**TARGET, **CORNER} if cornered else TARGET)
+        yield from shape_problems(file, place, target, {**TARGET, **CORNER} if cornered else TARGET)
         if cornered and isinstance(target.get("corner"), dict):
             yield from _numbers(file, f"{place}.corner", target["corner"], NUMBER)
     if "yield" in entry:
@@ -159,7 +160,7 @@ def _candidate(file: str, where: str, entry: Any) -> Iterator[Problem]:
 
 
 def _drawn(file: str, where: str, drawn: Any) -> Iterator[Problem]:
-    own = _shape(file, where, drawn, YIELD)
+    own = shape_problems(file, where, drawn, YIELD)
     yield from own
     if not own:
         yield from _numbers(file, f"{where}.failures", drawn["failures"], (int,))
@@ -168,10 +169,11 @@ def _drawn(file: str, where: str, drawn: Any) -> Iterator[Problem]:
 
 def _numbers(file: str, where: str, table: Mapping[str, Any], kinds: tuple[type, ...]) -> list[Problem]:
     """Everything in `table` that is none of `kinds`, whatever its keys."""
-    return _shape(file, where, table, dict.fromkeys(table, kinds))
+    return shape_problems(file, where, table, dict.fromkeys(table, kinds))
 
 
-def _shape(file: str, where: str, table: Any, shape: Shape) -> list[Problem]:
+def shape_problems(file: str, where: str, table: Any, shape: Shape) -> list[Problem]:
+    """Every key of `shape` that `table`, at `where` in a document, lacks or holds something else under."""
     if not isinstance(table, dict):
         return [Problem(file, None, where or None, None, "expected a table")]
     found = []

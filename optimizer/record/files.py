@@ -11,16 +11,17 @@ from pathlib import Path
 from typing import Any, NoReturn
 
 from optimizer.errors import InputError, OutputError, Problem, reason
+from optimizer.record.board_check import board_problems, is_board
 from optimizer.record.check import document_problems
-from optimizer.record.model import Record
+from optimizer.record.model import BoardRecord, Record
 
 
-def to_json(record: Record) -> str:
+def to_json(record: Record | BoardRecord) -> str:
     """The record as JSON text, indented, ending in a newline."""
     return json.dumps(record.data, indent=2, ensure_ascii=False, allow_nan=False) + "\n"
 
 
-def write(record: Record, path: str | Path) -> None:
+def write(record: Record | BoardRecord, path: str | Path) -> None:
     """Write the record as JSON; raises OutputError and leaves the old file as it was on failure."""
     write_text(path, to_json(record))
 
@@ -65,12 +66,42 @@ def read(path: str | Path) -> Record:
 
     Raises InputError where the file is missing, is not JSON, or is no record of this format.
     """
+    return _shortlist(path, _parse(path, _text(path)))
+
+
+def read_any(path: str | Path) -> Record | BoardRecord:
+    """Read a record of either kind, of a shortlist or of a board; see `read`."""
     data = _parse(path, _text(path))
+    return _board(path, data) if is_board(data) else _shortlist(path, data)
+
+
+def says_board(path: str | Path) -> bool:
+    """Whether the file at `path` says that it is a board's record, be it in order or not."""
+    try:
+        return is_board(_parse(path, _text(path)))
+    except InputError:
+        return False
+
+
+def read_board(path: str | Path) -> BoardRecord:
+    """Read the record of a board; see `read`."""
+    return _board(path, _parse(path, _text(path)))
+
+
+def _shortlist(path: str | Path, data: Any) -> Record:
     problems = document_problems(str(path), data)
     if problems:
         raise InputError(problems)
     assert isinstance(data, Mapping)  # document_problems has just said so
     return Record(dict(data))
+
+
+def _board(path: str | Path, data: Any) -> BoardRecord:
+    problems = board_problems(str(path), data)
+    if problems:
+        raise InputError(problems)
+    assert isinstance(data, Mapping)  # board_problems has just said so
+    return BoardRecord(dict(data))
 
 
 def _fill(path: Path, text: str) -> None:

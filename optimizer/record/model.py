@@ -10,6 +10,7 @@ if TYPE_CHECKING:
     import pandas as pd
 
 FORMAT = "luxsift-shortlist/1"
+BOARD_FORMAT = "luxsift-board/1"
 
 
 @dataclass(frozen=True, repr=False)
@@ -61,3 +62,23 @@ class Record:
     def _shown(self) -> pd.DataFrame:
         """What to look at first: the candidates, or the near misses where nothing meets."""
         return self.table if self.candidates else self.near_miss_table
+
+
+@dataclass(frozen=True, repr=False)
+class BoardRecord:
+    """What planning a board came to: `data` is the JSON document that `board --save` writes, in SI units."""
+
+    data: Mapping[str, Any]
+
+    @property
+    def plans(self) -> list[dict[str, Any]]:
+        """The plans, the best first."""
+        return list(self.data["plans"])
+
+    @property
+    def chosen(self) -> dict[str, Any] | None:
+        """The plan that is marked as chosen; None where there is none."""
+        return next((plan for plan in self.plans if plan["rank"] == self.data["chosen"]), None)
+
+    def __repr__(self) -> str:
+        return f"<BoardRecord {self.data['name']}: {len(self.plans)} plans>"

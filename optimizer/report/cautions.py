@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from typing import Any
 
 # What the model leaves out and how it takes values, by `tolerance.method` ("": no [tolerance] is stated).
@@ -57,8 +57,13 @@ def left_out(request: Mapping[str, Any]) -> str:
 
 def cautions(request: Mapping[str, Any]) -> str:
     """The cautions that fit the request's wavelength, as one paragraph."""
-    texts = (SOURCES, band(request), GENERAL)
-    return " ".join(text for text in texts if text)
+    return board_cautions((request,))
+
+
+def board_cautions(requests: Iterable[Mapping[str, Any]]) -> str:
+    """The cautions that fit the wavelengths of several requests, each once, as one paragraph."""
+    bands = dict.fromkeys(band(request) for request in requests)
+    return " ".join(text for text in (SOURCES, *bands, GENERAL) if text)
 
 
 def band(request: Mapping[str, Any]) -> str:

@@ -11,7 +11,7 @@ from optimizer.errors import clean
 from optimizer.quantities import KINDS, show
 from optimizer.report.cells import ASSUMED, LINEAR
 from optimizer.report.paragraphs import styled
-from optimizer.report.words import count, several, share, spoken
+from optimizer.report.words import count, ranges, several, share, spoken
 from optimizer.report.yields import BELOW, blanks, is_below, is_unknown
 from optimizer.vocabulary import COLUMNS
 
@@ -141,18 +141,7 @@ def rank_words(ranks: Sequence[int], rows: int) -> str:
     """The ranks of some of `rows` rows: 'row 3', 'rows 1, 4-8', 'every row', 'in 20 rows'."""
     if len(ranks) == rows > 1:
         return "every row"
-    runs = _runs(ranks)
+    runs = ranges(ranks)
     if sum(run.count("-") + 1 for run in runs) > RANKS_NAMED:
         return f"in {count(len(ranks))} rows"
     return f"row {ranks[0]}" if len(ranks) == 1 else f"rows {', '.join(runs)}"
-
-
-def _runs(ranks: Sequence[int]) -> list[str]:
-    """Rising numbers one by one, with runs of three or more written '2-8'."""
-    runs: list[list[int]] = []
-    for rank in ranks:
-        if runs and rank == runs[-1][-1] + 1:
-            runs[-1].append(rank)
-        else:
-            runs.append([rank])
-    return [text for run in runs for text in ([f"{run[0]}-{run[-1]}"] if len(run) > 2 else map(str, run))]

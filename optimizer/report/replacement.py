@@ -58,12 +58,7 @@ def replacement_lines(answer: Replacement, record: Record, width: int) -> list[T
 
 def _headline(answer: Replacement, data: Mapping[str, Any], width: int) -> list[Text]:
     out = styled(clean(data["name"]), width, "bold")
-    for part, uses in _gone(answer.withdrawal.parts):
-        maker = f" ({clean(part.maker)})" if part.maker else ""
-        out += styled(f"Gone: {' and '.join(uses)} {clean(part.part)}{maker}, {WHY[part.why]}", width)
-    keep = sorted(answer.withdrawal.plan.keep, key=list(NAMES).index)
-    if keep:
-        out += styled(f"Kept as it is: {', '.join(NAMES[position] for position in keep)}", width)
+    out += gone_lines(answer.withdrawal.parts, sorted(answer.withdrawal.plan.keep), width)
     out += changed_lines(answer.reopened.changed, width)
     found = len(data["candidates"])
     if not found:
@@ -72,6 +67,18 @@ def _headline(answer: Replacement, data: Mapping[str, Any], width: int) -> list[
     what = "One substitute meets" if found == 1 else f"{count(found)} substitutes meet"
     order = "the least change first, and for each kind of change the fewest changed positions first"
     return out + styled(f"{what} the request, {order}{currency}", width)
+
+
+def gone_lines(parts: Sequence[Withdrawn], keep: Sequence[str], width: int) -> list[Text]:
+    """What is gone and why, and which positions are to be kept."""
+    out = []
+    for part, uses in _gone(parts):
+        maker = f" ({clean(part.maker)})" if part.maker else ""
+        out += styled(f"Gone: {' and '.join(uses)} {clean(part.part)}{maker}, {WHY[part.why]}", width)
+    kept = sorted(keep, key=list(NAMES).index)
+    if kept:
+        out += styled(f"Kept as it is: {', '.join(NAMES[position] for position in kept)}", width)
+    return out
 
 
 def _gone(parts: Sequence[Withdrawn]) -> list[tuple[Withdrawn, list[str]]]:
@@ -85,10 +92,11 @@ def _gone(parts: Sequence[Withdrawn]) -> list[tuple[Withdrawn, list[str]]]:
 def _old(answer: Replacement, data: Mapping[str, Any], width: int) -> list[Text]:
     out = [Text(f"Row {answer.old['rank']} of the record, to be replaced", "bold")]
     rows = parts_list(answer.old, data["request"])
-    return out + _labelled(rows, width)
+    return out + labelled(rows, width)
 
 
-def _labelled(rows: Sequence[tuple[str, str]], width: int, indent: int = 2) -> list[Text]:
+def labelled(rows: Sequence[tuple[str, str]], width: int, indent: int = 2) -> list[Text]:
+    """Labels with what they stand for, folded beside them."""
     out = []
     label_width = max(10, *(len(label) for label, _ in rows)) if rows else 10
     for label, text in rows:
@@ -120,4 +128,4 @@ def _row(old: Row, row: Row, data: Mapping[str, Any], width: int) -> list[Text]:
     head = f"{number}  {clean(row['photodiode'])} with {clean(row['opamp'])}, {many}"
     said = [*changes(old, row, positions), ("cost", cost_words(old, row, data["request"]))]
     said += [("yield" if i == 0 else "", text) for i, text in enumerate(yield_words(row, data["request"]))]
-    return styled(head, width, "bold" if chosen else "", "     ") + _labelled(said, width, 5)
+    return styled(head, width, "bold" if chosen else "", "     ") + labelled(said, width, 5)

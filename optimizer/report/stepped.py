@@ -11,7 +11,7 @@ from rich.text import Text
 from optimizer.errors import clean
 from optimizer.record.build import candidate_row, plain
 from optimizer.report.cautions import cautions, left_out
-from optimizer.report.layout import GAP, Column, fit, lines
+from optimizer.report.layout import GAP, Column, fit, lines, total
 from optimizer.report.paragraphs import styled
 from optimizer.report.words import figure, margin_words
 from optimizer.search.result import Candidate
@@ -94,11 +94,22 @@ def margins_words(run: Sequence[Step]) -> str:
 
 def stacked(columns: Sequence[Column], width: int) -> list[Text]:
     """A table; columns that find no room stand on further lines, under a row's first and moved in."""
-    groups = _parted(columns, width)
+    return _drawn(_parted(columns, width), width)
+
+
+def grouped(groups: Sequence[Sequence[Column]], width: int) -> list[Text]:
+    """A table on one line where it fits; else each of the groups stands on lines of its own, as `stacked`."""
+    together = [column for group in groups for column in group]
+    if total(together) <= width:
+        return _drawn([together], width)
+    return _drawn([own for group in groups for own in _parted(group, width - INDENT)], width)
+
+
+def _drawn(groups: Sequence[Sequence[Column]], width: int) -> list[Text]:
     inner = [width if place == 0 else width - INDENT for place in range(len(groups))]
     widths = [fit(group, room, LEAST_COLUMN) for group, room in zip(groups, inner, strict=True)]
     out = []
-    for row in range(-1, len(columns[0].cells)):
+    for row in range(-1, len(groups[0][0].cells)):
         for place, (group, own) in enumerate(zip(groups, widths, strict=True)):
             lead = " " * INDENT if place else ""
             out += [

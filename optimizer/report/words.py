@@ -95,3 +95,14 @@ def told_apart(
 def side(name: str) -> str:
     """On which side of its limit a target must be: 'at least' or 'at most'."""
     return "at least" if VOCABULARY[name].better == "higher" else "at most"
+
+
+def ranges(numbers: Sequence[int]) -> list[str]:
+    """Rising numbers one by one, with runs of three or more written '2-8'."""
+    runs: list[list[int]] = []
+    for number in numbers:
+        if runs and number == runs[-1][-1] + 1:
+            runs[-1].append(number)
+        else:
+            runs.append([number])
+    return [text for run in runs for text in ([f"{run[0]}-{run[-1]}"] if len(run) > 2 else map(str, run))]

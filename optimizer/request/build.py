@@ -4,10 +4,7 @@ from __future__ import annotations
 
 import math
 from pathlib import Path
-from typing import Any
 
-from optimizer.request.reading import Reading
-from optimizer.request.schema import KEYS, Name
 from optimizer.request.types import (
     ROLES,
     Ambient,
@@ -23,6 +20,7 @@ from optimizer.request.types import (
     Tolerance,
 )
 from optimizer.request.values import Level, Money
+from optimizer.toml.reading import Reading
 
 _NO_LIGHT = Level(math.nan, "power")
 
@@ -46,16 +44,11 @@ def build(reading: Reading, path: Path) -> Request:
         targets=_targets(reading),
         space=_space(reading),
         converter=_converter(reading),
-        ranking=Ranking(**_table(("ranking",), reading)),
+        ranking=Ranking(**reading.table(("ranking",))),
         tolerance=_tolerance(reading),
-        resilience=Resilience(**_table(("resilience",), reading)),
-        assume=dict(reading.assume),
+        resilience=Resilience(**reading.table(("resilience",))),
+        assume={(key[1], key[2]): value for key, value in reading.values.items() if key[0] == "assume"},
     )
-
-
-def _table(table: Name, reading: Reading) -> dict[str, Any]:
-    """Return the values in force of one table's own keys."""
-    return {key[-1]: reading.value(key) for key in KEYS if key[:-1] == table}
 
 
 def _light(reading: Reading) -> Light:
@@ -75,34 +68,34 @@ def _light(reading: Reading) -> Light:
 
 
 def _supply(reading: Reading) -> Supply:
-    values = _table(("supply",), reading)
+    values = reading.table(("supply",))
     return Supply(**values | {"high": math.nan if values["high"] is None else values["high"]})
 
 
 def _ambient(reading: Reading) -> Ambient:
     stated = any(key[0] == "ambient" for key in reading.values)
-    return Ambient(**_table(("ambient",), reading), stated=stated)
+    return Ambient(**reading.table(("ambient",)), stated=stated)
 
 
 def _tolerance(reading: Reading) -> Tolerance:
     """Return the spreads; a table that is stated counts even where it is empty."""
-    values = _table(("tolerance",), reading)
+    values = reading.table(("tolerance",))
     goal = values.pop("yield")
     return Tolerance(**values, yield_=goal, stated=("tolerance",) in reading.tables)
 
 
 def _targets(reading: Reading) -> Targets:
-    values = _table(("targets",), reading)
+    values = reading.table(("targets",))
     cost = values["cost"]
     return Targets(**values | {"cost": cost.amount if isinstance(cost, Money) else None})
 
 
 def _space(reading: Reading) -> Space:
-    divider = _table(("space", "divider"), reading)
-    resistance = _table(("space", "resistance"), reading)
-    capacitance = _table(("space", "capacitance"), reading)
+    divider = reading.table(("space", "divider"))
+    resistance = reading.table(("space", "resistance"))
+    capacitance = reading.table(("space", "capacitance"))
     return Space(
-        **_table(("space",), reading),
+        **reading.table(("space",)),
         divider=Divider(divider["series"], divider["from"], divider["to"], divider["bypass"]),
         resistance=(resistance["from"], resistance["to"]),
         capacitance=(capacitance["from"], capacitance["to"]),
@@ -114,7 +107,7 @@ def _converter(reading: Reading) -> Converter | None:
     """Return the converter where its table is stated, be it empty."""
     if ("converter",) not in reading.tables:
         return None
-    values = _table(("converter",), reading)
+    values = reading.table(("converter",))
     follows = values["high"] == "supply"
     high = reading.value(("supply", "high")) if follows else values["high"]
     return Converter(values["bits"], values["low"], math.nan if high is None else high, follows)

@@ -5,11 +5,11 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from optimizer.quantities import show
-from optimizer.request.reading import Reading
-from optimizer.request.schema import Name
 from optimizer.request.types import ROLES
 from optimizer.request.values import CATALOG_CURRENCY, Money
 from optimizer.toml.place import dotted
+from optimizer.toml.reading import Reading
+from optimizer.toml.schema import Name
 
 
 @dataclass(frozen=True, slots=True)

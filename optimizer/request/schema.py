@@ -3,9 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
-from typing import Any
 
+from optimizer.request.assume import read_assume
 from optimizer.request.types import (
     DISTRIBUTIONS,
     METHODS,
@@ -21,7 +20,6 @@ from optimizer.request.types import (
 )
 from optimizer.request.values import (
     CATALOG_CURRENCY,
-    Reader,
     currency,
     distinct,
     either,
@@ -36,19 +34,8 @@ from optimizer.request.values import (
     word,
 )
 from optimizer.series import SERIES
+from optimizer.toml.schema import Key, Name, Schema
 from optimizer.vocabulary.allowed import ABSOLUTE_ZERO, STATUSES
-
-Name = tuple[str, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Key:
-    """One key: its reader, the value left out stands for, and for a key that must be stated an example."""
-
-    read: Reader
-    default: Any = None
-    example: str = ""
-
 
 LONGEST_WAVE = 1e-3
 MOST_BITS = 64
@@ -168,17 +155,11 @@ def _split(table: str) -> Name:
 KEYS: Mapping[Name, Key] = {
     (*_split(table), name): key for table, keys in _TABLES.items() for name, key in keys.items()
 }
-TABLES: frozenset[Name] = frozenset(_split(table) for table in _TABLES) | {("assume",)}
-REQUIRED: tuple[Name, ...] = tuple(name for name, key in KEYS.items() if key.example)
-
-
-def names_in(table: Name) -> tuple[str, ...]:
-    """Return the keys and tables that may stand in `table`."""
-    keys = [name[-1] for name in KEYS if name[:-1] == table]
-    tables = [name[-1] for name in TABLES if name and name[:-1] == table]
-    return (*keys, *sorted(tables))
-
-
-def tables_with(name: str) -> tuple[Name, ...]:
-    """Return the tables in which a key of this name may stand."""
-    return tuple(dict.fromkeys(path[:-1] for path in KEYS if path[-1] == name))
+SCHEMA = Schema(
+    keys=KEYS,
+    free={("assume",): read_assume},
+    hints={
+        ("targets", "full_scale"): "full_scale is always graded, its limit is light.strongest",
+        ("channels",): "a file with channels is a board file: `luxsift board` plans it",
+    },
+)

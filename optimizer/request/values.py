@@ -1,38 +1,19 @@
-"""Readers of single request values: each takes what TOML gave and returns the value in SI, or refuses it."""
+"""Readers of single values: each takes what TOML gave and returns the value in SI, or refuses it."""
 
 from __future__ import annotations
 
 import json
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
 from optimizer.errors import did_you_mean
 from optimizer.quantities import KINDS, QuantityError, read_price, read_quantity, show
 from optimizer.quantities.currencies import CURRENCIES, currency_code
-
-Reader = Callable[[Any], Any]
+from optimizer.toml.schema import Fault, Reader, Refused, as_written
 
 CATALOG_CURRENCY = "catalog currency"
 MOST = 10**12  # whole numbers above it are slips, and floats still hold them exactly
-
-
-@dataclass(frozen=True, slots=True)
-class Fault:
-    """What is wrong with one value; `item` is its place in a list, None where it is no list item."""
-
-    cell: str
-    rule: str
-    remedy: str = ""
-    item: int | None = None
-
-
-class Refused(ValueError):
-    """A value that cannot be used, with every fault found in it."""
-
-    def __init__(self, *faults: Fault) -> None:
-        self.faults = faults
-        super().__init__("; ".join(fault.rule for fault in faults))
 
 
 @dataclass(frozen=True, slots=True)
@@ -49,21 +30,6 @@ class Level:
 
     value: float
     kind: str
-
-
-def as_written(value: Any) -> str:
-    """Return a value as TOML would have it, for messages."""
-    if isinstance(value, str):
-        return value
-    if isinstance(value, dict):
-        return "a table"
-    if isinstance(value, list):
-        return "a list"
-    if isinstance(value, bool):
-        return "true" if value else "false"
-    if isinstance(value, int) and abs(value) > 10**40:
-        return "a whole number of more than 40 digits"
-    return str(value)
 
 
 def quantity(

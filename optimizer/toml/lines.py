@@ -6,6 +6,7 @@ import contextlib
 import re
 import tomllib
 from bisect import bisect_right
+from collections.abc import Iterable
 
 KeyPath = tuple[str | int, ...]
 
@@ -32,8 +33,9 @@ class _Lost(Exception):
 def key_lines(text: str) -> dict[KeyPath, int]:
     """Return the line (1 = first) of every key, table and list item of a valid TOML text.
 
-    A key is a tuple of names, a list item its list's key and its place (0 = first). A table has the
-    line of its first mention. What the scanner cannot follow is left out, never guessed.
+    A key is a tuple of names, a list item its list's key and its place (0 = first); the tables under
+    one [[heading]] are the items of a list. A table has the line of its first mention. What the scanner
+    cannot follow is left out, never guessed.
     """
     scanner = _Scanner(text)
     with contextlib.suppress(_Lost, RecursionError):
@@ -48,6 +50,7 @@ class _Scanner:
         self.text = text
         self.at = 0
         self.lines: dict[KeyPath, int] = {}
+        self._last: dict[KeyPath, int] = {}  # the last item so far of each list of tables
         self._ends = [match.start() for match in re.finditer("\n", text)]
 
     def document(self) -> None:
@@ -61,12 +64,24 @@ class _Scanner:
             self._skip(_BLANK)
 
     def _header(self) -> KeyPath:
-        start = self.at
+        start, item = self.at, self._next("[[")
         self._skip(_OPEN)
-        table = self._key()
+        *around, name = self._key()
+        table: KeyPath = (*self._in_last_items(around), name)
+        if item:
+            self._last[table] = self._last.get(table, -1) + 1
+        table = self._in_last_items((name,), table[:-1])
         self._note(table, start)
         self._skip(_CLOSE)
         return table
+
+    def _in_last_items(self, names: Iterable[str | int], path: KeyPath = ()) -> KeyPath:
+        """Follow names from a path; a list of tables stands for the last of its items."""
+        for name in names:
+            path = (*path, name)
+            if path in self._last:
+                path = (*path, self._last[path])
+        return path
 
     def _pair(self, table: KeyPath) -> None:
         start = self.at

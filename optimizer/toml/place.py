@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 import re
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from optimizer.errors import Problem
 from optimizer.toml.lines import KeyPath
@@ -15,14 +15,23 @@ _BARE = re.compile(r"[A-Za-z0-9_-]+")
 
 @dataclass(frozen=True, slots=True)
 class Place:
-    """The file that problems are in, and the lines of its keys as far as known."""
+    """The file that problems are in, and the lines of its keys as far as known.
+
+    Keys are named as seen from `inside`, a table of the file.
+    """
 
     file: str
     lines: Mapping[KeyPath, int] = field(default_factory=dict)
+    inside: KeyPath = ()
+
+    def within(self, path: KeyPath) -> Place:
+        """Return the place of the table at `path`."""
+        return replace(self, inside=(*self.inside, *path))
 
     def problem(self, path: KeyPath, cell: str | None, rule: str, remedy: str = "") -> Problem:
         """Return a problem at the line of the key, or of the nearest table around it."""
-        return Problem(self.file, self._line(path), dotted(path) or None, cell, rule, remedy)
+        whole = (*self.inside, *path)
+        return Problem(self.file, self._line(whole), dotted(whole) or None, cell, rule, remedy)
 
     def _line(self, path: KeyPath) -> int | None:
         around = (path[:length] for length in range(len(path), 0, -1))

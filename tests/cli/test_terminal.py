@@ -34,14 +34,14 @@ sys.exit(main(sys.argv[1:]))
 """
 
 
-def seen(words: list[str], *, terminals: set[str], **changes: str) -> tuple[str, str]:
+def seen(words: list[str], *, terminals: set[str], driver: str = DRIVER, **changes: str) -> tuple[str, str]:
     """What a run writes to standard output and error, each a terminal or a pipe."""
     kept = {
         key: value for key, value in os.environ.items() if key not in ("NO_COLOR", "COLUMNS", "FORCE_COLOR")
     }
     ends = {name: pty.openpty() if name in terminals else os.pipe() for name in ("out", "err")}
     done = subprocess.Popen(
-        [sys.executable, "-c", DRIVER, *words],
+        [sys.executable, "-c", driver, *words],
         stdout=ends["out"][1],
         stderr=ends["err"][1],
         env={**kept, "TERM": "xterm", **changes},

@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 from optimizer.errors import InputError
 from optimizer.request import read_request
 from optimizer.request.in_force import in_force
-from optimizer.request.schema import KEYS, REQUIRED, TABLES
+from optimizer.request.schema import KEYS, SCHEMA
 from optimizer.request.types import WIRINGS, Request
 from optimizer.vocabulary import COLUMNS
 from tests.request.made import FULL, MINIMAL, as_toml
@@ -92,7 +92,7 @@ def _with(tables: dict[str, Any], name: tuple[str, ...], value: Any) -> None:
 
 
 @RUN
-@given(st.dictionaries(st.sampled_from(sorted(KEYS) + sorted(TABLES - {()})), values, max_size=6))
+@given(st.dictionaries(st.sampled_from(sorted(KEYS) + sorted(SCHEMA.tables - {()})), values, max_size=6))
 def test_any_value_under_any_key(folder: Path, stated: dict[tuple[str, ...], Any]) -> None:
     tables: dict[str, Any] = {
         "light": {"wavelength": 850e-9, "weakest": 1e-9, "strongest": 1e-6},
@@ -170,8 +170,8 @@ POSSIBLE: dict[tuple[str, ...], st.SearchStrategy[Any]] = {
     ("assume", "resistors", "tolerance"): _between(0.0, 1.0),
 }
 possible = st.fixed_dictionaries(
-    {name: POSSIBLE[name] for name in REQUIRED},
-    optional={name: strategy for name, strategy in POSSIBLE.items() if name not in REQUIRED},
+    {name: POSSIBLE[name] for name in SCHEMA.required},
+    optional={name: strategy for name, strategy in POSSIBLE.items() if name not in SCHEMA.required},
 )
 
 

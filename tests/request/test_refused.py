@@ -152,6 +152,7 @@ WRONG = [
     ("[assume.opamps]", "temp_min = -300", "assume.opamps.temp_min", "below -273.15 C"),
     ("[assume]", "opamps = 3", "assume.opamps", "expected a table"),
     ("[foo]", "bar = 3", "foo", "there is no such table"),
+    ("[channels]", "count = 2", "channels", "a file with channels is a board file"),
     ("", "quantity = 0", "quantity", "at least 1"),
     ("", "quantity = -3", "quantity", "at least 1"),
     ("", "quantity = 1.5", "quantity", "whole number"),
@@ -190,7 +191,7 @@ def test_one_wrong_line_is_one_problem_at_its_line(
     assert problem.column == key
     assert words in str(problem)
     assert Path(problem.file).name == "bench.toml"
-    at_table = key in ("foo", "assume.opamp")  # the heading itself is what is wrong
+    at_table = key in ("foo", "channels", "assume.opamp")  # the heading itself is what is wrong
     assert text.splitlines()[(problem.row or 0) - 1] == (table if at_table else line)
 
 

@@ -28,6 +28,12 @@ inline = { a = 1, b.c = "}" }
 x = 1
 [[many]]
 x = 2
+[many.sub]
+y = 3
+[[many.deep.er]]
+z = 4
+[[many.deep.er]]
+z = 5
 """.replace("$", '"')
 
 
@@ -42,7 +48,12 @@ def test_lines_of_keys() -> None:
     assert lines[("table", "sub", "date")] == 14
     assert lines[("table", "sub", "raw")] == 15
     assert lines[("table", "sub", "inline", "b", "c")] == 18
-    assert lines[("many", "x")] == 20
+    assert lines[("many",)] == lines[("many", 0)] == 19
+    assert lines[("many", 0, "x")] == 20
+    assert lines[("many", 1, "x")] == 22
+    assert lines[("many", 1, "sub", "y")] == 24
+    assert lines[("many", 1, "deep", "er", 0, "z")] == 26
+    assert lines[("many", 1, "deep", "er", 1)] == 27
     assert ("fake",) not in lines
     assert ("inside",) not in lines
 

@@ -36,17 +36,18 @@ def declare(command: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
     command.description = (
         "Takes a row of a saved record without the parts that are gone (named, obsolete or missing in the "
-        "catalogs) and ranks what takes their place, the least change of the board first."
+        "catalogs) and ranks what takes their place, the least change of the board first. Of a board's "
+        "record it takes a plan, and changes as few positions of the whole board as it can."
     )
     add = command.add_argument
-    add("record", metavar="RECORD", help="a record, as shortlist --save writes it")
+    add("record", metavar="RECORD", help="a record, as shortlist --save or board --save writes it")
     gone = "parts or families that are gone (those that are obsolete, or missing, in the catalogs)"
     add("--gone", nargs="+", action="extend", default=[], metavar="PART", help=gone)
     keep = f"positions to leave as they are: {', '.join(KEEPABLE)}"
     add("--keep", nargs="+", action="extend", default=[], metavar="NAME", help=keep)
-    add("--rank", metavar="N", help="the row to replace (the record's chosen one)")
-    add("--show", metavar="N", help=f"rows for each kind of change ({SHOW})")
-    add("--request", metavar="FILE", help="where the record's request is, if it has moved")
+    add("--rank", metavar="N", help="the row or plan to replace (the record's chosen one)")
+    add("--show", metavar="N", help=f"rows for each kind of change, or boards ({SHOW})")
+    add("--request", metavar="FILE", help="where the record's request or board file is, if moved")
     add("--save", metavar="FILE.json", help=SAVE)
 
 

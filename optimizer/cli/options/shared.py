@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from optimizer.errors import Problem, did_you_mean
 from optimizer.request.types import RANKINGS
 
@@ -23,10 +25,15 @@ def whole(name: str, text: str | None, problems: list[Problem], *, most: int = M
     return None
 
 
+def one_of(name: str, text: str | None, known: Sequence[str], problems: list[Problem]) -> str | None:
+    """The word of option `name`, None where it is not given or not known (a problem is then added)."""
+    if text is None or text in known:
+        return text
+    rule = f"expected one of {', '.join(known)}"
+    problems.append(Problem(COMMAND_LINE, None, name, text, rule, did_you_mean(text, known)))
+    return None
+
+
 def ranking(by: str | None, problems: list[Problem]) -> str | None:
     """The ranking that --by names, None where it is not given or wrong (a problem is then added)."""
-    if by is None or by in RANKINGS:
-        return by
-    rule = f"expected one of {', '.join(RANKINGS)}"
-    problems.append(Problem(COMMAND_LINE, None, "--by", by, rule, did_you_mean(by, RANKINGS)))
-    return None
+    return one_of("--by", by, RANKINGS, problems)

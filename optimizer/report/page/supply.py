@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from optimizer.errors import clean
 from optimizer.report.exposure import CAUTION, COUNTED_IN_ONE, USED, wrong_words
 from optimizer.report.page.blocks import Block, Cell, Section, Table, Words, cells
@@ -15,7 +17,11 @@ UNKNOWN = "not stated"
 
 def exposure(dossier: Dossier) -> Section | None:
     """The section on the supply of each part; None where it was not looked for."""
-    found = dossier.findings.exposure
+    return supplied(dossier.findings.exposure)
+
+
+def supplied(found: Sequence[Exposure]) -> Section | None:
+    """The section on parts whose supply was `found` out; None without any."""
     if not found:
         return None
     headings = (

@@ -74,14 +74,14 @@ class Ranked:
 
 def offers(space: Space, catalogs: Catalogs, plan: Plan) -> dict[int, Offer]:
     """What may stand in, by change. Where footprints must stay, dividers come from families that fit."""
-    space = _barred(space, plan.out)
+    space = barred(space, plan.out)
     cheapest, fitting = dividers.left(space, catalogs, plan), dividers.fitting(space, catalogs, plan)
     free = Offer(cheapest, graded(cheapest, catalogs, plan))
     bound = Offer(fitting, graded(fitting, catalogs, plan))
     return {DROP_IN: bound, VALUES: bound, FOOTPRINT: free, REDESIGN: free}
 
 
-def _barred(space: Space, out: Out) -> Space:
+def barred(space: Space, out: Out) -> Space:
     """`space` with what is out failing a check, so that it serves as no second source either."""
     opamps, diodes = (
         replace(verdicts, code=code, alone=code.max(axis=1, initial=-1).astype(np.int64))
@@ -195,7 +195,7 @@ def _cut(space: Space, part: Product) -> Space:
     return restricted(space, Masks(contexts, resistors, capacitors, low_passes))
 
 
-def _laid_out(space: Space, part: Product) -> tuple[Query, Ints, Ints] | None:
+def laid_out(space: Space, part: Product) -> tuple[Query, Ints, Ints] | None:
     """The query of one product, with its op-amps and photodiodes that pass alone; None without any."""
     cut = _cut(space, part)
     opamps = np.flatnonzero(part[0] & (cut.opamp_verdicts.alone == PASSES))
@@ -205,7 +205,7 @@ def _laid_out(space: Space, part: Product) -> tuple[Query, Ints, Ints] | None:
 
 def _asked(space: Space, part: Product, rules: Rules, but: Choice | None = None) -> Found:
     """The best pairs of one product, apart from the pairs of `but`."""
-    ready = _laid_out(space, part)
+    ready = laid_out(space, part)
     if ready is None:
         return nothing(len(space.limits))
     asked, opamps, diodes = ready
@@ -218,7 +218,7 @@ def _asked(space: Space, part: Product, rules: Rules, but: Choice | None = None)
 
 def _first(space: Space, part: Product) -> bool:
     """Whether anything in one product meets: the search ends with the first that does."""
-    ready = _laid_out(space, part)
+    ready = laid_out(space, part)
     if ready is None:
         return False
     asked, opamps, diodes = ready
@@ -229,7 +229,7 @@ def _first(space: Space, part: Product) -> bool:
 
 def _meeting(space: Space, part: Product) -> Choice:
     """Some setting of every pair of one product that has one that meets."""
-    ready = _laid_out(space, part)
+    ready = laid_out(space, part)
     if ready is None:
         return nothing(0).choice
     asked, opamps, diodes = ready
@@ -257,9 +257,14 @@ def _hunted(asked: Query, pairs: feed.Pairs, rules: Rules, part: Product, *, eno
         return nothing(len(asked.space.limits))
     with np.errstate(all="ignore"):  # absurd but stated values overflow; their figures do not exist
         found = gathered(feed.run(asked.index, asked.goals, rules, pairs=pairs, watch=enough))
-    opamp, diode, *rest = found.choice.columns()
+    return replace(found, choice=in_whole(part, found.choice))
+
+
+def in_whole(part: Product, choice: Choice) -> Choice:
+    """A choice of one product by the indices of the whole space."""
+    opamp, diode, *rest = choice.columns()
     whole = [np.flatnonzero(mask)[column] for mask, column in zip(part[2:], rest, strict=True)]
-    return replace(found, choice=Choice(opamp, diode, *whole))
+    return Choice(opamp, diode, *whole)
 
 
 def _number(space: Space, opamp: Ints, diode: Ints) -> Ints:

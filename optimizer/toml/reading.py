@@ -1,4 +1,4 @@
-"""What was read of a request so far, and what went wrong with it."""
+"""What was read of a TOML file so far, and what went wrong with it."""
 
 from __future__ import annotations
 
@@ -7,31 +7,35 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from optimizer.errors import Problem
-from optimizer.request.schema import KEYS, Name
-from optimizer.request.values import Fault
 from optimizer.toml.lines import KeyPath
 from optimizer.toml.place import Place
+from optimizer.toml.schema import Fault, Name, Schema
 
 
 @dataclass(slots=True)
 class Reading:
     """What was read so far.
 
-    `values` and, as they were written, `cells` by key; `assume` by role and column; the tables met;
-    the keys and tables that went `wrong`; and the problems.
+    `values` and, as they were written, `cells` by key; the tables met; the `items` of lists of tables;
+    the keys and tables that went `wrong`; and the problems, those of the items among them.
     """
 
+    schema: Schema
     place: Place
     values: dict[Name, Any] = field(default_factory=dict)
     cells: dict[Name, str] = field(default_factory=dict)
-    assume: dict[tuple[str, str], float] = field(default_factory=dict)
     tables: set[Name] = field(default_factory=set)
+    items: dict[Name, list[Reading]] = field(default_factory=dict)
     wrong: set[Name] = field(default_factory=set)
     problems: list[Problem] = field(default_factory=list)
 
     def value(self, key: Name) -> Any:
         """Return the value in force: as stated, else the default of the schema."""
-        return self.values[key] if key in self.values else KEYS[key].default
+        return self.values[key] if key in self.values else self.schema.keys[key].default
+
+    def table(self, table: Name) -> dict[str, Any]:
+        """Return the values in force of one table's own keys."""
+        return {key[-1]: self.value(key) for key in self.schema.keys if key[:-1] == table}
 
     def is_wrong(self, key: Name) -> bool:
         """Tell whether the key, or a table around it, was met and could not be read."""
@@ -48,3 +52,8 @@ class Reading:
         for fault in faults:
             at: KeyPath = path if fault.item is None else (*path, fault.item)
             self.problems.append(self.place.problem(at, fault.cell, fault.rule, fault.remedy))
+
+
+def by_line(problem: Problem) -> int:
+    """Order problems as the file reads; those without a line (missing tables) come first."""
+    return problem.row or 0
