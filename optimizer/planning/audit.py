@@ -11,7 +11,7 @@ from collections.abc import Iterator, Mapping
 from fractions import Fraction
 
 from optimizer.catalog.parts import Catalogs, Parts
-from optimizer.planning.outline import Outline
+from optimizer.planning.outline import Outline, Wanted
 from optimizer.planning.plan import BoardPlan, Build, Level, LineItem
 from optimizer.planning.told import UnsoundBoardError
 from optimizer.vocabulary import NAMES
@@ -24,7 +24,8 @@ ROLES = {"photodiode": "photodiodes", "opamp": "opamps", "resistor": "resistors"
 
 def audited(outline: Outline, plan: BoardPlan) -> None:
     """Raises UnsoundBoardError with everything that is wrong with `plan`."""
-    faults = [*_channels(outline, plan), *_places(plan), *_pieces(outline, plan), *_money(outline, plan)]
+    faults = [*_channels(outline, plan), *_places(plan), *_sources(outline, plan)]
+    faults += [*_pieces(outline, plan), *_money(outline, plan)]
     over = [total.name for total in plan.totals if total.margin is not None and total.margin < -1e-8]
     faults += [f"{name} is over its limit" for name in over]
     if faults:
@@ -52,6 +53,31 @@ def _places(plan: BoardPlan) -> Iterator[str]:
         yield "the packages do not serve the levels"
     if any(count > 1 for count in served.values()) or any(package.spare < 0 for package in plan.packages):
         yield "an amplifier serves twice"
+
+
+def _sources(outline: Outline, plan: BoardPlan) -> Iterator[str]:
+    """Op-amps of enough makers fit in the place of each package, for all that it serves at once."""
+    builds = {(build.channel, copy): build for build in plan.builds for copy in build.copies}
+    wanted = {channel.name: makers_of(outline, channel) for channel in outline.channels}
+    users = {
+        level.name: [key for key, build in builds.items() if build.level == level.name]
+        for level in plan.levels
+    }
+    for package in plan.packages:
+        served = [(p.channel, p.copy) for p in package.places if p.channel is not None]
+        served += [key for p in package.places if p.level is not None for key in users[p.level]]
+        least = max((wanted[str(channel)] for channel, _ in served), default=1)
+        if least == 1:
+            continue
+        others = [{(a.opamp_maker, a.opamp) for a in builds[key].candidate.alternates} for key in served]
+        makers = {maker for maker, _ in set.intersection(*others)} | {package.maker}
+        if len(makers) < least:
+            yield f"no op-amp of another maker serves all that {package.opamp} serves in one package"
+
+
+def makers_of(outline: Outline, channel: Wanted) -> int:
+    """From how many makers the op-amps of a channel must be had."""
+    return max(outline.rules.opamp_sources, channel.study.request.resilience.opamp_sources)
 
 
 def _pieces(outline: Outline, plan: BoardPlan) -> Iterator[str]:

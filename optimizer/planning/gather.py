@@ -44,10 +44,10 @@ EACH, MOST = 80, 320
 """Candidates of each kind that a round may add, at first and at last."""
 ROUNDS, IDLE = 12, 2
 """Rounds at most, and those without gain after which no more are made."""
-STEPS, LOOK = 60, 0.04
+STEPS, LOOK = 30, 0.25
 """Steps of the search for a plan for each channel, and its share of the time, in one round."""
-CLIMB = Pace(2500, 25, 0.75)
-CLIMBING = 0.08
+CLIMB = Pace(800, 20, 0.75)
+CLIMBING = 0.25
 GAINED = 1e-4
 """The relative gain of a round that counts."""
 SLACK, ROUNDING = 0.02, 1e-8

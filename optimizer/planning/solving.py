@@ -26,7 +26,7 @@ TURNS = 3
 """How often the pools are solved at most."""
 SOLVE, IMPROVE = 0.6, 0.1
 """The shares of the time left that a solve, and an improvement of one plan, may take."""
-PREPARE, STEPS = 0.05, 75
+PREPARE, STEPS = 0.2, 50
 """The share of the time for a search for good plans before the first solve, and its steps a channel."""
 LEAST = 0.5
 
@@ -50,29 +50,52 @@ class Solving:
         self.gathered, self.until = gathered, until
         self.field: Field = gathered.field
         self.options = gathered.field.outline.solve
+        self.best: list[Chosen] = []
+        self.last: list[Chosen] = []
+        self.solution: Solution | None = None
+        self.lossless = False
 
     def solved(self) -> Solved:
-        """Solve, improve the passives of each plan, and solve again while that finds anything."""
-        best: list[Chosen] = []
-        self._prepare()
+        """Solve, improve the passives of the first plan, and solve again while that finds anything.
+
+        Ctrl-C gives the plans known by then, or those that are met at once.
+        """
+        try:
+            self._prepare()
+            self._turns()
+            self.best = _cheapest([self._polished(one) for one in self._kept()], self.options.plans)
+            self.last = self.best
+        except KeyboardInterrupt:
+            if self.solution is None or not self.best:
+                self._solve_all(LEAST)
+            assert self.solution is not None
+            self.solution = replace(self.solution, interrupted=True)
+        assert self.solution is not None
+        return Solved(tuple(self._kept()), self.solution, self.lossless)
+
+    def _turns(self) -> None:
         for turn in range(1, TURNS + 1):
-            share = SOLVE if turn < TURNS else 1.0
-            cut = trimmed(self.field, self.gathered.pools)
-            solution, found = self._solve(cut.pools, self.options.plans, share * self._left())
-            best = _cheapest([*found, *best], self.options.plans)
-            if best:
-                self.gathered.cost = min(self.gathered.cost, best[0].plan.totals.cost)
-            if solution.interrupted:
-                break
-            better = self._improved(found[0]) if found and turn < TURNS else None
-            if better is None:
-                break
-            best = _cheapest([*best, better], self.options.plans)
-        # what an earlier solve proved, it proved over smaller pools
-        last = {id(one) for one in found}
-        kept = [one if id(one) in last else unproven(one, self.gathered.floor) for one in best]
-        kept = _cheapest([self._polished(one) for one in kept], self.options.plans)
-        return Solved(tuple(kept), solution, cut.lossless)
+            self._solve_all(self._left() * (SOLVE if turn < TURNS else 1.0))
+            assert self.solution is not None
+            better = self._improved(self.last[0]) if self.last and turn < TURNS else None
+            if better is None or self.solution.interrupted:
+                return
+            self.best = _cheapest([*self.best, better], self.options.plans)
+
+    def _solve_all(self, seconds: float) -> None:
+        """Solve over all pools; what is cheaper than before joins the best plans."""
+        cut = trimmed(self.field, self.gathered.pools)
+        self.lossless = cut.lossless
+        self.solution, found = self._solve(cut.pools, self.options.plans, seconds)
+        self.last = found
+        self.best = _cheapest([*found, *self.best], self.options.plans)
+        if self.best:
+            self.gathered.cost = min(self.gathered.cost, self.best[0].plan.totals.cost)
+
+    def _kept(self) -> list[Chosen]:
+        """The best plans; what an earlier solve proved of one, it proved over smaller pools."""
+        last = {id(one) for one in self.last}
+        return [one if id(one) in last else unproven(one, self.gathered.floor) for one in self.best]
 
     def _left(self) -> float:
         return self.until - time.monotonic()
