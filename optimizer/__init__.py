@@ -12,12 +12,13 @@ from typing import TYPE_CHECKING
 from optimizer.errors import InputError, LuxsiftError, MissingExtraError, OutputError, Problem
 
 if TYPE_CHECKING:
-    from optimizer.record import Record
+    from optimizer.record import BoardRecord, Record
     from optimizer.request.types import Request
 
     __version__: str
 
 __all__ = [
+    "BoardRecord",
     "InputError",
     "LuxsiftError",
     "MissingExtraError",
@@ -25,6 +26,7 @@ __all__ = [
     "Problem",
     "Record",
     "__version__",
+    "plan_board",
     "read_request",
     "shortlist",
 ]
@@ -52,12 +54,26 @@ def shortlist(request: Request | str | Path, *, workers: int = 1) -> Record:
     return record.build(loaded, search.shortlist(loaded.request, loaded.catalogs, workers=workers))
 
 
+def plan_board(path: str | Path) -> BoardRecord:
+    """Plan the board that a file (TOML) describes, in the time that it states.
+
+    The record holds the ranked plans, or why there is none. Raises InputError with every problem in the
+    board file, its requests and their catalogs.
+    """
+    from optimizer.planning.plan_board import plan_board as plan
+    from optimizer.planning.reading import read_board
+    from optimizer.record.board import build
+
+    outline = read_board(path)
+    return build(outline, plan(outline))
+
+
 def __getattr__(name: str) -> object:
     """Load what is heavy or slow only when it is asked for (PEP 562)."""
-    if name == "Record":
-        from optimizer.record import Record
+    if name in {"BoardRecord", "Record"}:
+        from optimizer import record
 
-        return Record
+        return getattr(record, name)
     if name == "__version__":
         from optimizer.record.build import installed_version
 

@@ -1,5 +1,7 @@
 """Every example prints what its output.txt holds, byte for byte, timing masked.
 
+Of a board that is what does not hang on how long the solver had: what the plan costs, and what it saves.
+
 After a change that is meant to alter what is printed: `python -m tests.test_examples --write`, then
 read the difference before committing it.
 """
@@ -20,6 +22,7 @@ from tests.masking import WIDTH, masked
 ROOT = Path(__file__).parents[1]
 EXAMPLES = ROOT / "examples"
 CASES = sorted(entry.name for entry in EXAMPLES.iterdir() if (entry / "request.toml").is_file())
+BOARDS = sorted(entry.name for entry in EXAMPLES.iterdir() if (entry / "board.toml").is_file())
 NOTHING_MEETS = "night-turbidity"
 
 
@@ -57,6 +60,28 @@ def test_holds_nothing_else_and_fits_80_columns(case: str) -> None:
     assert max(len(line) for line in shown(case).splitlines()) <= WIDTH
 
 
+@pytest.mark.parametrize("case", BOARDS)
+def test_a_board_costs_and_saves_what_is_shown(case: str) -> None:
+    done = run(case)
+    assert done.stderr == ""
+    assert lasting(done.stdout) == lasting(shown(case))
+    assert "saves" in lasting(shown(case))[-1]
+    assert done.returncode == 0
+
+
+@pytest.mark.parametrize("case", BOARDS)
+def test_a_board_holds_nothing_else_and_fits_80_columns(case: str) -> None:
+    assert {file.name for file in (EXAMPLES / case).iterdir()} == {"board.toml", "command.txt", "output.txt"}
+    assert max(len(line) for line in shown(case).splitlines()) <= WIDTH
+
+
+def lasting(text: str) -> list[str]:
+    """Of what a board prints: its name, its boards with their cost, and what it saves."""
+    head = text.splitlines()[:2]
+    saves = next(part for part in text.split("\n\n") if part.startswith("With each channel"))
+    return [*head, " ".join(saves.split())]
+
+
 def test_cases_are_of_different_character() -> None:
     requests = [(EXAMPLES / case / "request.toml").read_text("utf-8") for case in CASES]
     rankings = {re.search(r'^by = "(\w+)"', text, re.MULTILINE)[1] for text in requests}  # type: ignore[index]
@@ -80,7 +105,7 @@ def test_masking_hides_the_two_numbers_and_nothing_else() -> None:
 
 def write() -> None:
     """Write every output.txt anew; stops at an example that fails."""
-    for case in CASES:
+    for case in (*CASES, *BOARDS):
         done = run(case)
         if done.returncode not in (0, 1) or done.stderr:
             sys.exit(f"{case}: exit {done.returncode}\n{done.stderr}")

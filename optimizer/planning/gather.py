@@ -42,6 +42,8 @@ FIRST, SIDE = 20, 4
 """Pairs of each kind that begin its pool, and those for each other view of what is scarce."""
 EACH, MOST = 80, 320
 """Candidates of each kind that a round may add, at first and at last."""
+CLOSE = 1000
+"""Settings of each kind so few that they all may join at once."""
 ROUNDS, IDLE = 12, 2
 """Rounds at most, and those without gain after which no more are made."""
 STEPS, LOOK = 30, 0.25
@@ -79,6 +81,10 @@ class Gathering:
         """Whether the pools hold every candidate that a plan better than the best met could use."""
         return all(left == 0 for left in self.open)
 
+    def _closable(self) -> bool:
+        """Whether so little is open that all of it may join the pools."""
+        return all(left is not None and left <= CLOSE for left in self.open)
+
     def begin(self, alone: Sequence[Found]) -> None:
         """Begin with the best receivers by themselves, and those at the least prices that parts can have."""
         for i, found in enumerate(alone):
@@ -95,9 +101,14 @@ class Gathering:
             added = self._round(each)
             gained = self.cost < cost or self.floor > floor + GAINED * abs(floor)
             idle = 0 if gained else idle + 1
-            if self.complete or idle >= IDLE:
+            if self.complete:
                 return
-            each = each if gained and added else min(MOST, 2 * each)
+            if self._closable():
+                each = CLOSE
+            elif idle >= IDLE:
+                return
+            else:
+                each = each if gained and added else min(MOST, 2 * each)
 
     def _begin(self) -> None:
         kinds = self.field.kinds

@@ -147,7 +147,7 @@ class _Planning:
             rounds=gathered.rounds,
             floor=math.ceil(gathered.floor),
             faults=(*solution.faults, *self.faults),
-            refusal=refusal(gathered.field, made, seconds, complete=gathered.complete),
+            refusal=refusal(gathered.field, made, seconds, told=gathered.complete or not proven),
             alone=self.alone,
         )
 

@@ -14,10 +14,10 @@ SHARE = 0.5
 """The share of the time that the conflict takes; the relaxations have the rest."""
 
 
-def refusal(field: Field, made: Assembled, seconds: float, *, complete: bool) -> Refusal:
+def refusal(field: Field, made: Assembled, seconds: float, *, told: bool) -> Refusal:
     """The limits and channels of `made` that cannot be met together, looked into for `seconds`.
 
-    Only where the pools behind `made` are `complete` is anything proved.
+    What is proved of it holds over the pools behind `made`; it is said only if that is `told` with it.
     """
     solver = field.outline.solve.solver
     options = SolveOptions(time=seconds * SHARE, solver=solver)
@@ -26,13 +26,13 @@ def refusal(field: Field, made: Assembled, seconds: float, *, complete: bool) ->
     return Refusal(
         limits=() if found is None else tuple(NAMES.get(name, name) for name in found.budgets),
         channels=() if found is None else tuple(names_of([field.kinds[i] for i in found.channels])),
-        smallest=found is not None and found.smallest and complete,
+        smallest=found is not None and found.smallest and told,
         relaxations=tuple(
             Relaxation(
                 name=NAMES.get(one.budget, one.budget),
                 limit=_shown(field, one.budget, one.limit),
                 least=None if one.least is None else _shown(field, one.budget, one.least),
-                proven=one.proven and complete,
+                proven=one.proven and told,
             )
             for one in eased
         ),

@@ -16,6 +16,8 @@ from dataclasses import dataclass
 from optimizer.planning.columns import Field, Key, Pool
 from optimizer.planning.kinds import NONE
 
+FEW = 1500
+"""Candidates so few that all may stay."""
 LIKED = 3
 """Candidates kept of several that differ in passives of their own only, by how many others those suit."""
 
@@ -30,6 +32,8 @@ class Trimmed:
 
 def trimmed(field: Field, pools: Sequence[Pool]) -> Trimmed:
     """The pools without candidates that others serve as well, in passives of their kind alone."""
+    if sum(len(pool.held) for pool in pools) <= FEW:
+        return Trimmed(tuple(Pool(pool.kind, pool.group, dict(pool.held)) for pool in pools), True)
     used = [_parts(field, i, pool) for i, pool in enumerate(pools)]
     left, lossless = [], True
     for i, pool in enumerate(pools):

@@ -164,7 +164,7 @@ def _refusal(data: Data, width: int) -> list[Lines]:
     sections.append(styled(conflict_words(data), width, BOLD))
     columns = relaxation_columns(refusal)
     eased = _table(eased_title(data), stacked(columns, width), width) if columns[0].cells else []
-    return [*sections, eased + _paragraphs(helpless_words(refusal), width)]
+    return [*sections, eased + _paragraphs(helpless_words(data), width)]
 
 
 def _looked(data: Data, width: int) -> Lines:

@@ -101,15 +101,16 @@ def relaxation_columns(refusal: Data) -> list[Column]:
 LEAST, WILL_DO = "the least that does", "will do; a lesser change might"
 
 
-def helpless_words(refusal: Data) -> Iterator[str]:
+def helpless_words(data: Data) -> Iterator[str]:
     """The limits of which none helps, and those of which none was found that does."""
     for proven in (True, False):
         names = [
             f"{clean(one['name'])} ({amount(one['name'], one['limit'])})"
-            for one in refusal["relaxations"]
+            for one in data["refusal"]["relaxations"]
             if one["least"] is None and one["proven"] == proven
         ]
         if names and proven:
-            yield f"Easing one of these alone, however far, lets no plan through: {', '.join(names)}."
+            easing = f"{_among(data)}easing" if _among(data) else "Easing"
+            yield f"{easing} one of these alone, however far, lets no plan through: {', '.join(names)}."
         elif names:
             yield f"Of these no value that lets a plan through was found in the time: {', '.join(names)}."
