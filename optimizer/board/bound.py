@@ -174,13 +174,8 @@ class _Layouter:
         for supplies in by_width.values():
             prices = padded((self.units[s] for s in supplies), last).T.copy()
             deep = 1 + min(prices.shape[1], int(finite[supplies].max()))
-            groups.append(Group(np.array(supplies), prices, _monotone(costs[supplies, :deep])))
+            groups.append(Group(np.array(supplies), prices, costs[supplies, :deep]))
         return groups
-
-
-def _monotone(costs: Floats) -> Floats:
-    """The least cost of at least n: what a gap in the middle (no stock) leaves is bridged from above."""
-    return np.asarray(np.minimum.accumulate(costs[:, ::-1], axis=1)[:, ::-1])
 
 
 def first_prices(seen: Layout) -> Floats:
@@ -233,17 +228,30 @@ def _references(seen: Layout, prices: Floats, slope: Floats) -> float:
 
 
 def _supplies(group: Group, prices: Floats, slope: Floats) -> float:
-    offers = prices[group.units]
-    order = np.argsort(-offers, axis=1)
-    deep = group.costs.shape[1] - 1
-    order = order[:, :deep]
-    takings = np.cumsum(np.take_along_axis(offers, order, axis=1), axis=1)
-    loss = group.costs.copy()
-    loss[:, 1:] -= takings
+    loss, order = _losses(group, prices)
     number = loss.argmin(axis=1)
-    sold = np.take_along_axis(group.units, order, axis=1)[np.arange(deep) < number[:, None]]
+    sold = np.take_along_axis(group.units, order, axis=1)[np.arange(order.shape[1]) < number[:, None]]
     slope -= np.bincount(sold, minlength=slope.size)
     return float(loss[np.arange(number.size), number].sum())
+
+
+def _losses(group: Group, prices: Floats) -> tuple[Floats, Ints]:
+    """What each supply loses on the units sold, by their number, and the units, dearest offers first."""
+    offers = prices[group.units]
+    deep = group.costs.shape[1] - 1
+    order = np.argsort(-offers, axis=1)[:, :deep]
+    loss = group.costs.copy()
+    loss[:, 1:] -= np.cumsum(np.take_along_axis(offers, order, axis=1), axis=1)
+    return loss, order
+
+
+def least_losses(seen: Layout, prices: Floats) -> dict[int, float]:
+    """What each supply loses at least at `prices`: no sale costs it less than its takings and this."""
+    found: dict[int, float] = {}
+    for group in seen.groups:
+        least = _losses(group, prices)[0].min(axis=1)
+        found |= dict(zip(group.supplies.tolist(), least.tolist(), strict=True))
+    return found
 
 
 @dataclass(frozen=True, slots=True)
@@ -253,6 +261,15 @@ class Bound:
     value: float
     prices: Floats
     answer: Answer
+
+
+@dataclass(frozen=True, slots=True)
+class Terms:
+    """What a board is bounded under: its layout with prices, and the weights of budgets."""
+
+    seen: Layout
+    prices: Floats
+    weights: Weights = PLAIN
 
 
 @dataclass(frozen=True, slots=True)

@@ -93,6 +93,8 @@ class _Running:
     def _command(self) -> list[str]:
         command = [program(), str(self.model), "-sec", f"{max(0.1, self.task.seconds):.2f}"]
         command += ["-timeMode", "elapsed", "-allow", f"{GAP}", "-ratio", "0"]
+        if self.task.below is not None:
+            command += ["-cutoff", f"{self.task.below}"]
         if self.task.start is not None:
             self._write_start(self.task.start)
             command += ["-mips", str(self.start)]

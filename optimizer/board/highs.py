@@ -8,6 +8,7 @@ import os
 import signal
 import time
 from collections.abc import Mapping
+from dataclasses import replace
 from multiprocessing.connection import Connection
 from typing import Any
 
@@ -26,6 +27,8 @@ from optimizer.board.runs import (
 
 TELL_EVERY = 0.2
 UNBOUNDED = 1e20
+SEARCHES = ("rins", "rens", "root_reduced_cost", "feasibility_jump")
+"""Searches for plans that HiGHS does even without effort: of no use where a good plan is known."""
 AGREED = 0.5
 """Cents by which the cost of a plan may differ from what HiGHS states: whole cents never do by as much."""
 
@@ -46,8 +49,7 @@ def run(task: Task) -> Run:
     method = "fork" if "fork" in multiprocessing.get_all_start_methods() else None
     context: Any = multiprocessing.get_context(method)
     receiver, sender = context.Pipe(duplex=False)
-    work = (sender, task.problem, task.seconds, task.start)
-    process = context.Process(target=_work, args=work, daemon=True)
+    process = context.Process(target=_work, args=(sender, replace(task, told=None)), daemon=True)
     process.start()
     sender.close()
     followed = _Followed(task, receiver)
@@ -113,13 +115,13 @@ class _Followed:
         return Run(outcome, values, self.bound, fault, seconds)
 
 
-def _work(sender: Connection, problem: Any, seconds: float, start: Mapping[str, float] | None) -> None:
+def _work(sender: Connection, task: Task) -> None:
     """What the process does: solve, and send improvements, bounds and how it ended."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)  # the parent alone acts on Ctrl-C
     quiet = os.open(os.devnull, os.O_WRONLY)
     os.dup2(quiet, 1)
     try:
-        outcome = _solved(sender, problem, seconds, start)
+        outcome = _solved(sender, task)
         sender.send(("done", outcome))
     except Exception as fault:  # whatever it is, the parent must hear of it
         sender.send(("fault", f"HiGHS failed: {type(fault).__name__}: {fault}"))
@@ -127,9 +129,7 @@ def _work(sender: Connection, problem: Any, seconds: float, start: Mapping[str, 
         sender.close()
 
 
-def _solved(
-    sender: Connection, problem: Any, seconds: float, start: Mapping[str, float] | None
-) -> tuple[str, float | None]:
+def _solved(sender: Connection, task: Task) -> tuple[str, float | None]:
     """Solve once, or twice where the values that came back from a start are not the best ones.
 
     Version 1.16 may give the values of the start back although it has found, and states, a lower cost.
@@ -137,14 +137,14 @@ def _solved(
     import pulp
 
     began = time.monotonic()
-    outcome, bound, values = _once(sender, problem, seconds, start)
+    outcome, bound, values = _once(sender, task)
     if (
         values is None
         and outcome in {OPTIMAL, STOPPED}
-        and problem.sol_status != pulp.LpSolutionNoSolutionFound
+        and task.problem.sol_status != pulp.LpSolutionNoSolutionFound
     ):
-        left = seconds - (time.monotonic() - began)
-        outcome, bound, values = _once(sender, problem, left, None)
+        left = task.seconds - (time.monotonic() - began)
+        outcome, bound, values = _once(sender, replace(task, seconds=left, start=None))
     if values is not None:
         sender.send(("values", values))
     elif outcome == OPTIMAL:
@@ -152,22 +152,21 @@ def _solved(
     return outcome, bound
 
 
-def _once(
-    sender: Connection, problem: Any, seconds: float, start: Mapping[str, float] | None
-) -> tuple[str, float | None, Mapping[str, float] | None]:
+def _once(sender: Connection, task: Task) -> tuple[str, float | None, Mapping[str, float] | None]:
     """One solve: how it ended, the bound, and the values that cost what HiGHS says its best plan costs."""
     import pulp
 
+    problem = task.problem
     teller = _Teller(sender, [variable.name for variable in problem.variables()])
     kinds = pulp.HiGHS.hscb.HighsCallbackType
-    solver = _started(start)(
+    solver = _started(task)(
         msg=False,
         gapRel=0.0,
         gapAbs=GAP,
         threads=1,
-        timeLimit=max(0.1, seconds),
+        timeLimit=max(0.1, task.seconds),
         callbackTuple=(teller.heard, None),
-        callbacksToActivate=[kinds.kCallbackMipImprovingSolution, kinds.kCallbackMipLogging],
+        callbacksToActivate=[kinds.kCallbackMipImprovingSolution, kinds.kCallbackMipInterrupt],
     )
     problem.solve(solver)
     info = problem.solverModel.getInfo()
@@ -189,17 +188,21 @@ def _worth(problem: Any, cost: float, answers: list[Mapping[str, float]]) -> Map
     return None
 
 
-def _started(start: Mapping[str, float] | None) -> Any:
-    """PuLP's interface to HiGHS, which begins from the values of a plan where there is one."""
+def _started(task: Task) -> Any:
+    """PuLP's interface to HiGHS, which begins from what is known: the values of a plan, or its cost."""
     import pulp
 
     class Started(pulp.HiGHS):  # type: ignore[misc]
         def callSolver(self, lp: Any) -> None:
-            if start is not None:
-                variables = lp.variables()
-                values = [start.get(variable.name, 0.0) for variable in variables]
+            if task.start is not None:
+                values = [task.start.get(variable.name, 0.0) for variable in lp.variables()]
                 lp.solverModel.setSolution(len(values), list(range(len(values))), values)
+            if task.below is not None:
+                lp.solverModel.setOptionValue("objective_bound", task.below)
+            if task.start is not None or task.below is not None:
                 lp.solverModel.setOptionValue("mip_heuristic_effort", 0.0)
+                for search in SEARCHES:
+                    lp.solverModel.setOptionValue(f"mip_heuristic_run_{search}", False)
             lp.solverModel.run()
 
     return Started

@@ -30,7 +30,10 @@ FINE = {"current": 1e9, "area": 1e12}
 
 @dataclass(frozen=True, slots=True)
 class Model:
-    """The PuLP problem, its variables by index, and the use of each budget as an expression."""
+    """The PuLP problem, its variables by index, and the use of each budget as an expression.
+
+    `number` and `cost` are expressions too: how many of each part there are on a board, and what they cost.
+    """
 
     board: Board
     problem: Any
@@ -38,6 +41,7 @@ class Model:
     z: Mapping[int, Any]
     v: Mapping[int, Any]
     number: Mapping[int, Any]
+    cost: Mapping[int, Any]
     pieces: Mapping[int, list[tuple[Piece, Any, Any]]]
     use: Mapping[str, Any]
 
@@ -64,8 +68,8 @@ class _Maker:
         self.z = {part: self._choice(f"z_{part}", 1) for part in sorted(self.most)}
         self.v = {r: self._choice(f"v_{r}", 1) for r in used_references(board)}
         self.number: dict[int, Any] = {}
+        self.cost: dict[int, Any] = {}
         self.pieces: dict[int, list[tuple[Piece, Any, Any]]] = defaultdict(list)
-        self.cost: list[Any] = []
 
     def _choice(self, name: str, most: int) -> Any:
         return self.problem.add_variable(name, 0, most, "Binary" if most == 1 else "Integer")
@@ -86,25 +90,29 @@ class _Maker:
         use = self._use()
         self._budgets(use)
         self.problem.setObjective(FINE.get(self.goal, 1.0) * use[self.goal])
-        return Model(self.board, self.problem, self.x, self.z, self.v, self.number, self.pieces, use)
+        return Model(
+            self.board, self.problem, self.x, self.z, self.v, self.number, self.cost, self.pieces, use
+        )
 
     def _buy(self, part: int) -> None:
-        """The price schedule of `part`: one piece at most, and the number bought."""
-        entry, chosen, bought = self.board.parts[part], [], []
+        """The price schedule of `part`: one piece at most, the number bought, and all that it costs."""
+        entry, chosen, bought, paid = self.board.parts[part], [], [], []
         for s, piece in enumerate(pieces(entry.breaks, self.board.boards, self.most[part], entry.stock)):
             w = self._choice(f"w_{part}_{s}", 1)
             chosen.append(w)
             bought.append(piece.first * w)
-            self.cost.append(piece.cost * w)
+            paid.append(piece.cost * w)
             beyond, q = piece.last - piece.first, None
             if beyond:
                 q = self.problem.add_variable(f"q_{part}_{s}", 0, beyond, "Integer")
                 self._row(q <= beyond * w, f"piece_{part}_{s}")
                 bought.append(q)
-                self.cost.append(piece.slope * q)
+                paid.append(piece.slope * q)
             self.pieces[part].append((piece, w, q))
         self._row(_sum(chosen) == self.z[part], f"bought_{part}")
         self.number[part] = _sum(bought)
+        opened, placed = self.board.line_item * self.z[part], self.board.placement * self.number[part]
+        self.cost[part] = _sum(paid) + opened + placed
 
     def _links(self, i: int, channel: Channel) -> None:
         """What a channel uses must be on the board."""
@@ -166,8 +174,7 @@ class _Maker:
 
     def _use(self) -> dict[str, Any]:
         """How much of each budget is used."""
-        parts, placed = self.board.parts, _sum(self.number.values())
-        lines = _sum(self.z.values())
+        parts = self.board.parts
         drawn = [self.board.references[r].current * v for r, v in self.v.items()]
         drawn += [parts[p].current * n for p, n in self.number.items() if parts[p].amplifiers]
         for (i, j), x in self.x.items():
@@ -175,10 +182,10 @@ class _Maker:
             if own:
                 drawn.append(own * x)
         return {
-            "cost": _sum(self.cost) + self.board.line_item * lines + self.board.placement * placed,
+            "cost": _sum(self.cost.values()),
             "current": _sum(drawn),
             "area": _sum((parts[p].area or 0.0) * n for p, n in self.number.items()),
-            "line_items": lines,
+            "line_items": _sum(self.z.values()),
             "opamp_parts": _sum(z for p, z in self.z.items() if parts[p].amplifiers),
         }
 

@@ -13,13 +13,13 @@ from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, replace
 
-from optimizer.board.bound import Pace, carried, climb, layout, useful
+from optimizer.board.bound import Bound, Pace, Terms, ask, carried, climb, layout, useful
 from optimizer.board.breed import Breeding, bred
 from optimizer.board.heuristic import Best, Effort, look
-from optimizer.board.pools import pools_of
+from optimizer.board.pools import Pools, pools_of
 from optimizer.board.problem import Board
 from optimizer.board.supplies import PLAIN, Weights
-from optimizer.board.sweep import Terms, sweep
+from optimizer.board.sweep import sweep
 
 SLACK = 0.01
 """Cents by which a bound may be off by rounding."""
@@ -63,6 +63,30 @@ class Narrowing:
         self.copies = sum(channel.count for channel in board.channels)
         self.best = Best(wish.plans)
         self.bound = 0.0
+        self.priced: Terms | None = None
+
+    def terms(self, pools: Pools) -> Terms | None:
+        """The best prices found, for what is left of the pools; None before the first bound."""
+        if self.priced is None:
+            return None
+        seen = layout(pools.board, self.priced.weights)
+        return replace(self.priced, seen=seen, prices=carried(seen, self.priced.seen, self.priced.prices))
+
+    def within(self, cost: float) -> tuple[Pools, Terms | None]:
+        """What is left of the pools for plans of at most `cost` (perhaps nothing), and its prices."""
+        terms = self.terms(self.pools)
+        if terms is None:
+            return self.pools, None
+        answer = ask(terms.seen, terms.prices)
+        known = Bound(answer.bound, terms.prices, answer)
+        pools = self.pools.keeping(useful(terms.seen, known, cost + SLACK))
+        if not all(channel.options for channel in pools.board.channels):
+            return pools, None
+        seen = layout(pools.board, terms.weights)
+        found = climb(seen, cost + 2 * SLACK, CLIMBS[1])
+        pools = pools.keeping(useful(seen, found, cost + SLACK))
+        after = layout(pools.board, terms.weights)
+        return pools, Terms(after, carried(after, seen, found.prices), terms.weights)
 
     def _past(self, share: float) -> bool:
         return time.monotonic() - self.began > share * self.wish.seconds
@@ -124,25 +148,26 @@ class Narrowing:
     def _cut(self, weights: Weights) -> None:
         """Bound and cut until little is left, nothing more goes, or the time for it is over."""
         for pace in CLIMBS:
-            terms = self._climb(pace, weights)
+            self._climb(pace, weights)
             if self.pools.size <= SMALL or self._past(CLIMB):
                 return
-            if self.copies <= FRONT and self.pools.size and self._sweep(terms):
+            if self.copies <= FRONT and self.pools.size and self._sweep():
                 return
 
-    def _climb(self, pace: Pace, weights: Weights) -> Terms:
+    def _climb(self, pace: Pace, weights: Weights) -> None:
         """Raise the bound and keep the options that can be part of a plan within the target."""
         seen = layout(self.pools.board, weights)
         pace = replace(pace, until=self.began + CLIMB * self.wish.seconds)
         found = climb(seen, self._target() + SLACK, pace)
         self.bound = max(self.bound, min(found.value, self._target()))
         self.pools = self.pools.keeping(useful(seen, found, self._target()))
+        self.priced = Terms(seen, found.prices, weights)
         self._tell("bound")
-        after = layout(self.pools.board, weights)
-        return Terms(after, carried(after, seen, found.prices), weights)
 
-    def _sweep(self, terms: Terms) -> bool:
+    def _sweep(self) -> bool:
         """Sweep the partial plans; True where it came to its end."""
+        terms = self.terms(self.pools)
+        assert terms is not None  # a bound comes first
         swept = sweep(self.pools.board, terms, self._target())
         self.pools = self.pools.keeping(swept.options)
         self._tell("sweep")

@@ -1,4 +1,4 @@
-"""A solver's values read off as a plan of the original board, and checked."""
+"""A solver's values read off as a plan of the original board, checked, and told with its purchases."""
 
 from __future__ import annotations
 
@@ -8,6 +8,9 @@ from optimizer.board.check import UnsoundPlanError, examined
 from optimizer.board.heuristic import Met
 from optimizer.board.model import Model
 from optimizer.board.pools import Pools
+from optimizer.board.prices import purchase
+from optimizer.board.problem import Board
+from optimizer.board.solution import Line, Plan
 
 
 def read(model: Model, pools: Pools, values: Mapping[str, float]) -> Met:
@@ -28,3 +31,26 @@ def read(model: Model, pools: Pools, values: Mapping[str, float]) -> Met:
     if cost != totals.cost:
         raise UnsoundPlanError(f"the model says {cost} cents, the check {totals.cost}")
     return Met(cost, chosen, tuple(pieces.items()))
+
+
+def plan_of(board: Board, met: Met, least: int) -> Plan:
+    """A plan that was met, checked anew; no plan costs less than `least` [cents]."""
+    totals = examined(board, met.chosen, dict(met.pieces))
+    least = min(least, totals.cost)
+    options = [board.channels[i].options[j] for i, js in enumerate(met.chosen) for j in js]
+    references = {option.reference for option in options if option.reference is not None}
+    return Plan(
+        chosen=met.chosen,
+        lines=tuple(_line(board, part, n) for part, n in met.pieces),
+        references=tuple(sorted(references)),
+        totals=totals,
+        bound=least,
+        proven=least == totals.cost,
+    )
+
+
+def _line(board: Board, part: int, pieces: int) -> Line:
+    entry = board.parts[part]
+    bought = purchase(entry.breaks, board.boards, pieces, entry.stock)
+    assert bought is not None  # the check has priced it
+    return Line(part, pieces, bought)

@@ -23,12 +23,16 @@ OPTIMAL, INFEASIBLE, STOPPED, INTERRUPTED, FAILED = (
 
 @dataclass(frozen=True, slots=True)
 class Task:
-    """A PuLP problem, seconds for it, values to start from by name, and whom to tell (best, bound)."""
+    """A PuLP problem, seconds for it, values to start from by name, and whom to tell (best, bound).
+
+    `below`: only plans that cost less than this are of interest; without one the run may end infeasible.
+    """
 
     problem: Any
     seconds: float
     start: Mapping[str, float] | None = None
     told: Callable[[float | None, float | None], None] | None = None
+    below: float | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -94,7 +94,8 @@ class SolveOptions:
 class Solution:
     """What came of it. `status` is that of the first plan; `complete`: there are no more different plans.
 
-    `solver` says which solver was used, `faults` what went wrong with it, in words.
+    `solver` says which solver was used, `faults` what went wrong with it, in words; `interrupted`: the user
+    stopped it, perhaps after the first plan was proven.
     """
 
     status: str
@@ -106,6 +107,7 @@ class Solution:
     seconds: float = 0.0
     options: int = 0
     considered: int = 0
+    interrupted: bool = False
 
     @property
     def best(self) -> Plan | None:

@@ -4,15 +4,17 @@ from __future__ import annotations
 
 import math
 import time
+from functools import partial
 
 from optimizer.board import runs, solvers
-from optimizer.board.check import UnsoundPlanError, examined
+from optimizer.board.bound import Terms
+from optimizer.board.check import UnsoundPlanError
 from optimizer.board.heuristic import Met
 from optimizer.board.model import Model, build, forbid, use_references, values_of
 from optimizer.board.narrow import Narrowing, Wish
-from optimizer.board.prices import purchase
+from optimizer.board.pools import Pools
 from optimizer.board.problem import Board, checked
-from optimizer.board.reading import read
+from optimizer.board.reading import plan_of, read
 from optimizer.board.runs import GAP, Run, Task
 from optimizer.board.solution import (
     FAILED,
@@ -20,15 +22,19 @@ from optimizer.board.solution import (
     INTERRUPTED,
     PROVEN,
     TIME_LIMIT,
-    Line,
     Plan,
     Progress,
     Solution,
     SolveOptions,
 )
+from optimizer.board.tighten import tighten
 
 LEAST = 0.5
 """Seconds that a solver gets at least: the time may have gone into narrowing."""
+SHARES = (0.03, 0.005)
+"""By what shares of the best cost a plan may be cheaper: asked one after the other where much is open."""
+WIDE, MANY = 0.04, 3000
+"""A gap (share of the cost) and a number of options from which on the proof may not come in time."""
 ROUNDING = 0.005
 """Cents by which a solver's bound may be off: with it the gap of 0.99 still leaves no whole cent open."""
 
@@ -91,6 +97,7 @@ class Solving:
             seconds=time.monotonic() - self.began,
             options=sum(len(channel.options) for channel in self.board.channels),
             considered=self.narrow.pools.size,
+            interrupted=self.outcome == runs.INTERRUPTED,
         )
 
     def _left(self) -> float:
@@ -100,7 +107,7 @@ class Solving:
         if self.options.progress is None:
             return
         best = min(self.narrow.best.cost, math.inf if cost is None else cost)
-        least = max(self.narrow.bound, bound or 0.0)
+        least = max(self.narrow.bound, self.bound, bound or 0.0)
         self.options.progress(
             Progress(
                 stage,
@@ -125,7 +132,11 @@ class Solving:
         if self.solver is None:
             self.faults.append(f"the solver {self.options.solver} is not available here")
             return
-        model = build(board)
+        self._close_in()
+        if self.narrow.best.plans and self._left() <= 0:
+            self.outcome = runs.STOPPED
+            return
+        model = _tight(self.narrow.pools, self.narrow.terms(self.narrow.pools))
         if self.options.plans > 1:
             use_references(model)
         for rank in range(1, self.options.plans + 1):
@@ -135,18 +146,47 @@ class Solving:
             self._add(met, self.bound)
             forbid(model, self._active(met), f"other_{rank}")
 
+    def _close_in(self) -> None:
+        """Whether plans are cheaper by some share: told sooner than which is cheapest, of fewer options."""
+        best, least = self.narrow.best.cost, self.narrow.bound
+        if best == math.inf or (least >= (1 - WIDE) * best and self.narrow.pools.size <= MANY):
+            return
+        for cost in (math.ceil((1 - share) * best) for share in SHARES):
+            if cost > least and (self._left() <= 0 or not self._none_below(cost)):
+                return
+
+    def _none_below(self, cost: float) -> bool:
+        """Whether it is proved that no plan costs less; a plan that does is kept."""
+        pools, terms = self.narrow.within(cost)
+        if all(channel.options for channel in pools.board.channels):
+            model, seconds = _tight(pools, terms), max(LEAST, self._left())
+            told = partial(self._tell, "solver", None)
+            run = solvers.run(
+                str(self.solver), Task(model.problem, seconds, None, lambda _, bound: told(bound), cost)
+            )
+            self._note(run, self._checked(model, pools, run), cost)
+            if run.outcome == runs.INTERRUPTED:
+                raise KeyboardInterrupt
+            if run.outcome not in {runs.OPTIMAL, runs.INFEASIBLE} or self.narrow.best.cost < cost:
+                return False
+        self.bound = max(self.bound, cost - GAP)
+        return True
+
     def _next(self, model: Model) -> Met | None:
         """The next plan, by the solver or, for `auto`, by the other one where that failed."""
+        known = self._known()
+        if known is not None and known.cost - self.bound <= GAP:
+            self.outcome = runs.OPTIMAL
+            return known
         for name in self._names():
             self.solver = name
-            known = self._known()
             run = solvers.run(name, self._task(model, known))
-            met = self._checked(model, run)
+            met = self._checked(model, self.narrow.pools, run)
             self.outcome = run.outcome
             if run.outcome != runs.FAILED and not (met is None and run.values):
                 break
             self.outcome = runs.FAILED
-        self._note(run, met)
+        self._note(run, met, self.narrow.best.bar)
         return met
 
     def _names(self) -> list[str]:
@@ -166,23 +206,23 @@ class Solving:
             lambda best, bound: self._tell("solver", best, bound),
         )
 
-    def _note(self, run: Run, met: Met | None) -> None:
-        """Keep what a run proved (of the first plan also what was proved before), and its plan."""
+    def _note(self, run: Run, met: Met | None, within: float) -> None:
+        """Keep a run's plan, and what it proved (with what was proved before) of plans `within` a cost."""
         proved = run.bound if run.bound is not None else 0.0
         if run.outcome == runs.OPTIMAL and met is not None:
             proved = max(proved, met.cost - GAP)
-        self.bound = max(self.bound, min(proved, self.narrow.best.bar), self.narrow.bound)
+        self.bound = max(self.bound, min(proved, within), self.narrow.bound)
         if met is not None:
             self.narrow.best.offer(self._active(met), met)
 
-    def _checked(self, model: Model, run: Run) -> Met | None:
+    def _checked(self, model: Model, pools: Pools, run: Run) -> Met | None:
         """The plan of a run, read off and priced anew; a fault where it is not sound."""
         if run.fault:
             self.faults.append(run.fault)
         if run.values is None:
             return None
         try:
-            return read(model, self.narrow.pools, run.values)
+            return read(model, pools, run.values)
         except UnsoundPlanError as fault:
             self.faults.append(f"a plan of {self.solver} did not stand the check: {fault}")
             return None
@@ -209,23 +249,12 @@ class Solving:
             self._add(known, max(self.bound, self.narrow.bound))
 
     def _add(self, met: Met, bound: float) -> None:
-        totals = examined(self.board, met.chosen, dict(met.pieces))
-        least = min(self._cents(bound), totals.cost)
-        options = [self.board.channels[i].options[j] for i, js in enumerate(met.chosen) for j in js]
-        references = {option.reference for option in options if option.reference is not None}
-        self.plans.append(
-            Plan(
-                chosen=met.chosen,
-                lines=tuple(self._line(part, n) for part, n in met.pieces),
-                references=tuple(sorted(references)),
-                totals=totals,
-                bound=least,
-                proven=least == totals.cost,
-            )
-        )
+        self.plans.append(plan_of(self.board, met, self._cents(bound)))
 
-    def _line(self, part: int, pieces: int) -> Line:
-        entry = self.board.parts[part]
-        bought = purchase(entry.breaks, self.board.boards, pieces, entry.stock)
-        assert bought is not None  # the check has priced it
-        return Line(part, pieces, bought)
+
+def _tight(pools: Pools, terms: Terms | None) -> Model:
+    """The model of some pools, with the rows of their prices."""
+    model = build(pools.board)
+    if terms is not None:
+        tighten(model, terms)
+    return model

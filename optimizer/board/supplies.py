@@ -17,7 +17,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from optimizer.board.prices import schedule
-from optimizer.board.problem import Board, BoardPart, Channel
+from optimizer.board.problem import Board, BoardPart, Channel, Option
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -40,6 +40,11 @@ PLAIN = Weights()
 def family_supply(board: Board, family: int) -> int:
     """The index of the supply of `family`."""
     return len(board.parts) + family
+
+
+def taken(board: Board, option: Option) -> list[int]:
+    """The supplies of an option, each as often as it takes it."""
+    return [*option.parts, *[family_supply(board, option.family)] * option.amplifiers]
 
 
 def most_of(board: Board) -> dict[int, int]:
@@ -93,14 +98,18 @@ def part_table(board: Board, part: int, most: int, weights: Weights) -> Floats:
     entry = board.parts[part]
     cents = schedule(entry.breaks, board.boards, most, entry.stock)
     number = np.arange(most + 1)
-    each = weights.cost * board.placement + _each(entry, weights)
-    opens = weights.cost * board.line_item + weights.line_items
-    opens += weights.opamp_parts if entry.amplifiers else 0.0
+    each, opens = budget_dues(entry, weights)
+    each += weights.cost * board.placement
+    opens += weights.cost * board.line_item
     return np.asarray(weights.cost * cents + each * number + opens * (number > 0))
 
 
-def _each(entry: BoardPart, weights: Weights) -> float:
-    return weights.area * (entry.area or 0.0) + weights.current * (entry.current if entry.amplifiers else 0.0)
+def budget_dues(entry: BoardPart, weights: Weights) -> tuple[float, float]:
+    """What a piece of a part, and the part number as such, add for the budgets that have prices."""
+    each, opens = weights.area * (entry.area or 0.0), weights.line_items
+    if entry.amplifiers:
+        each, opens = each + weights.current * entry.current, opens + weights.opamp_parts
+    return each, opens
 
 
 def family_table(board: Board, family: int, most: int, weights: Weights) -> Floats:

@@ -15,16 +15,14 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from optimizer.board.bound import Key, Layout
+from optimizer.board.bound import Key, Terms
 from optimizer.board.problem import Board, Option
 from optimizer.board.supplies import (
-    PLAIN,
     Floats,
     Ints,
-    Weights,
-    family_supply,
     reference_uses,
     tables,
+    taken,
     used_references,
 )
 
@@ -79,15 +77,6 @@ class _Front:
         return _Front(self.codes[rows], self.paid[rows], self.loss[rows], self.chosen[rows])
 
 
-@dataclass(frozen=True, slots=True)
-class Terms:
-    """Under what the partial plans are bounded: the layout with its prices, and the weights of budgets."""
-
-    seen: Layout
-    prices: Floats
-    weights: Weights = PLAIN
-
-
 def sweep(board: Board, terms: Terms, target: float) -> Swept:
     """The options that plans of at most `target` can use, as far as they can be told."""
     return _Sweep(board, terms, target).swept()
@@ -126,9 +115,8 @@ class _Sweep:
                 each[supply][2, reference, supply] = count
         costs = tables(self.board, self.weights)
         for supply, users in each.items():
-            table = np.minimum.accumulate(costs[supply][::-1])[::-1]
             self.place[0, supply] = len(self.things)
-            self.things.append(self._thing(self._users(users), table))
+            self.things.append(self._thing(self._users(users), costs[supply]))
 
     def _users(self, each: dict[Key, int]) -> dict[Key, User]:
         """The users of a supply with the steps of their codes, channels before references."""
@@ -297,11 +285,6 @@ class _Sweep:
             k = self.place[0, supply]
             added[k] = added.get(k, 0) + new * self.things[k].users[2, reference, supply].step
         return added
-
-
-def taken(board: Board, option: Option) -> list[int]:
-    """The supplies of an option, each as often as it takes it."""
-    return [*option.parts, *[family_supply(board, option.family)] * option.amplifiers]
 
 
 def _codes(users: dict[Key, User]) -> int:

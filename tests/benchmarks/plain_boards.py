@@ -18,11 +18,12 @@ from optimizer.board.supplies import most_of, used_references
 
 @dataclass(frozen=True, slots=True)
 class Result:
-    """Seconds in all, the least cost and the bound [cents], None where there is none."""
+    """Seconds in all, the least cost and the bound [cents] (None: none), and the seconds of processors."""
 
     seconds: float
     cost: float | None
     bound: float | None
+    cpu: float = 0.0
 
     @property
     def gap(self) -> float | None:

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 import pytest
 
 from tests.benchmarks import board as benchmark
-from tests.benchmarks import plain_boards
+from tests.benchmarks import plain_boards, planning
 from tests.benchmarks.board import Case
 
 TINY = Case(3, 12, 1, 20.0, 1, True, "none")
@@ -39,7 +41,7 @@ def test_the_plain_formulation_agrees_with_the_plan() -> None:
 def test_a_rival_that_is_wrong_is_said() -> None:
     own = benchmark.ours(TINY, 3, "cbc")
     assert own.result.cost is not None
-    wrong = plain_boards.Result(1.0, own.result.cost + 5, own.result.cost + 5)
+    wrong = plain_boards.Result(1.0, own.result.cost + 5, own.result.cost + 5, 1.0)
     line = benchmark.row(TINY, 3, own, {"HiGHS": wrong, "CBC": plain_boards.Result(2.0, 9e9, 1.0)})
     assert line.endswith("HiGHS DISAGREES")
     assert "gap 100.00 %" in line
@@ -49,3 +51,11 @@ def test_an_unknown_case_is_refused(capsys: pytest.CaptureFixture[str]) -> None:
     with pytest.raises(SystemExit):
         benchmark.main(["--cases", "9x9"])
     assert "9x9: choose from 8x300" in capsys.readouterr().err
+
+
+def test_the_planning_benchmark_prints_a_row_for_each_board(tmp_path: Path) -> None:
+    outline = planning.drawn(tmp_path, (40, 40), 1, 3.0)
+    assert [channel.count for channel in outline.channels] == [3, 2]
+    first, every, _, pools, everything, *_ = planning.measured(outline).split()
+    assert 0.0 < float(first) <= float(every)
+    assert 0.0 <= float(pools) <= float(everything)

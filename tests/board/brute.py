@@ -65,14 +65,14 @@ def bought(board: Board, options: list[Option]) -> Iterator[Tried]:
         if buffer is not None:
             amplifiers[buffer] += 1
     drawn = sum(o.current for o in options) + sum(board.references[r].current for r in shared)
-    for packs in product(*(_packed(board, f, n) for f, n in sorted(amplifiers.items()))):
+    for packs in product(*(packed(board, f, n) for f, n in sorted(amplifiers.items()))):
         pieces = need + Counter({part: n for pack in packs for part, n in pack.items()})
         tried = _priced(board, pieces, drawn)
         if tried is not None:
             yield tried
 
 
-def _packed(board: Board, family: int, amplifiers: int) -> list[dict[int, int]]:
+def packed(board: Board, family: int, amplifiers: int) -> list[dict[int, int]]:
     """All ways to hold the amplifiers of which no package could be left out."""
     packages = board.families[family].packages
     sizes = [board.parts[a].amplifiers for a in packages]

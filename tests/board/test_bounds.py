@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from itertools import combinations_with_replacement, product
 
 import numpy as np
 import pytest
 
-from optimizer.board import bound, supplies, sweep
+from optimizer.board import bound, runs, solvers, supplies, sweep
+from optimizer.board.model import Model, build
+from optimizer.board.pools import with_options
 from optimizer.board.problem import Board
 from optimizer.board.supplies import PLAIN, Weights
+from optimizer.board.tighten import tighten
 from tests.board import brute, tiny
 
 PACE = bound.Pace(200, 10, 0.7)
@@ -50,12 +54,38 @@ def test_no_plan_within_the_target_is_dropped(seed, weighted):
         for prices in (best.prices, wild):
             answer = bound.ask(seen, prices)
             kept = bound.useful(seen, bound.Bound(answer.bound, prices, answer), target + 0.01)
-            swept = sweep.sweep(board, sweep.Terms(seen, prices, weights), target + 0.01)
+            swept = sweep.sweep(board, bound.Terms(seen, prices, weights), target + 0.01)
             for chosen, cost in plans.items():
                 if cost <= target:
                     for i, js in enumerate(chosen):
                         assert set(js) <= set(kept[i])
                         assert set(js) <= set(swept.options[i])
+
+
+@pytest.mark.parametrize("seed", SEEDS)
+def test_the_slope_is_that_of_the_bound(seed):
+    """A concave function of the prices: below its tangents everywhere, and on them close by."""
+    board = tiny.board(seed)
+    draw = np.random.default_rng(seed)
+    seen = bound.layout(board, priced(board, draw))
+    first = bound.first_prices(seen)
+    here = first * draw.uniform(0.5, 1.5, first.size)
+    answer = bound.ask(seen, here)
+    far = first * draw.uniform(0.0, 3.0, first.size)
+    near = here * (1 + 1e-7 * draw.uniform(-1, 1, first.size))
+    assert bound.ask(seen, far).bound <= answer.bound + answer.slope @ (far - here) + 1e-6
+    change = answer.slope @ (near - here)
+    assert bound.ask(seen, near).bound - answer.bound == pytest.approx(change, abs=1e-7)
+
+
+@pytest.mark.parametrize("seed", SEEDS)
+def test_a_sweep_begins_at_the_bound(seed):
+    board = tiny.board(seed)
+    for prices in terms(board, seed):
+        begun = sweep._Sweep(board, prices, 0.0)
+        losses = sum(float(thing.losses[0, 0]) for thing in begun.things)
+        at_bound = losses + begun._ahead(0) - prices.seen.allowance
+        assert at_bound == pytest.approx(bound.ask(prices.seen, prices.prices).bound, abs=1e-6)
 
 
 @pytest.mark.parametrize("seed", SEEDS)
@@ -68,7 +98,7 @@ def test_a_sweep_to_the_end_leaves_little(seed):
     target = min(plans.values())
     seen = bound.layout(board)
     best = bound.climb(seen, float(target), PACE)
-    swept = sweep.sweep(board, sweep.Terms(seen, best.prices), target + 0.01)
+    swept = sweep.sweep(board, bound.Terms(seen, best.prices), target + 0.01)
     assert swept.complete
     if not board.references:
         needed = [
@@ -76,6 +106,51 @@ def test_a_sweep_to_the_end_leaves_little(seed):
             for i in range(len(board.channels))
         ]
         assert [set(options) for options in swept.options] == needed
+
+
+def terms(board: Board, seed: int) -> tuple[bound.Terms, bound.Terms]:
+    """A board's best prices, budgets with prices too, and wild ones."""
+    draw = np.random.default_rng(seed)
+    weights = priced(board, draw)
+    seen = bound.layout(board, weights)
+    best = bound.climb(seen, 5000.0, PACE).prices
+    wild = best * draw.uniform(0.5, 1.5, best.size)
+    return bound.Terms(seen, best, weights), bound.Terms(seen, wild, weights)
+
+
+@pytest.mark.independent
+@pytest.mark.parametrize("seed", SEEDS)
+def test_rows_of_any_prices_leave_the_best_plan(seed):
+    board = tiny.board(seed)
+    ranked = brute.ranked(board)
+    for prices in terms(board, seed):
+        model = build(board)
+        tighten(model, prices)
+        run = solvers.run("cbc", runs.Task(model.problem, 20.0))
+        assert (run.outcome == runs.OPTIMAL) == bool(ranked)
+        if ranked:
+            assert worth(model, run.values) == pytest.approx(ranked[0][0], abs=1e-6)
+
+
+def worth(model: Model, values: Mapping[str, float]) -> float:
+    """The objective at a solver's values."""
+    return sum(c * values[variable.name] for variable, c in model.problem.objective.items())
+
+
+@pytest.mark.parametrize("seed", SEEDS)
+def test_rows_lift_the_relaxation_to_the_bound(seed):
+    """What solvers begin from is no less than the Lagrangian bound, budgets with prices or not."""
+    board = tiny.board(seed)
+    shared = [[j for j, o in enumerate(c.options) if o.reference is not None] for c in board.channels]
+    board = with_options(board, [keep or [0] for keep in shared])
+    for prices in terms(board, seed):
+        model = build(board)
+        tighten(model, prices)
+        for variable in model.problem.variables():
+            variable.cat = "Continuous"
+        run = solvers.run("cbc", runs.Task(model.problem, 20.0))
+        if run.values is not None:
+            assert worth(model, run.values) >= bound.ask(prices.seen, prices.prices).bound - 1.0
 
 
 def test_tables_hold_the_least_cost_of_every_number():
