@@ -47,7 +47,7 @@ ROOMS: dict[str, set[str]] = {
     },
     "record": {"planning", "search", "study", "request", "catalog", "quantities", "vocabulary"},
     "review": {
-        "planning", "search", "study", "record", "request", "figures", "margins", "catalog", "quantities",
+        "planning", "search", "board", "study", "record", "request", "figures", "margins", "catalog", "quantities",
         "vocabulary",
     },
     "report": {"planning", "review", "record", "search", "catalog", "quantities", "vocabulary"},

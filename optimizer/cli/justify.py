@@ -6,6 +6,7 @@ import argparse
 import sys
 from pathlib import Path
 
+from optimizer.cli.justify_board import justify_board
 from optimizer.cli.options.justify import justify_options
 from optimizer.cli.output import write
 from optimizer.cli.outputs import input_files, output_problems
@@ -21,10 +22,13 @@ def justify(parsed: argparse.Namespace) -> int:
     options, problems = justify_options(parsed)
     output = [("--output", options.output)]
     _refuse([*problems, *output_problems(output, [Path(options.record)])])
+    from optimizer.record import says_board
     from optimizer.report import page
 
     if not options.markdown:
         page.check_installed()
+    if says_board(options.record):
+        return justify_board(options)
     from optimizer.record import write_text
     from optimizer.review.dossier import gather, place_of
     from optimizer.review.weighing import steps as name_steps

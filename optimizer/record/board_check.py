@@ -19,6 +19,16 @@ from optimizer.record.check import (
 )
 from optimizer.record.model import BOARD_FORMAT
 
+POSITIONS = (
+    "photodiode",
+    "opamp",
+    "wiring",
+    "reference",
+    "feedback_resistance",
+    "feedback_capacitance",
+    "low_pass",
+)
+"""What a copy of a channel chooses, as a substitute says what it changes."""
 FAMILY = BOARD_FORMAT.partition("/")[0]
 MAYBE = (*NUMBER, type(None))
 TOP: Shape = {
@@ -119,6 +129,24 @@ REFUSAL: Shape = {
 }
 
 
+# What only substitutes for another plan have.
+CHANGES: Shape = {"changes": (int,), "fewest": (bool,), "cheapest": (bool,), "changed": (list,)}
+CHANGE: Shape = {
+    "where": (str,),
+    "count": (int,),
+    "channel": TEXT,
+    "copies": (list,),
+    "positions": (list,),
+}
+SIDES: Mapping[str, Shape] = {
+    "channel": {"old": (dict,), "new": (dict,)},
+    "packages": {"old": (list,), "new": (list,)},
+    "levels": {"old": (dict, type(None)), "new": (dict, type(None))},
+}
+REPLACES: Shape = {"plan": (dict,), "gone": (list,), "out": (list,), "keep": (list,)}
+LOST: Shape = {"part": (str,), "why": (str,)}
+
+
 def is_board(data: Any) -> bool:
     """Whether a document says that it is a board's record, of whatever version."""
     said = data.get("format") if isinstance(data, dict) else None
@@ -147,6 +175,8 @@ def _inner(file: str, data: Mapping[str, Any]) -> Iterator[Problem]:
         yield from shape_problems(file, "alone", data["alone"], ALONE)
     if data["refusal"] is not None:
         yield from shape_problems(file, "refusal", data["refusal"], REFUSAL)
+    if "replaces" in data:
+        yield from _replaces(file, data["replaces"])
     for index, plan in enumerate(data["plans"]):
         shape = list(_plan(file, f"plans[{index}]", plan))
         yield from shape
@@ -195,6 +225,69 @@ def _plan(file: str, where: str, plan: Any) -> Iterator[Problem]:
         place = f"{where}.packages[{index}]"
         own = shape_problems(file, place, package, PACKAGE)
         yield from own or _each(file, f"{place}.places", package["places"], PLACE)
+    if not CHANGES.keys().isdisjoint(plan):
+        yield from _changes(file, where, plan)
+
+
+def _changes(file: str, where: str, plan: Mapping[str, Any]) -> Iterator[Problem]:
+    """What is wrong with what a substitute says that it changes."""
+    own = shape_problems(file, where, plan, CHANGES)
+    yield from own
+    for index, change in enumerate(() if own else plan["changed"]):
+        place = f"{where}.changed[{index}]"
+        shape = shape_problems(file, place, change, CHANGE)
+        yield from shape
+        if shape:
+            continue
+        if change["where"] not in SIDES:
+            rule = f"expected one of {', '.join(SIDES)}"
+            yield Problem(file, None, f"{place}.where", change["where"], rule)
+            continue
+        sides = shape_problems(file, place, change, SIDES[change["where"]])
+        yield from sides or _sides(file, place, change)
+
+
+def _sides(file: str, place: str, change: Mapping[str, Any]) -> Iterator[Problem]:
+    """What is wrong with what stood and what stands in one place."""
+    for side in ("old", "new"):
+        value, where = change[side], f"{place}.{side}"
+        if change["where"] == "channel":
+            yield from candidate_problems(file, where, value)
+            yield from _positions(file, place, change)
+        elif change["where"] == "levels":
+            yield from () if value is None else shape_problems(file, where, value, {"name": (str,)})
+            if value is not None and "top" in value:
+                yield from shape_problems(file, where, value, LEVEL)
+        else:
+            for index, part in enumerate(value):
+                named = isinstance(part, list) and len(part) == 2 and all(isinstance(n, str) for n in part)
+                if not named:
+                    rule = "expected a part and its maker"
+                    yield Problem(file, None, f"{where}[{index}]", str(part)[:60], rule)
+
+
+def _positions(file: str, place: str, change: Mapping[str, Any]) -> Iterator[Problem]:
+    for index, copy in enumerate(change["copies"]):
+        if not isinstance(copy, int) or isinstance(copy, bool):
+            yield Problem(file, None, f"{place}.copies[{index}]", str(copy)[:60], "expected a whole number")
+    for index, name in enumerate(change["positions"]):
+        if name not in POSITIONS:
+            rule = f"expected one of {', '.join(POSITIONS)}"
+            yield Problem(file, None, f"{place}.positions[{index}]", str(name)[:60], rule)
+
+
+def _replaces(file: str, table: Any) -> Iterator[Problem]:
+    """What is wrong with what a record says of the plan that its own replace."""
+    own = shape_problems(file, "replaces", table, REPLACES)
+    yield from own
+    if own:
+        return
+    yield from shape_problems(file, "replaces.plan", table["plan"], {"rank": (int,), "cost": (int,)})
+    yield from _each(file, "replaces.gone", table["gone"], LOST)
+    for key in ("out", "keep"):
+        for index, name in enumerate(table[key]):
+            if not isinstance(name, str):
+                yield Problem(file, None, f"replaces.{key}[{index}]", str(name)[:60], "expected text")
 
 
 def _built(file: str, where: str, built: Any) -> Iterator[Problem]:
@@ -229,6 +322,9 @@ def _names(file: str, where: str, plan: Mapping[str, Any], data: Mapping[str, An
         if sorted(copies) != list(range(1, counts[name] + 1)):
             rule = f"expected each of the {counts[name]} copies of channel {name!r} once"
             yield Problem(file, None, f"{where}.channels", str(sorted(copies))[:60], rule)
+    for index, change in enumerate(plan.get("changed", ())):
+        if change["where"] == "channel":
+            yield from _unknown(file, f"{where}.changed[{index}].channel", str(change["channel"]), counts)
     for index, package in enumerate(plan["packages"]):
         for at, served in enumerate(package["places"]):
             place = f"{where}.packages[{index}].places[{at}]"

@@ -6,7 +6,7 @@ Entry point: `gather`. What is computed again here must agree with the record, o
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import asdict, dataclass
 from pathlib import Path
 from typing import Any
@@ -72,9 +72,28 @@ def gather(reopened: Reopened, place: Place, rank: int | None = None) -> Dossier
     """
     candidate = chosen_of(reopened.record, rank)
     study = reopened.study
-    space = dividers.recorded(whole(study.request, study.catalogs), study.catalogs, candidate)
-    choice = _located(space, reopened, candidate, place)
-    _refuse_other_figures(space, choice, reopened, candidate, place)
+    spot = Spot(place.record, f"row {candidate['rank']}", AGAIN)
+    return examined(whole(study.request, study.catalogs), reopened, candidate, (place, spot))
+
+
+@dataclass(frozen=True, slots=True)
+class Spot:
+    """Where in a record a candidate stands, and what to do where it no longer follows from the files."""
+
+    file: str
+    where: str
+    again: str
+
+
+def examined(
+    space: Space, reopened: Reopened, candidate: Mapping[str, Any], at: tuple[Place, Spot]
+) -> Dossier:
+    """The dossier of one `candidate` of `space`, computed again; raises InputError as `gather` does."""
+    place, spot = at
+    study = reopened.study
+    space = dividers.recorded(space, study.catalogs, candidate)
+    choice = _located(space, reopened, candidate, spot)
+    _refuse_other_figures(space, choice, reopened, candidate, spot)
     return Dossier(
         record=reopened.record,
         study=study,
@@ -86,19 +105,19 @@ def gather(reopened: Reopened, place: Place, rank: int | None = None) -> Dossier
     )
 
 
-def _located(space: Space, reopened: Reopened, candidate: Mapping[str, Any], place: Place) -> Choice:
+def _located(space: Space, reopened: Reopened, candidate: Mapping[str, Any], spot: Spot) -> Choice:
     try:
         return locate(space, reopened.study.catalogs, candidate)
     except NotFound as lack:
         problems = [
-            Problem(place.record, None, f"row {candidate['rank']}, {position}", None, words, AGAIN)
+            Problem(spot.file, None, f"{spot.where}, {position}", None, words, spot.again)
             for position, words in lack.missing
         ]
-        raise InputError([*problems, *_changed_problems(reopened)]) from None
+        raise InputError([*problems, *changed_problems(reopened.changed)]) from None
 
 
 def _refuse_other_figures(
-    space: Space, choice: Choice, reopened: Reopened, candidate: Mapping[str, Any], place: Place
+    space: Space, choice: Choice, reopened: Reopened, candidate: Mapping[str, Any], spot: Spot
 ) -> None:
     """Raise InputError with every figure, limit and margin of `candidate` that is not what it was."""
     (now,) = assemble.candidates(space, reopened.study.catalogs, choice)
@@ -106,14 +125,12 @@ def _refuse_other_figures(
     if not differing:
         return
     problems = [
-        Problem(
-            place.record, None, f"row {candidate['rank']}, {name}", _said(then), f"it is {_said(found)} now"
-        )
+        Problem(spot.file, None, f"{spot.where}, {name}", said(then), f"it is {said(found)} now")
         for name, then, found in differing
     ]
     reason = "its figures do not follow from its request and catalogs as they are now"
-    problems.append(Problem(place.record, None, None, None, reason, AGAIN))
-    raise InputError([*problems, *_changed_problems(reopened)])
+    problems.append(Problem(spot.file, None, None, None, reason, spot.again))
+    raise InputError([*problems, *changed_problems(reopened.changed)])
 
 
 def differences(
@@ -121,29 +138,32 @@ def differences(
 ) -> Iterator[tuple[str, float | None, float | None]]:
     """Names and both values of the figures, limits and margins in which two candidates differ."""
     for name, value in now["figures"].items():
-        if not _agree(then["figures"].get(name), value):
+        if not agree(then["figures"].get(name), value):
             yield name, then["figures"].get(name), value
     before = {target["name"]: target for target in then["targets"]}
     after = {target["name"]: target for target in now["targets"]}
     for name in dict.fromkeys((*before, *after)):
         for part in ("limit", "margin"):
             was, found = (side.get(name, {}).get(part) for side in (before, after))
-            if not _agree(was, found):
+            if not agree(was, found):
                 yield f"{part} of {name}", was, found
 
 
-def _agree(then: float | None, now: float | None) -> bool:
+def agree(then: float | None, now: float | None) -> bool:
+    """Whether two values are the same but for rounding."""
     if then is None or now is None:
         return then is now
     return math.isclose(then, now, rel_tol=AGREES, abs_tol=AGREES * 1e-9)
 
 
-def _said(value: float | None) -> str:
+def said(value: float | None) -> str:
+    """A value in a problem's words."""
     return "no value" if value is None else f"{value:.9g}"
 
 
-def _changed_problems(reopened: Reopened) -> Iterator[Problem]:
-    for change in reopened.changed:
+def changed_problems(changed: Sequence[Changed]) -> Iterator[Problem]:
+    """Which input files are not what they were."""
+    for change in changed:
         what = "changed" if change.then and change.now else "new" if change.now else "gone"
         yield Problem(change.file, None, None, None, f"this input is {what} since the record was made")
 

@@ -19,9 +19,10 @@ from typing import Any
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import CHECKS
+from optimizer.review.board import space_of
 from optimizer.review.reopen import Reopened
 from optimizer.review.shelf import Taken
-from optimizer.review.supply import Case, Exposure, pieces, summed, worst_first
+from optimizer.review.supply import Case, Exposure, located, pieces, summed, worst_first
 from optimizer.review.withdrawal import CATALOG_OF, Wish, taken_away
 from optimizer.search.change import dividers
 from optimizer.search.change.positions import USES, Board, Fitted, board_of
@@ -75,12 +76,16 @@ def exposure(taken: Sequence[Taken], tell: Tell = lambda _: None) -> Exposures:
     cases: dict[Key, Case] = {}
     stale: list[Stale] = []
     for _, group in groupby(sorted(taken, key=_request_of), key=_request_of):
-        for names, one in _looked_at(list(group), tell):
-            _add(cases, names, one)
-            stale += [Stale(name, one.stale) for name in names if one.stale]
+        for alike, one in _looked_at(list(group), tell):
+            _add(cases, alike, one)
+            stale += [Stale(_place(each), one.stale) for each in alike if one.stale]
     order = {one.name: place for place, one in enumerate(taken)}
+    places = {_place(one): place for place, one in enumerate(taken)}
+    for case in cases.values():
+        for name, channels in case.records.items():
+            channels.sort(key=lambda channel, of=name: places[located(of, [channel])])  # type: ignore[misc]
     parts = sorted((summed(case, order) for case in cases.values()), key=worst_first)
-    return Exposures(tuple(parts), tuple(sorted(stale, key=lambda one: order[one.record])))
+    return Exposures(tuple(parts), tuple(sorted(stale, key=lambda one: places[one.record])))
 
 
 def exposed(reopened: Reopened, candidate: Mapping[str, Any]) -> tuple[Exposure, ...]:
@@ -99,22 +104,36 @@ class _Looked:
     stale: tuple[str, ...]
 
 
-def _request_of(one: Taken) -> tuple[str, tuple[str, ...]]:
-    request = one.reopened.study.request
-    return os.path.realpath(request.path), request.space.exclude
+def _place(one: Taken) -> str:
+    """The record, of a board with the channel."""
+    return one.name if one.channel is None else located(one.name, [one.channel])
 
 
-def _looked_at(group: Sequence[Taken], tell: Tell) -> Iterator[tuple[list[str], _Looked]]:
-    """Each distinct candidate of one request, with the names of its records."""
+def _request_of(one: Taken) -> tuple[str, tuple[str, ...], int, int, bool]:
+    """What must be equal for the same space to be compiled: a board has a say in quantity and sources."""
+    request, place = one.reopened.study.request, os.path.realpath(one.reopened.study.request.path)
+    sources = request.resilience.opamp_sources
+    return place, request.space.exclude, request.quantity, sources, one.board is None
+
+
+def _looked_at(group: Sequence[Taken], tell: Tell) -> Iterator[tuple[list[Taken], _Looked]]:
+    """Each distinct candidate of one request, with the records that choose it."""
     study = group[0].reopened.study
-    space = whole(study.request, study.catalogs)
+    space = _space(group[0])
     alike: dict[str, list[Taken]] = {}
     for one in group:
         alike.setdefault(_told_apart(one.candidate), []).append(one)
     for several in alike.values():
         for one in several:
             tell(one.name)
-        yield [one.name for one in several], _look(space, study.catalogs, several[0].candidate)
+        yield several, _look(space, study.catalogs, several[0].candidate)
+
+
+def _space(one: Taken) -> Space:
+    study = one.reopened.study
+    if one.board is None:
+        return whole(study.request, study.catalogs)
+    return space_of(one.board, next(c for c in one.board.channels if c.name == one.channel))
 
 
 def _told_apart(candidate: Mapping[str, Any]) -> str:
@@ -163,12 +182,21 @@ def no_longer(space: Space, catalogs: Catalogs, candidate: Mapping[str, Any]) ->
             yield f"misses {name}"
 
 
-def _add(cases: dict[Key, Case], names: Sequence[str], one: _Looked) -> None:
+def _add(cases: dict[Key, Case], alike: Sequence[Taken], one: _Looked) -> None:
     for part, uses, served in one.parts:
         case = cases.setdefault((CATALOG_OF[uses[0]], part.name, part.maker or ""), Case(part))
         case.uses |= set(uses)
-        case.records += names
+        for taken in alike:
+            channels = case.records.setdefault(taken.name, [])
+            channels += [] if taken.channel is None or taken.channel in channels else [taken.channel]
+            case.needed += one.quantity * _pieces_of(taken, one, part, uses)
         case.catalogs.append(one.catalogs)
         case.served.append(served)
-        each = sum(pieces(use, one.extra_package) for use in uses)
-        case.needed += one.quantity * each * len(names)
+
+
+def _pieces_of(taken: Taken, one: _Looked, part: Fitted, uses: Sequence[str]) -> int:
+    """The pieces of `part` that `taken` stands for: as its board counts them, or those of one receiver."""
+    if taken.pieces is None:
+        return sum(pieces(use, one.extra_package) for use in uses)
+    role = CATALOG_OF[uses[0]].removesuffix("s")
+    return taken.pieces.get((role, part.name, part.maker or ""), 0)

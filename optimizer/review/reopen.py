@@ -60,13 +60,20 @@ def reopen(path: str | Path, request: str | Path | None = None, *, load: Load = 
     Raises InputError where the record is none or its request cannot be found, ReopenError where the
     request or a catalog cannot be used.
     """
-    record = records.read(path)
-    inputs = _inputs_of(record, str(path))
-    place = Path(request) if request is not None else _request_of(record, Path(path), inputs[0])
+    return reopened(records.read(path), path, request, load=load)
+
+
+def reopened(
+    record: Record, path: str | Path, request: str | Path | None = None, *, load: Load = studies.load
+) -> Reopened:
+    """The same of a `record` that was read at `path` already."""
+    inputs = inputs_of(record.data, str(path))
+    recorded = record.data.get("request_file")
+    place = Path(request) if request is not None else found_at(Path(path), inputs[0], recorded)
     study = _load(place, inputs, load)
     ranking, space = _ranking(record, study, str(path)), _space(record, study)
     study = replace(study, request=replace(study.request, ranking=ranking, space=space))
-    return Reopened(record, study, tuple(_changes(inputs, study.inputs)))
+    return Reopened(record, study, tuple(changes(inputs, study.inputs)))
 
 
 def chosen_of(record: Record, rank: int | None = None) -> Mapping[str, Any]:
@@ -94,9 +101,12 @@ def _typed(rank: int | None) -> str | None:
     return None if rank is None else str(rank)
 
 
-def _inputs_of(record: Record, file: str) -> list[Source]:
-    """The input files that the record lists, its request first."""
-    entries, sources = record.data["inputs"], []
+def inputs_of(data: Mapping[str, Any], file: str) -> list[Source]:
+    """The input files that the record `data`, read from `file`, lists: first the one that names the others.
+
+    Raises InputError where it does not say what they were.
+    """
+    entries, sources = data["inputs"], []
     for index, entry in enumerate(entries):
         whole = isinstance(entry, dict) and all(isinstance(entry.get(k), str) for k in ("file", "sha256"))
         if not whole:
@@ -107,10 +117,12 @@ def _inputs_of(record: Record, file: str) -> list[Source]:
     return sources
 
 
-def _request_of(record: Record, path: Path, source: Source) -> Path:
-    """Where the request that the record names is: beside it, or where it was."""
+def found_at(path: Path, source: Source, recorded: object, what: str = "request") -> Path:
+    """Where the request (or whatever `what`) of the record at `path` is: beside it, or where it was.
+
+    `recorded` is where the record says it was. Raises InputError where it is in neither place.
+    """
     places = [path.parent / source.file]
-    recorded = record.data.get("request_file")
     if isinstance(recorded, str):
         places.append(Path(recorded))
     found = [place for place in places if _is_file(place)]
@@ -118,9 +130,9 @@ def _request_of(record: Record, path: Path, source: Source) -> Path:
     best = next(same, found[0] if found else None)
     if best is None:
         looked = " nor ".join(dict.fromkeys(str(place) for place in places))
-        rule = f"the request that the record names is neither {looked}"
+        rule = f"the {what} that the record names is neither {looked}"
         if len(set(places)) == 1:
-            rule = f"the request that the record names is not at {looked}"
+            rule = f"the {what} that the record names is not at {looked}"
         raise InputError([Problem(str(path), None, "inputs[0]", source.file, rule, OVERRIDE)])
     return best
 
@@ -176,8 +188,8 @@ def _space(record: Record, study: Study) -> Space:
     return replace(space, exclude=tuple(dict.fromkeys((*space.exclude, *out))))
 
 
-def _changes(then: Sequence[Source], now: Sequence[Source]) -> Iterator[Changed]:
-    """What differs; the first input is the request in both, whatever its name."""
+def changes(then: Sequence[Source], now: Sequence[Source]) -> Iterator[Changed]:
+    """What differs between inputs; the first names the others in both, whatever its own name."""
     if then[0].sha256 != now[0].sha256:
         yield Changed(then[0].file, then[0].sha256, now[0].sha256)
     before = {source.file: source.sha256 for source in then[1:]}

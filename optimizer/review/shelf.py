@@ -1,31 +1,55 @@
-"""Many records taken up again, each request and each set of catalogs read once."""
+"""Many records taken up again, of shortlists and of boards, each request and set of catalogs read once."""
 
 from __future__ import annotations
 
 import os
+from collections import Counter
 from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
+from optimizer import record as records
 from optimizer import study as studies
-from optimizer.catalog import ReadOptions, read_catalogs
-from optimizer.catalog.parts import Catalogs
+from optimizer.catalog.shelf import CatalogShelf
 from optimizer.errors import InputError, Problem
-from optimizer.review.reopen import Reopened, ReopenError, reopen
+from optimizer.planning.outline import Outline
+from optimizer.planning.reading import read_board
+from optimizer.record import BoardRecord, Record
+from optimizer.review.board import Receiver, ReopenedBoard, receivers_of, reopen_board, with_opamp
+from optimizer.review.reopen import Reopened, ReopenError, reopened
 from optimizer.study import Study
 
 Tell = Callable[[str], None]
-Files = Mapping[str, tuple[str, ...]]
+Key = tuple[str, str, str]
+"""The role, name and maker of a part."""
+
+NAMED = (
+    ("photodiode", "photodiode", "photodiode_maker"),
+    ("opamp", "opamp", "opamp_maker"),
+    ("resistor", "resistor_family", "resistor_maker"),
+    ("capacitor", "capacitor_family", "capacitor_maker"),
+    ("resistor", "divider_family", "divider_maker"),
+    ("capacitor", "bypass_family", "bypass_maker"),
+)
+"""The role of each part of a candidate, and the keys of its name and its maker."""
 
 
 @dataclass(frozen=True, slots=True)
 class Taken:
-    """A record by its name as typed, with its study, and the candidate that it marks as chosen."""
+    """A record by its name as typed, with its study, and the candidate that it marks as chosen.
+
+    Of a board there is one for each way in which a channel is built, with the packages on the board.
+    `board` is the board, `channel` the channel's name, and
+    `pieces` those of each of its parts on the whole board, as far as no other channel stands for them.
+    """
 
     name: str
     reopened: Reopened
     candidate: Mapping[str, Any]
+    board: Outline | None = None
+    channel: str | None = None
+    pieces: Mapping[Key, int] | None = None
 
 
 def take_up(paths: Iterable[str], tell: Tell = lambda _: None) -> list[Taken]:
@@ -42,10 +66,9 @@ def take_up(paths: Iterable[str], tell: Tell = lambda _: None) -> list[Taken]:
     for path in places.values():
         tell(path)
         try:
-            reopened = reopen(path, load=shelf.study)
-            found.append(Taken(path, reopened, _chosen(path, reopened)))
+            found += shelf.taken(path)
         except ReopenError as error:
-            problems |= dict.fromkeys(_from_here(error))
+            problems |= dict.fromkeys(studies.from_here(error.problems, error.request))
         except InputError as error:
             problems |= dict.fromkeys(error.problems)
     if problems:
@@ -53,46 +76,92 @@ def take_up(paths: Iterable[str], tell: Tell = lambda _: None) -> list[Taken]:
     return found
 
 
-def _chosen(path: str, reopened: Reopened) -> Mapping[str, Any]:
-    data = reopened.record.data
-    for row in reopened.record.candidates:
-        if row["rank"] == data["chosen"]:
-            return row
-    rule = "the record marks no candidate as chosen, so it uses no part"
-    raise InputError([Problem(path, None, "chosen", None, rule, "leave it out, or choose one with --choose")])
-
-
-def _from_here(error: ReopenError) -> Iterator[Problem]:
-    """The problems of a request and its catalogs, each file named as seen from here."""
-    for problem in error.problems:
-        own = problem.file == str(error.request) or Path(problem.file).is_absolute()
-        yield problem if own else replace(problem, file=str(error.request.parent / problem.file))
-
-
 @dataclass(slots=True)
 class Shelf:
-    """Requests and catalogs that have been read, by their places."""
+    """Requests, boards and catalogs that have been read, by their places."""
 
     studies: dict[str, Study] = field(default_factory=dict)
-    catalogs: dict[Any, tuple[int, Catalogs]] = field(default_factory=dict)
+    outlines: dict[str, Outline] = field(default_factory=dict)
+    catalogs: CatalogShelf = field(default_factory=CatalogShelf)
+
+    def taken(self, path: str) -> list[Taken]:
+        """What the record at `path` chooses, with its study: one candidate, or the channels of a board."""
+        record = records.read_any(path)
+        if isinstance(record, BoardRecord):
+            opened = reopen_board(record, path, load=self.outline)
+            return list(of_board(path, opened, _plan(path, opened)))
+        return [Taken(path, reopened(record, path, load=self.study), _chosen(path, record))]
+
+    def outline(self, place: Path) -> Outline:
+        """The outline of the board file at `place`."""
+        key = os.path.realpath(place)
+        if key not in self.outlines:
+            self.outlines[key] = read_board(place)
+        return replace(self.outlines[key], path=place)
 
     def study(self, place: Path) -> Study:
         """The study of the request at `place`."""
         key = os.path.realpath(place)
         if key not in self.studies:
-            self.studies[key] = studies.load(place, read=self.read)
+            self.studies[key] = studies.load(place, read=self.catalogs.read)
         return replace(self.studies[key], request=replace(self.studies[key].request, path=place))
 
-    def read(self, files: Files, options: ReadOptions) -> Catalogs:
-        """The catalogs of `files`. Where rows were left out, that may be for the build quantity's sake."""
-        places = tuple(
-            (role, name, os.path.realpath(options.folder / name))
-            for role, names in files.items()
-            for name in names
+
+def _chosen(path: str, record: Record) -> Mapping[str, Any]:
+    for row in record.candidates:
+        if row["rank"] == record.data["chosen"]:
+            return row
+    rule = "the record marks no candidate as chosen, so it uses no part"
+    raise InputError([Problem(path, None, "chosen", None, rule, "leave it out, or choose one with --choose")])
+
+
+def _plan(path: str, opened: ReopenedBoard) -> Mapping[str, Any]:
+    plan = opened.record.chosen
+    if plan is None:
+        rule = "the record marks no plan as chosen, so it uses no part"
+        raise InputError([Problem(path, None, "chosen", None, rule, "leave it out, or plan the board anew")])
+    return plan
+
+
+def of_board(path: str, opened: ReopenedBoard, plan: Mapping[str, Any]) -> Iterator[Taken]:
+    """The channels of a board's `plan`; a part is counted once, with the first channel that uses it."""
+    left = _pieces(plan)
+    receivers = receivers_of(opened, plan)
+    for receiver in (*receivers, *_buffers(plan, receivers)):
+        mine = {key: left.pop(key) for key in _keys(receiver.built) if key in left}
+        yield Taken(
+            name=path,
+            reopened=receiver.reopened,
+            candidate=receiver.built,
+            board=opened.outline,
+            channel=receiver.channel,
+            pieces=mine,
         )
-        key = (places, tuple(sorted(options.assume.items())), options.currency)
-        quantity, catalogs = self.catalogs.get(key, (options.quantity, None))
-        if catalogs is None or (catalogs.left_out and quantity != options.quantity):
-            catalogs = read_catalogs(files, options)
-            self.catalogs[key] = (options.quantity, catalogs)
-        return catalogs
+
+
+def _pieces(plan: Mapping[str, Any]) -> Counter[Key]:
+    """The pieces on a board of each part, of a family in all values."""
+    pieces: Counter[Key] = Counter()
+    for line in plan["bill"]:
+        pieces[line["role"], line["part"], line["maker"]] += line["pieces"]
+    return pieces
+
+
+def _keys(candidate: Mapping[str, Any]) -> Iterator[Key]:
+    for role, name, maker in NAMED:
+        if candidate.get(name) is not None:
+            yield role, candidate[name], candidate.get(maker) or ""
+
+
+def _buffers(plan: Mapping[str, Any], receivers: Iterable[Receiver]) -> Iterator[Receiver]:
+    """Packages that serve buffers alone: as the op-amp of a channel that uses the level."""
+    serving = {(r.built["opamp"], r.built["opamp_maker"]) for r in receivers}
+    users = {receiver.level: receiver for receiver in receivers if receiver.level is not None}
+    packages = {(line["part"], line["maker"]): line["package"] for line in plan["bill"]}
+    for package in plan["packages"]:
+        part = package["opamp"], package["maker"]
+        named = [place["level"] for place in package["places"] if place["level"] in users]
+        if named and part not in serving:
+            serving.add(part)
+            user = users[named[0]]
+            yield replace(user, built=with_opamp(user.built, part, packages.get(part)))

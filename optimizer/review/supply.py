@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -22,12 +22,12 @@ STATUS_ORDER = (VANISHED, "obsolete", "last-time-buy", "not-for-new-designs", "a
 class Exposure:
     """One part that candidates use, and how much hangs on it.
 
-    `uses` says for what (see USES), `records` where. `status` is '' for a passive family and VANISHED for
-    a part that the catalogs no longer hold; `outlined` is whether its package (and pinout) is known, without
-    which nothing counts as a substitute; of several catalogs the worst is said of status, stock and lead
-    time, each None where unknown. `needed` pieces are for all builds together. `makers` offer the part or
-    a drop-in for it. `drop_ins` and `values` count what serves every record, `fewest` both together in
-    the record that has least.
+    `uses` says for what (see USES), `records` where (of boards with the channels). `status` is '' for a
+    passive family and VANISHED for a part that the catalogs no longer hold; `outlined` is whether its
+    package (and pinout) is known, without which nothing counts as a substitute; of several catalogs the
+    worst is said of status, stock and lead time, each None where unknown. `needed` pieces are for all
+    builds together. `makers` offer the part or a drop-in for it. `drop_ins` and `values` count what serves
+    every record, `fewest` both together in the record that has least.
     """
 
     part: str
@@ -62,11 +62,14 @@ class Exposure:
 
 @dataclass(slots=True)
 class Case:
-    """What is gathered of one part; one entry of `catalogs` and `served` a candidate that uses it."""
+    """What is gathered of one part; one entry of `catalogs` and `served` a candidate that uses it.
+
+    `records` holds the channels of each record of a board, nothing for other records.
+    """
 
     part: Fitted
     uses: set[str] = field(default_factory=set)
-    records: list[str] = field(default_factory=list)
+    records: dict[str, list[str]] = field(default_factory=dict)
     catalogs: list[Catalogs] = field(default_factory=list)
     served: list[Serving] = field(default_factory=list)
     needed: int = 0
@@ -87,7 +90,9 @@ def summed(case: Case, order: Mapping[str, int]) -> Exposure:
         part=case.part.name,
         maker=case.part.maker or "",
         uses=uses,
-        records=tuple(sorted(case.records, key=lambda name: order[name])),
+        records=tuple(
+            located(name, case.records[name]) for name in sorted(case.records, key=lambda name: order[name])
+        ),
         status=_status(case, uses[0]),
         outlined=bool(case.part.package and (case.part.pinout or uses[0] not in ("photodiode", "opamp"))),
         stock=_known(min, _numbers(case, uses[0], "stock")),
@@ -98,6 +103,11 @@ def summed(case: Case, order: Mapping[str, int]) -> Exposure:
         values=len(either - drop_ins),
         fewest=min(len(served.drop_ins) + len(served.values) for served in case.served),
     )
+
+
+def located(record: str, channels: Sequence[str]) -> str:
+    """Where a part is used: the record, and of a board its channels: 'sonde.json (turbidity, colour)'."""
+    return f"{record} ({', '.join(channels)})" if channels else record
 
 
 def _namesakes(case: Case, use: str) -> Iterator[str]:

@@ -83,7 +83,7 @@ def withdrawal(reopened: Reopened, space: Space, candidate: Mapping[str, Any], w
     if problems:
         raise InputError(problems)
     taken = taken_away(catalogs, board, wish)
-    problems = [*_idle(taken.parts, board, wish.gone), *_kept_yet_gone(taken.parts, wish.keep)]
+    problems = [*_idle(taken.parts, board, wish.gone), *kept_yet_gone(taken.parts, wish.keep)]
     if problems:
         raise InputError(problems)
     return taken
@@ -160,7 +160,8 @@ def _recorded(row: Mapping[str, Any]) -> Iterator[str]:
             yield f"{row.get(maker) or ''}/{row[name]}"
 
 
-def _is_named(part: Withdrawn, names: Sequence[str]) -> bool:
+def is_named(part: Withdrawn, names: Sequence[str]) -> bool:
+    """Whether `names` hold the part, alone or as maker/part."""
     if part.maker is None:
         return any(name.rpartition("/")[2] == part.part for name in names)
     return part.part in names or f"{part.maker}/{part.part}" in names
@@ -173,7 +174,7 @@ def _idle(parts: Sequence[Withdrawn], board: Board, names: Sequence[str]) -> Ite
     if not names and not parts:
         rule = f"no part of {row} is obsolete, or missing from the catalogs"
         yield Problem(COMMAND_LINE, None, "--gone", None, rule, f"name what is gone; it uses {used}")
-    elif names and not any(_is_named(part, names) for part in parts):
+    elif names and not any(is_named(part, names) for part in parts):
         said = " ".join(names)
         lost = ", ".join(dict.fromkeys(f"{clean(part.part)} is {WHY[part.why]}" for part in parts))
         remedy = f"it uses {used}" + (f"; without --gone, {lost}" if lost else "")
@@ -183,7 +184,8 @@ def _idle(parts: Sequence[Withdrawn], board: Board, names: Sequence[str]) -> Ite
 WHY = {NAMED: "named as gone", OBSOLETE: "obsolete in the catalogs", VANISHED: "no longer in the catalogs"}
 
 
-def _kept_yet_gone(parts: Sequence[Withdrawn], keep: Sequence[str]) -> Iterator[Problem]:
+def kept_yet_gone(parts: Sequence[Withdrawn], keep: Sequence[str]) -> Iterator[Problem]:
+    """Positions that are to be kept although their part is gone."""
     for part in parts:
         if part.use in keep:
             why = f"--gone {clean(part.part)}" if part.why == NAMED else WHY[part.why]

@@ -122,9 +122,12 @@ def test_a_spoilt_board_record_is_named(saved: Path, capsys: Captured) -> None:
 # exposure
 
 
-def test_exposure_names_the_board_and_its_channels(saved: Path, capsys: Captured) -> None:
-    with_cells(saved.parent / "photodiodes.csv", "YZD-01", status="obsolete")
-    assert main(["exposure", str(saved)]) == 1
+def test_exposure_names_the_board_and_its_channels(
+    saved: Path, capsys: Captured, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(saved.parent)
+    with_cells(Path("photodiodes.csv"), "YZD-01", status="obsolete")
+    assert main(["exposure", saved.name]) == 1
     out, err = capsys.readouterr()
     said = squeezed(out)
     assert "6 parts in 1 record" in said
@@ -137,4 +140,59 @@ def test_exposure_names_the_board_and_its_channels(saved: Path, capsys: Captured
 def test_exposure_does_not_write_over_a_board_file(saved: Path, capsys: Captured) -> None:
     path = saved.parent / "board.toml"
     assert main(["exposure", str(saved), "--csv", str(path)]) == 2
+    assert "that file is input of this run" in capsys.readouterr().err
+
+
+# justify
+
+
+@pytest.mark.parametrize("name", ["review.html", "review.md"])
+def test_a_page_is_written(saved: Path, tmp_path: Path, name: str, capsys: Captured) -> None:
+    path = tmp_path / name
+    assert main(["justify", str(saved), "-o", str(path)]) == 0
+    text = path.read_text("utf-8")
+    assert "two gates and a level" in text
+    assert "as plan 1" in text
+    out, err = capsys.readouterr()
+    assert (out, err) == ("", "")
+
+
+def test_a_page_on_another_plan(saved: Path, tmp_path: Path) -> None:
+    path = tmp_path / "review.md"
+    assert main(["justify", str(saved), "--rank", "2", "-o", str(path)]) == 0
+    assert "as plan 2" in path.read_text("utf-8")
+
+
+def test_a_page_that_would_not_be_true_is_not_written(saved: Path, tmp_path: Path, capsys: Captured) -> None:
+    with_cells(saved.parent / "opamps.csv", "YZA-21", voltage_noise="9 nV/rtHz")
+    path = tmp_path / "review.md"
+    path.write_text("old")
+    assert main(["justify", str(saved), "-o", str(path)]) == 2
+    assert "plan 1, gate, snr" in capsys.readouterr().err
+    assert path.read_text() == "old"
+
+
+@pytest.mark.parametrize(
+    ("words", "said"),
+    [
+        (["--rank", "7"], "expected the rank of a plan, from 1 to 2"),
+        (["--compare", "YZA-41"], "a board's record takes no part to compare with"),
+        (["--request", "nowhere.toml"], "nowhere.toml"),
+    ],
+)
+def test_what_a_page_cannot_be_is_refused(
+    saved: Path, tmp_path: Path, words: list[str], said: str, capsys: Captured
+) -> None:
+    assert main(["justify", str(saved), *words, "-o", str(tmp_path / "review.md")]) == 2
+    assert said in capsys.readouterr().err
+    assert not (tmp_path / "review.md").exists()
+
+
+def test_a_page_is_not_written_over_an_input(saved: Path, capsys: Captured) -> None:
+    path = saved.parent / "channels" / "notes.md"
+    gate = saved.parent / "channels" / "gate.toml"
+    gate.rename(path)
+    file = saved.parent / "board.toml"
+    file.write_text(file.read_text("utf-8").replace("channels/gate.toml", "channels/notes.md"), "utf-8")
+    assert main(["justify", str(saved), "-o", str(path)]) == 2
     assert "that file is input of this run" in capsys.readouterr().err

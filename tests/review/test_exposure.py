@@ -12,10 +12,10 @@ from typing import Any
 import numpy as np
 import pytest
 
+from optimizer.catalog import shelf
 from optimizer.catalog.parts import Catalogs
 from optimizer.errors import InputError
 from optimizer.review import exposure as exposures
-from optimizer.review import shelf
 from optimizer.review.exposure import Exposures, exposed, exposure
 from optimizer.review.reopen import chosen_of, reopen
 from optimizer.review.shelf import take_up
@@ -128,7 +128,7 @@ def test_what_serves_counts_only_where_it_serves_every_record() -> None:
 def made_case(*served: Serving, holding: Catalogs | None = None) -> Case:
     held = holding if holding is not None else catalogs()
     part = Fitted("YZA-1", "Maker A", "SOIC-8", "single-8")
-    return Case(part, {"opamp"}, ["x"], [held] * len(served), list(served), 100)
+    return Case(part, {"opamp"}, {"x": []}, [held] * len(served), list(served), 100)
 
 
 def test_each_record_having_its_own_is_still_none_that_serves_all() -> None:

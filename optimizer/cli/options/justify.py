@@ -34,15 +34,16 @@ def declare(command: argparse.ArgumentParser) -> None:
     command.description = (
         "Writes one page that justifies a choice: the decision, every target and its margin, each figure "
         "worked by hand, drawings, alternatives, what each target costs, the supply of each part, "
-        "assumptions, cautions and inputs."
+        "assumptions, cautions and inputs. Of a board's record it justifies a plan: channels, bill of "
+        "materials, totals, what is proven, other plans."
     )
     add = command.add_argument
-    add("record", metavar="RECORD", help="a record, as shortlist --save writes it")
+    add("record", metavar="RECORD", help="a record, as shortlist --save or board --save writes it")
     add("-o", "--output", required=True, metavar="FILE", help="the page: FILE.html, or FILE.md")
-    add("--rank", metavar="N", help="the row to justify (the record's chosen one)")
+    add("--rank", metavar="N", help="the row or plan to justify (the record's chosen one)")
     compare = "a part or family to answer for: why not this one (may be repeated)"
     add("--compare", action="append", default=[], metavar="PART", help=compare)
-    add("--request", metavar="FILE", help="where the record's request is, if it has moved")
+    add("--request", metavar="FILE", help="where the record's request or board file is, if moved")
 
 
 def justify_options(parsed: argparse.Namespace) -> tuple[JustifyOptions, list[Problem]]:

@@ -107,12 +107,13 @@ class Section:
 
 @dataclass(frozen=True, slots=True)
 class Page:
-    """The whole: what it is about, its title block, and its sections in order."""
+    """The whole: its title block, and its sections in order. `about`: a receiver or a board."""
 
     title: str
     subtitle: str
     facts: tuple[tuple[str, str], ...]
     sections: tuple[Section, ...] = field(default=())
+    about: str = "Receiver"
 
 
 def cells(*texts: str) -> tuple[Cell, ...]:

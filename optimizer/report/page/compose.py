@@ -38,7 +38,7 @@ def compose(dossier: Dossier) -> Page:
     facts = (
         ("row", f"{row['rank']} of {len(data['candidates'])}"),
         ("build", f"{count(dossier.request['quantity'])} receivers"),
-        ("record made", _moment(data["created"])),
+        ("record made", moment(data["created"])),
         ("luxsift", clean(data["version"])),
     )
     return Page(
@@ -49,7 +49,7 @@ def compose(dossier: Dossier) -> Page:
     )
 
 
-def _moment(created: str) -> str:
+def moment(created: str) -> str:
     """A time stamp as people write it, in UTC; as it stands where it is none."""
     try:
         moment = datetime.fromisoformat(created)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from shlex import quote
 from typing import Any
 
@@ -19,17 +19,18 @@ from optimizer.vocabulary import COLUMNS
 def limits(dossier: Dossier) -> Section:
     """The section on assumptions, on what the model leaves out, and on cautions."""
     request = dossier.request
-    texts = [text for text in (_sentence(SOURCES), band(request)) if text]
+    texts = [text for text in (sentenced(SOURCES), band(request)) if text]
     duties = Table("Who decides, by where the receiver is used", ("used", "standard"), _duties())
     parts = (
-        Part("Assumed where the catalog leaves a blank", tuple(_assumed(dossier.candidate, request))),
-        Part("Not in the model", (Words(_sentence(left_out(request).removeprefix("Not in the model: "))),)),
+        Part("Assumed where the catalog leaves a blank", tuple(assumed_blocks(dossier.candidate, request))),
+        Part("Not in the model", (Words(sentenced(left_out(request).removeprefix("Not in the model: "))),)),
         Part("Cautions", (Words(" ".join(texts), "caution", "Light"), duties, Words(DEFER))),
     )
     return Section("limits", "Assumptions, limits and cautions", (), parts)
 
 
-def _sentence(text: str) -> str:
+def sentenced(text: str) -> str:
+    """`text` with a capital at its beginning."""
     return text[0].upper() + text[1:]
 
 
@@ -37,7 +38,13 @@ def _duties() -> tuple[Any, ...]:
     return tuple(cells(*pair) for pair in DUTIES)
 
 
-def _assumed(row: Mapping[str, Any], request: Mapping[str, Any]) -> Iterator[Block]:
+def has_assumed(row: Mapping[str, Any]) -> bool:
+    """Whether a candidate's figures use values that no catalog states, or a model that may not hold."""
+    return bool(row["assumed"] or row.get("linear_model"))
+
+
+def assumed_blocks(row: Mapping[str, Any], request: Mapping[str, Any]) -> Iterator[Block]:
+    """What a candidate's figures use that no catalog states."""
     names = row["assumed"]
     if names:
         rows = tuple(
@@ -65,16 +72,22 @@ def sources(dossier: Dossier) -> Section:
     """The section on the inputs and on how to repeat the whole."""
     again = Part("To repeat it", (Words("Typed in the same folder:"), Code(tuple(_commands(dossier)))))
     searched = Part("What the search covered", (Words(coverage(dossier.data)),))
-    return Section("sources", "Inputs and how to repeat it", (_inputs(dossier),), (again, searched))
+    return Section(
+        "sources",
+        "Inputs and how to repeat it",
+        (inputs_table(dossier.data, dossier.changed),),
+        (again, searched),
+    )
 
 
-def _inputs(dossier: Dossier) -> Table:
-    changed = {change.file: change for change in dossier.changed}
+def inputs_table(data: Mapping[str, Any], changes: Sequence[Changed]) -> Table:
+    """Every input file with its hash, and whether it is what it was."""
+    changed = {change.file: change for change in changes}
     rows = [
         cells(clean(entry["file"]), _rows(entry), entry["sha256"], _state(changed.get(entry["file"])))
-        for entry in dossier.data["inputs"]
+        for entry in data["inputs"]
     ]
-    known = {entry["file"] for entry in dossier.data["inputs"]}
+    known = {entry["file"] for entry in data["inputs"]}
     rows += [cells(clean(file), "-", "-", "new since") for file in changed if file not in known]
     headings = ("file", "rows", "SHA-256 when the record was made", "now")
     return Table("The files that the search read", headings, tuple(rows), numbers=frozenset({1}))
@@ -96,12 +109,12 @@ def _commands(dossier: Dossier) -> Iterator[str]:
     if "replaces" not in dossier.data:  # else the record of luxsift replace, which does not name its own
         yield printable(f"{search} --save {quote(place.record)}")
     rank = dossier.candidate["rank"]
-    compare = "".join(f" {_option('--compare', one.name)}" for one in dossier.findings.compared)
-    output = _option("-o", place.output)
+    compare = "".join(f" {option('--compare', one.name)}" for one in dossier.findings.compared)
+    output = option("-o", place.output)
     yield printable(f"luxsift justify {quote(place.record)} --rank {rank}{compare} {output}")
 
 
-def _option(name: str, value: str) -> str:
+def option(name: str, value: str) -> str:
     """An option with its value, which may begin with a dash."""
     joint = "=" if value.startswith("-") else " "
     return f"{name}{joint}{quote(value)}"

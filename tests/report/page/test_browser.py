@@ -13,9 +13,15 @@ from pathlib import Path
 import pytest
 from playwright.sync_api import Browser, Page, ViewportSize, sync_playwright
 
+from optimizer.record import read_board
 from optimizer.report.page import compose, to_html
-from optimizer.review.dossier import Dossier
+from optimizer.report.page.blocks import Page as Composed
+from optimizer.report.page.board import compose_board
+from optimizer.review.board import reopen_board
+from optimizer.review.board_dossier import gather_board
+from optimizer.review.dossier import Dossier, Place
 from tests.report.page.made import LONG, case
+from tests.review.made_board import saved_board
 
 pytestmark = pytest.mark.browser
 
@@ -62,13 +68,21 @@ def files(
     folder = tmp_path_factory.mktemp("pages")
     names = {"photodiode": LONG, "opamp": LONG[:-1]}
     endless = case(folder / "endless", names=names).weighed(tuple(names.values()))
-    pages = {"plain": dossier, "full": full, "hostile": hostile, "endless": endless}
+    pages = {"plain": compose(dossier), "full": compose(full), "hostile": compose(hostile)}
+    pages |= {"endless": compose(endless), "board": board_page(folder / "board")}
     for name, each in pages.items():
-        (folder / f"{name}.html").write_text(to_html(compose(each)), "utf-8")
+        (folder / f"{name}.html").write_text(to_html(each), "utf-8")
     return {name: folder / f"{name}.html" for name in pages}
 
 
-CASES = pytest.mark.parametrize("name", ["plain", "full", "hostile", "endless"])
+def board_page(folder: Path) -> Composed:
+    """The page on a board's plan."""
+    path = saved_board(folder)
+    opened = reopen_board(read_board(path), path)
+    return compose_board(gather_board(opened, Place(path.name, "board.toml", "review.html")))
+
+
+CASES = pytest.mark.parametrize("name", ["plain", "full", "hostile", "endless", "board"])
 
 
 @CASES
