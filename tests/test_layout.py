@@ -47,8 +47,8 @@ ROOMS: dict[str, set[str]] = {
     },
     "record": {"planning", "search", "study", "request", "catalog", "quantities", "vocabulary"},
     "review": {
-        "planning", "search", "board", "study", "record", "request", "figures", "margins", "catalog", "quantities",
-        "vocabulary",
+        "planning", "search", "board", "study", "record", "request", "figures", "margins", "catalog",
+        "quantities", "vocabulary",
     },
     "report": {"planning", "review", "record", "search", "catalog", "quantities", "vocabulary"},
     "cli": {"planning", "record", "review", "report", "search", "study", "request", "catalog", "toml"},

@@ -10,24 +10,23 @@ from collections import Counter
 from collections.abc import Iterator, Mapping
 from fractions import Fraction
 
-from optimizer.catalog.parts import Catalogs, Parts
+from optimizer.catalog.parts import Parts
+from optimizer.planning.counted import amplifier_of, recounted, row_of
 from optimizer.planning.outline import Outline, Wanted
-from optimizer.planning.plan import BoardPlan, Build, Level, LineItem
+from optimizer.planning.plan import BoardPlan, Build, Level
 from optimizer.planning.told import UnsoundBoardError
-from optimizer.vocabulary import NAMES
 
 Item = tuple[str, str, str, float | None]
 """Role, maker, part or family, value."""
 
-ROLES = {"photodiode": "photodiodes", "opamp": "opamps", "resistor": "resistors", "capacitor": "capacitors"}
-
 
 def audited(outline: Outline, plan: BoardPlan) -> None:
     """Raises UnsoundBoardError with everything that is wrong with `plan`."""
-    faults = [*_channels(outline, plan), *_places(plan), *_sources(outline, plan)]
+    faults = [*_channels(outline, plan), *_places(plan)]
+    # who serves whom is looked into only where everybody is there
+    if not faults:
+        faults = [*_sources(outline, plan), *_amplifiers(outline, plan), *recounted(outline, plan)]
     faults += [*_pieces(outline, plan), *_money(outline, plan)]
-    over = [total.name for total in plan.totals if total.margin is not None and total.margin < -1e-8]
-    faults += [f"{name} is over its limit" for name in over]
     if faults:
         raise UnsoundBoardError("; ".join(faults))
 
@@ -41,6 +40,10 @@ def _channels(outline: Outline, plan: BoardPlan) -> Iterator[str]:
     for build in plan.builds:
         if any(target.margin < 0.0 for target in build.candidate.targets):
             yield f"{build.channel} misses a target"
+    for level in plan.levels:
+        users = {build.channel for build in plan.builds if build.level == level.name}
+        if not users or users != set(level.channels):
+            yield f"{level.name} serves {', '.join(sorted(users)) or 'no channel'}"
 
 
 def _places(plan: BoardPlan) -> Iterator[str]:
@@ -73,6 +76,24 @@ def _sources(outline: Outline, plan: BoardPlan) -> Iterator[str]:
         makers = {maker for maker, _ in set.intersection(*others)} | {package.maker}
         if len(makers) < least:
             yield f"no op-amp of another maker serves all that {package.opamp} serves in one package"
+
+
+def _amplifiers(outline: Outline, plan: BoardPlan) -> Iterator[str]:
+    """Every package holds what its part does, and is of the amplifier that its copies were graded with."""
+    builds = {(build.channel, copy): build for build in plan.builds for copy in build.copies}
+    for package in plan.packages:
+        family, amplifiers = amplifier_of(outline, package.opamp, package.maker)
+        if amplifiers != package.amplifiers:
+            yield f"{package.opamp} holds {amplifiers} amplifiers, not {package.amplifiers}"
+        for place in package.places:
+            if place.channel is None:
+                continue
+            one = builds[place.channel, place.copy].candidate
+            if (family, package.maker) != (
+                amplifier_of(outline, one.opamp, one.opamp_maker)[0],
+                one.opamp_maker,
+            ):
+                yield f"{place.channel} was graded with {one.opamp}, not with {package.opamp}"
 
 
 def makers_of(outline: Outline, channel: Wanted) -> int:
@@ -134,7 +155,7 @@ def _money(outline: Outline, plan: BoardPlan) -> Iterator[str]:
     cents = Fraction(0)
     for line in plan.bill:
         need = line.pieces * outline.quantity
-        least = _cheapest(_row(outline, line), need)
+        least = _cheapest(row_of(outline, line.role, line.part, line.maker), need)
         if line.buy < need or least is None or least != round(line.cost * 100):
             yield f"{line.part} is not bought as the catalog sells it"
         cents += least or 0
@@ -147,17 +168,6 @@ def _money(outline: Outline, plan: BoardPlan) -> Iterator[str]:
 
 def _half_up(value: Fraction) -> int:
     return int(value + Fraction(1, 2))
-
-
-def _row(outline: Outline, line: LineItem) -> tuple[Parts, int]:
-    """The catalog row of a line of the bill."""
-    for channel in outline.channels:
-        catalogs: Catalogs = channel.study.catalogs
-        parts: Parts = getattr(catalogs, ROLES[line.role])
-        for row in range(parts.size):
-            if (parts.text[NAMES[parts.role]][row], parts.text["maker"][row]) == (line.part, line.maker):
-                return parts, row
-    raise UnsoundBoardError(f"no catalog holds {line.part}")
 
 
 def _cheapest(where: tuple[Parts, int], need: int) -> int | None:

@@ -16,12 +16,11 @@ from collections.abc import Callable, Sequence
 import numpy as np
 from numpy.typing import NDArray
 
-from optimizer import margins
 from optimizer.board.bound import Pace, climb, layout
 from optimizer.board.heuristic import Best, Effort, look
 from optimizer.board.supplies import PLAIN, Weights
-from optimizer.figures import evaluate
 from optimizer.planning.columns import Assembled, Field, Pool, assembled, without_limits
+from optimizer.planning.fit import packaged, usable
 from optimizer.planning.kinds import NONE, affordable
 from optimizer.planning.reach import Reach, everything, left_by
 from optimizer.planning.tariff import Known, Tariff, Universe, priced
@@ -31,7 +30,7 @@ from optimizer.search.collect import collect
 from optimizer.search.crew import Found
 from optimizer.search.hunt import Rules
 from optimizer.search.query import Query, ask_pairs
-from optimizer.search.space import Choice, settings
+from optimizer.search.space import Choice
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -113,10 +112,12 @@ class Gathering:
     def _begin(self) -> None:
         kinds = self.field.kinds
         for i, kind in enumerate(kinds):
-            able = affordable(self.asked[i], self.field.amplifiers.rows[i], kind.space.limits.get("cost"))
-            rows = np.zeros(able.shape[0], dtype=bool)
-            rows[self.field.amplifiers.rows[i]] = True
-            self.reach.append(everything(self.field, i, able & rows[:, None]))
+            group, rows = self.field.amplifiers.group[i], self.field.amplifiers.rows[i]
+            able = affordable(self.asked[i], np.flatnonzero(group != NONE), kind.space.limits.get("cost"))
+            pairs = np.zeros_like(able)
+            for row in rows:  # one package stands for all of its group
+                pairs[row] = able[group == group[row]].any(axis=0)
+            self.reach.append(everything(self.field, i, pairs))
             self.first_pairs[i] = int(self.reach[i].pairs.sum())
         self._seen(PLAIN, FIRST)
 
@@ -171,6 +172,7 @@ class Gathering:
 
     def _take(self, i: int, choice: Choice, margin: Floats) -> int:
         """Into the pool with those that the board may use; returns how many were not there."""
+        choice = packaged(self.field, i, choice)
         fit = usable(self.field, i, choice)
         return self.pools[i].add(choice.take(fit), margin[fit])
 
@@ -233,7 +235,9 @@ class Gathering:
         """More candidates with the active parts of `pairs`, the cheapest at the last prices; how many."""
         if not self.prices:
             return 0
-        found = collect(self.prices[i], pairs, math.inf, most)
+        group, rows = self.field.amplifiers.group[i], self.field.amplifiers.rows[i]
+        standing = rows[np.argmax(group[pairs[0]][:, None] == group[rows], axis=1)]
+        found = collect(self.prices[i], (standing, pairs[1]), math.inf, most)
         return self._take(i, found.choice, found.margin)
 
 
@@ -241,27 +245,3 @@ def held_in(boxes: Boxes) -> int:
     """How many settings lie in `boxes`."""
     widths = boxes.rows[:, 3::2] - boxes.rows[:, 2::2]
     return int(np.prod(widths.astype(object), axis=1).sum()) if len(boxes) else 0
-
-
-def usable(of: Field, i: int, choice: Choice) -> Bools:
-    """Which settings keep the cost target of their request, as receivers by themselves, and have op-amps
-
-    that the board may use, and areas that are known where they are limited.
-    """
-    kind = of.kinds[i]
-    fit = of.amplifiers.group[i][choice.opamp] != NONE
-    limit = kind.space.limits.get("cost")
-    if limit is not None and choice.opamp.size:
-        with np.errstate(all="ignore"):
-            cost = evaluate(kind.space.bench, settings(kind.space, choice)).figures["cost"]
-        fit &= margins.margin("cost", cost, limit) >= 0.0
-    if of.outline.limits.area is not None:
-        known = np.array([part.entry.area is not None for part in of.shelf.parts] + [True])
-        columns = (
-            kind.diode_part[choice.diode],
-            kind.resistor_part[choice.resistor],
-            kind.capacitor_part[choice.capacitor],
-            *kind.divider[choice.context].T,
-        )
-        fit &= np.all([known[column] for column in columns], axis=0)
-    return np.asarray(fit)

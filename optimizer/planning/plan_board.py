@@ -14,7 +14,7 @@ from optimizer.planning.amplifiers import amplifiers_of
 from optimizer.planning.audit import audited
 from optimizer.planning.columns import Field, assembled
 from optimizer.planning.gather import Gathering
-from optimizer.planning.kinds import Kind, asked_of, kinds_of
+from optimizer.planning.kinds import Kind, asked_of, kinds_of, names_of
 from optimizer.planning.lone import cheapest_alone, hopeless, together
 from optimizer.planning.outline import Outline
 from optimizer.planning.plan import Alone, BoardPlan, Planned, Pool, Refusal, Stage
@@ -31,8 +31,11 @@ GATHER = 0.4
 EXPLAIN = 5.0
 """Seconds that the explanation of a refusal gets at least."""
 SEVERAL_RAILS = (
-    "channels run from different supplies: op-amps on one supply are planned apart from those on another, "
-    "so a part number that both could share may be missed"
+    "channels run from different supplies, and op-amps on one are planned apart from those on another: what "
+    "they save by sharing a part number is counted, but not sought, so nothing is proven"
+)
+UNKNOWN = (
+    "the limits cannot be checked for {}: no receiver was found of whose parts all is known that they need"
 )
 STATUS = {PROVEN: plan.OPTIMAL, INFEASIBLE: plan.INFEASIBLE}
 
@@ -57,6 +60,7 @@ class _Planning:
         self.sound = 0
         self.interrupted = False
         self.alone: Alone | None = None
+        self.apart = False
 
     def planned(self) -> Planned:
         shelf = Shelf()
@@ -64,6 +68,7 @@ class _Planning:
         if shelf.problems:
             raise InputError(shelf.problems)
         field = Field(self.outline, kinds, shelf, amplifiers_of(kinds, shelf, _limited(self.outline)))
+        self.apart = _apart(field)
         interrupted = False
         try:
             self._tell("each channel alone", math.inf, 0.0)
@@ -72,13 +77,20 @@ class _Planning:
             if lost:
                 return self._hopeless(field, lost)
             gathered = self._gathering(field, alone)
+            if not all(pool.held for pool in gathered.pools):
+                return self._unknown(gathered)
             interrupted = not _finished(gathered.run)
             solved = Solving(gathered, self.until if not interrupted else time.monotonic()).solved()
         except KeyboardInterrupt:
             return self._ended(plan.INTERRUPTED)
-        plans = tuple(self._told(gathered, solved))
+        plans = _distinct(self._told(gathered, solved))
         self.interrupted = interrupted or solved.solution.interrupted
-        return self._answer(gathered, solved, plans) if plans else self._refused(gathered, solved)
+        if plans:
+            return self._answer(gathered, solved, plans)
+        try:
+            return self._refused(gathered, solved)
+        except KeyboardInterrupt:
+            return self._ended(plan.INTERRUPTED)
 
     def _tell(self, doing: str, cost: float, floor: float) -> None:
         if self.progress is not None:
@@ -100,13 +112,14 @@ class _Planning:
         for chosen in solved.chosen:
             rank = 1 + self.sound
             try:
-                one = told(chosen, rank, _scope(gathered, solved, chosen))
+                one = told(chosen, rank, plan.UNPROVEN if self.apart else _scope(gathered, solved, chosen))
                 audited(self.outline, one)
             except UnsoundBoardError as fault:
                 self.faults.append(f"a plan did not stand the check: {fault}")
                 continue
-            if one.cost != chosen.plan.totals.cost:
-                one = replace(one, proven=plan.UNPROVEN, bound=min(one.cost, int(gathered.floor)))
+            if self.apart or one.cost != chosen.plan.totals.cost:
+                least = 0 if self.apart else min(one.cost, int(gathered.floor))
+                one = replace(one, proven=plan.UNPROVEN, bound=least)
             self.sound += 1
             yield one
 
@@ -122,8 +135,8 @@ class _Planning:
             pools=tuple(_pools(gathered)),
             solver=solved.solution.solver,
             rounds=gathered.rounds,
-            floor=min(math.ceil(gathered.floor), plans[0].cost),
-            only=solved.solution.complete and len(plans) < self.outline.solve.plans,
+            floor=None if self.apart else min(math.ceil(gathered.floor), plans[0].cost),
+            only=not self.apart and solved.solution.complete and len(plans) < self.outline.solve.plans,
             faults=(*solved.solution.faults, *self.faults),
             alone=self.alone,
         )
@@ -135,7 +148,8 @@ class _Planning:
         seconds = max(EXPLAIN, self.until - time.monotonic())
         limit = made.board.budgets.cost
         over = limit is not None and gathered.floor > limit
-        proven = over or (solution.status == INFEASIBLE and gathered.complete)
+        proven = not self.apart and (over or (solution.status == INFEASIBLE and gathered.complete))
+        sure = not self.apart and (gathered.complete or not proven)
         status = plan.INFEASIBLE if proven else plan.NOTHING
         if self.interrupted:
             return replace(self._ended(plan.INTERRUPTED), faults=solution.faults)
@@ -145,10 +159,23 @@ class _Planning:
             pools=tuple(_pools(gathered)),
             solver=solution.solver,
             rounds=gathered.rounds,
-            floor=math.ceil(gathered.floor),
+            floor=None if self.apart else math.ceil(gathered.floor),
             faults=(*solution.faults, *self.faults),
-            refusal=refusal(gathered.field, made, seconds, told=gathered.complete or not proven),
+            refusal=refusal(gathered.field, made, seconds, told=sure),
             alone=self.alone,
+        )
+
+    def _unknown(self, gathered: Gathering) -> Planned:
+        """No plan: of no receiver of some channel all is known that the limits need."""
+        empty = [i for i, pool in enumerate(gathered.pools) if not pool.held]
+        proven = any(not gathered.reach[i].pairs.any() for i in empty)
+        names = tuple(names_of([gathered.field.kinds[i] for i in empty]))
+        ended = self._ended(plan.INFEASIBLE if proven else plan.NOTHING)
+        return replace(
+            ended,
+            pools=tuple(_pools(gathered)),
+            notes=(*ended.notes, UNKNOWN.format(", ".join(names))),
+            refusal=Refusal(limits=_limited(self.outline), channels=names),
         )
 
     def _hopeless(self, field: Field, lost: Sequence[Kind]) -> Planned:
@@ -160,8 +187,7 @@ class _Planning:
 
     def _ended(self, status: str) -> Planned:
         """An answer without plans."""
-        supplies = {(c.study.request.supply.high, c.study.request.supply.low) for c in self.outline.channels}
-        notes = (SEVERAL_RAILS,) if len(supplies) > 1 else ()
+        notes = (SEVERAL_RAILS,) if self.apart else ()
         return Planned(status, (), (), "none", time.monotonic() - self.began, notes=notes)
 
 
@@ -172,6 +198,21 @@ def _finished(work: Callable[[], None]) -> bool:
     except KeyboardInterrupt:
         return False
     return True
+
+
+def _distinct(plans: Iterator[BoardPlan]) -> tuple[BoardPlan, ...]:
+    """The cheapest plan of each set of active parts by name, whatever supplies they are on; ranked."""
+    best: dict[frozenset[tuple[str, str, str]], BoardPlan] = {}
+    for one in sorted(plans, key=lambda each: each.cost):
+        active = [line for line in one.bill if line.role in ("photodiode", "opamp")]
+        best.setdefault(frozenset((line.role, line.maker, line.part) for line in active), one)
+    return tuple(replace(one, rank=rank) for rank, one in enumerate(best.values(), 1))
+
+
+def _apart(field: Field) -> bool:
+    """Whether some op-amp may serve on several supplies, and so is planned as several parts."""
+    keys = [field.shelf.parts[part].key[:3] for packages in field.amplifiers.packages for part in packages]
+    return len(set(keys)) < len(keys)
 
 
 def _limited(outline: Outline) -> tuple[str, ...]:

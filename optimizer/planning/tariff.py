@@ -186,8 +186,10 @@ def priced(asked: Query, field: Field, kind: int, tariff: Tariff) -> Query:
     """`asked` of a kind with the prices of `tariff` in place of its own."""
     space, of = asked.space, field.kinds[kind]
     parts, contexts = tariff.parts[kind], space.contexts
-    amplifier = tariff.amplifiers[kind][field.amplifiers.group[kind]]
-    buffer = tariff.buffer[field.amplifiers.group[kind]] / field.copies
+    group = field.amplifiers.group[kind]
+    # an op-amp of no group, -1, takes the last price
+    amplifier = np.append(tariff.amplifiers[kind], UNUSABLE)[group]
+    buffer = np.append(tariff.buffer, UNUSABLE)[group] / field.copies
     pieces = np.where(of.divider != NONE, tariff.divider[of.divider], 0.0)
     # two resistors of one value are counted as one: more of a part never costs less
     pieces[:, 1] *= of.divider[:, 0] != of.divider[:, 1]
