@@ -67,7 +67,7 @@ def test_the_first_two_commands_install_run_and_test() -> None:
     install, check = (block.text.strip() for block in BLOCKS if block.kind == "sh")
     assert "\n" not in install + check
     assert install.endswith(".venv/bin/luxsift shortlist examples/turbidity/request.toml")
-    assert check.endswith(".venv/bin/python -m pytest -n auto")
+    assert check.endswith(".venv/bin/python -m pytest -n auto --dist loadfile")
 
 
 def test_every_block_is_of_a_kind_that_is_acted_on() -> None:

@@ -157,7 +157,7 @@ class _Search:
         if not all(channel.options for channel in self.board.channels):
             self.outcome = runs.INFEASIBLE
         elif self.solver is None:
-            self.faults.append(f"the solver {self.options.solver} is not available here")
+            self.faults.append(solvers.absence(self.options.solver))
         else:
             while len(plans) < self.options.plans and (found := self._next(plans)) is not None:
                 plans.append(found)

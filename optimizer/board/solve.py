@@ -130,7 +130,7 @@ class Solving:
             self.outcome = runs.INFEASIBLE
             return
         if self.solver is None:
-            self.faults.append(f"the solver {self.options.solver} is not available here")
+            self.faults.append(solvers.absence(self.options.solver))
             return
         self._close_in()
         if self.narrow.best.plans and self._left() <= 0:

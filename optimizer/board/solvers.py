@@ -16,12 +16,23 @@ from optimizer.board.runs import Run, Task
 NAMES = ("highs", "cbc")
 """The better one first."""
 
+_REMEDIES = {
+    "highs": "HiGHS comes with the extra 'highs'; CBC needs none",
+    "cbc": "PuLP brings CBC for most machines; HiGHS comes with the extra 'highs'",
+}
+
 _MODULES: Mapping[str, Any] = {"cbc": cbc, "highs": highs}
 
 
 def available(name: str) -> bool:
     """Whether the solver can be started here."""
     return bool(_MODULES[name].available())
+
+
+def absence(name: str) -> str:
+    """What to say, and to do, where the solver `name` cannot be started here."""
+    remedy = _REMEDIES.get(name, _REMEDIES["cbc"])
+    return f"the solver {name} is not available here ({remedy})"
 
 
 def resolved(name: str) -> str | None:

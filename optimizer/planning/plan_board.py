@@ -137,7 +137,7 @@ class _Planning:
             rounds=gathered.rounds,
             floor=None if self.apart else min(math.ceil(gathered.floor), plans[0].cost),
             only=not self.apart and solved.solution.complete and len(plans) < self.outline.solve.plans,
-            faults=(*solved.solution.faults, *self.faults),
+            faults=_each_once(*solved.solution.faults, *self.faults),
             alone=self.alone,
         )
 
@@ -160,7 +160,7 @@ class _Planning:
             solver=solution.solver,
             rounds=gathered.rounds,
             floor=None if self.apart else math.ceil(gathered.floor),
-            faults=(*solution.faults, *self.faults),
+            faults=_each_once(*solution.faults, *self.faults),
             refusal=refusal(gathered.field, made, seconds, told=sure),
             alone=self.alone,
         )
@@ -213,6 +213,10 @@ def _apart(field: Field) -> bool:
     """Whether some op-amp may serve on several supplies, and so is planned as several parts."""
     keys = [field.shelf.parts[part].key[:3] for packages in field.amplifiers.packages for part in packages]
     return len(set(keys)) < len(keys)
+
+
+def _each_once(*words: str) -> tuple[str, ...]:
+    return tuple(dict.fromkeys(words))
 
 
 def _limited(outline: Outline) -> tuple[str, ...]:
