@@ -60,10 +60,10 @@ def _stopped(data: Data) -> str:
     status, limit = data["search"]["status"], f"the time limit of {_seconds(data)}"
     if status == INTERRUPTED:
         return "interrupted"
-    if data["search"]["notes"] and data["search"]["seconds"] < data["board"]["solve"]["time"]:
-        return "for what is noted below"
     if data["search"]["faults"]:
         return f"ended by what is said below, or by {limit}"
+    if data["search"]["notes"] and data["search"]["seconds"] < data["board"]["solve"]["time"]:
+        return "for what is noted below"
     return f"stopped by {limit}"
 
 
