@@ -8,13 +8,13 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from optimizer.cli.answer import File, answered
 from optimizer.cli.board_progress import stages
 from optimizer.cli.left_out import tell_left_out
 from optimizer.cli.options.board import BoardOptions, board_options
-from optimizer.cli.options.shared import STANDARD_OUTPUT
-from optimizer.cli.output import write, write_lines
+from optimizer.cli.output import write
 from optimizer.cli.outputs import input_files, output_problems
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, Problem
 
 if TYPE_CHECKING:
     from optimizer.catalog.parts import LeftOut
@@ -92,13 +92,15 @@ def _answer(outline: Outline, planned: Planned, options: BoardOptions) -> int:
     """Write the files, print the plans, say how it ended; one interrupted without a plan has no files."""
     from optimizer.planning import plan
     from optimizer.record.board import build
+    from optimizer.record.files import to_json
+    from optimizer.report.board import brief, report
 
     record = build(outline, planned)
     interrupted = planned.status == plan.INTERRUPTED
-    failure = None if interrupted and not planned.plans else _save(record, options)
-    _print(record, options)
-    if failure is not None:
-        raise failure
+    files: list[File] = [(options.save, lambda: to_json(record)), (options.csv, lambda: _bill(record))]
+    draw = brief if options.quiet else report
+    asked = [] if interrupted and not planned.plans else files
+    answered(asked, lambda width: draw(record, width), piped=options.piped)
     if interrupted:
         return INTERRUPTED
     return MEETS if planned.plans and _meets(planned.plans[0]) else NO_PLAN
@@ -110,36 +112,8 @@ def _meets(plan: BoardPlan) -> bool:
     return all(total.margin is not None and total.margin >= 0 for total in limited)
 
 
-def _save(record: BoardRecord, options: BoardOptions) -> OutputError | None:
-    """Write the files that are asked for; the error comes back, so that the plan is still printed."""
-    from optimizer import record as records
-    from optimizer.record.files import to_json
-
-    try:
-        if options.save == STANDARD_OUTPUT:
-            write(sys.stdout, to_json(record))
-        elif options.save is not None:
-            records.write(record, options.save)
-        if options.csv == STANDARD_OUTPUT:
-            write(sys.stdout, _bill(record))
-        elif options.csv is not None:
-            records.write_text(options.csv, _bill(record))
-    except OutputError as error:
-        return error
-    return None
-
-
 def _bill(record: BoardRecord) -> str:
     """The bill of materials of the chosen plan as CSV; its headings alone where there is none."""
     from optimizer.report.board.bill_csv import text
 
     return text(record.chosen or {"bill": []}, record.data)
-
-
-def _print(record: BoardRecord, options: BoardOptions) -> None:
-    from optimizer.report.board import brief, report
-    from optimizer.report.terminal import width_of
-
-    stream = sys.stderr if options.piped else sys.stdout
-    draw = brief if options.quiet else report
-    write_lines(stream, draw(record, width_of(stream)))

@@ -11,8 +11,6 @@ from typing import TYPE_CHECKING
 if TYPE_CHECKING:
     from optimizer.planning.plan import Stage
 
-CENTS = 100
-
 
 @contextmanager
 def stages(quantity: int, *, quiet: bool) -> Iterator[Callable[[Stage], None]]:
@@ -56,6 +54,6 @@ def _reached(stage: Stage, quantity: int) -> str:
 
 def _each(cents: int, quantity: int) -> str:
     """Cents a build as money a board."""
-    from optimizer.report.board.amounts import money
+    from optimizer.report.board.amounts import CENTS, money
 
     return money(cents / CENTS / quantity)

@@ -3,18 +3,16 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from optimizer.cli.answer import answered
 from optimizer.cli.options.shared import STANDARD_OUTPUT
-from optimizer.cli.output import write, write_lines
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.steps import steps
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, Problem
 
 if TYPE_CHECKING:
-    from optimizer.review.exposure import Exposures
     from optimizer.review.shelf import Taken
 
 SAFE, EXPOSED = 0, 1
@@ -23,14 +21,15 @@ SAFE, EXPOSED = 0, 1
 def exposure(parsed: argparse.Namespace) -> int:
     """Print what hangs on each part of the records; raises InputError and OutputError."""
     taken = _taken(parsed)
+    from optimizer.report.exposure import exposure_csv, exposure_lines
     from optimizer.review.exposure import exposure as looked_at
 
     with steps("records", total=len(taken)) as step:
         found = looked_at(taken, step)
-    failure = _save(found, parsed.csv)
-    _print(found, len({one.name for one in taken}), parsed.csv)
-    if failure is not None:
-        raise failure
+    records = len({one.name for one in taken})
+    written = [(parsed.csv, lambda: exposure_csv(found))]
+    piped = parsed.csv == STANDARD_OUTPUT
+    answered(written, lambda width: exposure_lines(found, records, width), piped=piped)
     return EXPOSED if any(one.alone or one.lost for one in found.parts) else SAFE
 
 
@@ -53,26 +52,3 @@ def _taken(parsed: argparse.Namespace) -> list[Taken]:
     if problems:
         raise InputError(problems)
     return taken
-
-
-def _save(found: Exposures, csv: str | None) -> OutputError | None:
-    """Write the CSV that is asked for; the error comes back, so that the table is still printed."""
-    from optimizer.record import write_text
-    from optimizer.report.exposure import exposure_csv
-
-    try:
-        if csv == STANDARD_OUTPUT:
-            write(sys.stdout, exposure_csv(found))
-        elif csv is not None:
-            write_text(csv, exposure_csv(found))
-    except OutputError as error:
-        return error
-    return None
-
-
-def _print(found: Exposures, records: int, csv: str | None) -> None:
-    from optimizer.report.exposure import exposure_lines
-    from optimizer.report.terminal import width_of
-
-    stream = sys.stderr if csv == STANDARD_OUTPUT else sys.stdout
-    write_lines(stream, exposure_lines(found, records, width_of(stream)))

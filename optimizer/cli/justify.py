@@ -3,16 +3,15 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from pathlib import Path
 
+from optimizer.cli.answer import tell_changed
 from optimizer.cli.justify_board import justify_board
 from optimizer.cli.options.justify import justify_options
-from optimizer.cli.output import write
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.reopened import reopened
 from optimizer.cli.steps import steps
-from optimizer.errors import InputError, Problem, clean
+from optimizer.errors import InputError, Problem
 
 DONE = 0
 
@@ -43,8 +42,7 @@ def justify(parsed: argparse.Namespace) -> int:
         dossier = weigh(dossier, options.compare, tell)
     composed = page.compose(dossier)
     write_text(options.output, page.to_markdown(composed) if options.markdown else page.to_html(composed))
-    for change in found.changed:
-        write(sys.stderr, f"luxsift: {clean(change.file)} is not what it was when the record was made\n")
+    tell_changed(found.changed)
     return DONE
 
 

@@ -2,14 +2,12 @@
 
 from __future__ import annotations
 
-import sys
-
+from optimizer.cli.answer import tell_changed
 from optimizer.cli.options.justify import JustifyOptions
 from optimizer.cli.options.shared import COMMAND_LINE
-from optimizer.cli.output import write
 from optimizer.cli.replace_board import opened_for
 from optimizer.cli.steps import steps
-from optimizer.errors import Problem, clean
+from optimizer.errors import Problem
 
 DONE = 0
 
@@ -30,8 +28,7 @@ def justify_board(options: JustifyOptions) -> int:
         dossier = gather_board(opened, place, options.rank, tell)
     composed = compose_board(dossier)
     write_text(options.output, page.to_markdown(composed) if options.markdown else page.to_html(composed))
-    for change in opened.changed:
-        write(sys.stderr, f"luxsift: {clean(change.file)} is not what it was when the record was made\n")
+    tell_changed(opened.changed)
     return DONE
 
 

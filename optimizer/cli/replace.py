@@ -3,23 +3,20 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from optimizer.cli.answer import answered
 from optimizer.cli.messages import StudyError
 from optimizer.cli.options.replace import ReplaceOptions, replace_options
-from optimizer.cli.output import write, write_lines
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.reopened import reopened
 from optimizer.cli.replace_board import replace_board
 from optimizer.cli.steps import steps
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, Problem
 
 if TYPE_CHECKING:
-    from optimizer.record import Record
     from optimizer.review.reopen import Reopened
-    from optimizer.review.replacement import Replacement
 
 MEETS, NOTHING_MEETS = 0, 1
 
@@ -32,6 +29,8 @@ def replace(parsed: argparse.Namespace) -> int:
     if says_board(options.record):
         return replace_board(options, problems)
     found = _reopened(options, problems)
+    from optimizer.record.files import to_json
+    from optimizer.report.replacement import replacement_lines
     from optimizer.review.reopen import chosen_of
     from optimizer.review.replacement import record_of, replacement
     from optimizer.review.withdrawal import Wish
@@ -40,10 +39,8 @@ def replace(parsed: argparse.Namespace) -> int:
     with steps("kinds of change", total=4) as step:
         answer = replacement(found, old, Wish(options.gone, options.keep), show=options.show, tell=step)
     record = record_of(answer)
-    failure = _save(record, options)
-    _print(answer, record, options)
-    if failure is not None:
-        raise failure
+    saved = [(options.save, lambda: to_json(record))]
+    answered(saved, lambda width: replacement_lines(answer, record, width), piped=options.piped)
     return MEETS if record.candidates else NOTHING_MEETS
 
 
@@ -63,26 +60,3 @@ def _reopened(options: ReplaceOptions, problems: list[Problem]) -> Reopened:
     if problems or found is None:
         raise InputError(problems)
     return found
-
-
-def _save(record: Record, options: ReplaceOptions) -> OutputError | None:
-    """Write the record where it is asked for; the error comes back, so that the answer is still printed."""
-    from optimizer import record as records
-    from optimizer.record.files import to_json
-
-    try:
-        if options.piped:
-            write(sys.stdout, to_json(record))
-        elif options.save is not None:
-            records.write(record, options.save)
-    except OutputError as error:
-        return error
-    return None
-
-
-def _print(answer: Replacement, record: Record, options: ReplaceOptions) -> None:
-    from optimizer.report.replacement import replacement_lines
-    from optimizer.report.terminal import width_of
-
-    stream = sys.stderr if options.piped else sys.stdout
-    write_lines(stream, replacement_lines(answer, record, width_of(stream)))

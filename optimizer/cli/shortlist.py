@@ -8,17 +8,17 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from optimizer.cli.answer import File, answered, shown
 from optimizer.cli.left_out import tell_left_out
 from optimizer.cli.messages import StudyError, where_from
-from optimizer.cli.options.shared import COMMAND_LINE, STANDARD_OUTPUT
+from optimizer.cli.options.shared import COMMAND_LINE
 from optimizer.cli.options.shortlist import ShortlistOptions, shortlist_options
-from optimizer.cli.output import write, write_lines
+from optimizer.cli.output import write
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.progress import watch
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, Problem
 
 if TYPE_CHECKING:
-    from optimizer.record import Record
     from optimizer.search.result import Outcome, Progress
     from optimizer.study import Study
 
@@ -87,53 +87,24 @@ def _choice_problems(study: Study, options: ShortlistOptions) -> list[Problem]:
 
 def _answer(study: Study, outcome: Outcome, options: ShortlistOptions) -> int:
     from optimizer import record as records
-
-    shown = len(outcome.candidates)
-    beyond = shown and options.choose > shown
-    record = records.build(study, outcome, None if beyond else options.choose)
-    if beyond:
-        _print(record, options)
-        raise InputError([records.choice_problem(options.choose, shown)])
-    failure = _save(record, options)
-    _print(record, options)
-    if failure is not None:
-        raise failure
-    return MEETS if shown else NOTHING_MEETS
-
-
-def _save(record: Record, options: ShortlistOptions) -> OutputError | None:
-    """Write the files that are asked for; the error comes back, so that the table is still printed."""
-    from optimizer import record as records
     from optimizer.record.files import to_json
-    from optimizer.report.csv_file import csv_text, write_csv
-
-    try:
-        if options.save == STANDARD_OUTPUT:
-            write(sys.stdout, to_json(record))
-        elif options.save is not None:
-            records.write(record, options.save)
-        if options.csv == STANDARD_OUTPUT:
-            write(sys.stdout, csv_text(record))
-        elif options.csv is not None:
-            write_csv(record, options.csv)
-    except OutputError as error:
-        return error
-    return None
-
-
-def _print(record: Record, options: ShortlistOptions) -> None:
     from optimizer.report import report, table_only
-    from optimizer.report.terminal import width_of
+    from optimizer.report.csv_file import csv_text
 
-    stream = sys.stderr if options.piped else sys.stdout
+    rows = len(outcome.candidates)
+    beyond = rows and options.choose > rows
+    record = records.build(study, outcome, None if beyond else options.choose)
+    files: list[File] = [(options.save, lambda: to_json(record)), (options.csv, lambda: csv_text(record))]
     draw = table_only if options.quiet else report
-    write_lines(stream, draw(record, width_of(stream)))
+    answered([] if beyond else files, lambda width: draw(record, width), piped=options.piped)
+    if beyond:
+        raise InputError([records.choice_problem(options.choose, rows)])
+    return MEETS if rows else NOTHING_MEETS
 
 
 def _tell_interrupted(study: Study, outcome: Outcome, last: Progress | None, workers: int) -> None:
     from optimizer.record import build
     from optimizer.report.interrupted import interrupted
-    from optimizer.report.terminal import width_of
 
     record = build(study, outcome, None)
-    write_lines(sys.stderr, interrupted(record, last, width_of(sys.stderr), workers=workers))
+    shown(lambda width: interrupted(record, last, width, workers=workers), piped=True)

@@ -3,19 +3,20 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from optimizer.cli.answer import answered
 from optimizer.cli.messages import StudyError
 from optimizer.cli.options.shared import COMMAND_LINE, STANDARD_OUTPUT
 from optimizer.cli.options.tradeoff import TradeoffOptions, tradeoff_options
-from optimizer.cli.output import write, write_lines
 from optimizer.cli.outputs import input_files, output_problems
 from optimizer.cli.progress import watch
-from optimizer.errors import InputError, OutputError, Problem
+from optimizer.errors import InputError, Problem
 
 if TYPE_CHECKING:
+    from rich.text import Text
+
     from optimizer.search.weigh.front import Front
     from optimizer.search.weigh.tradeoff import Tradeoff
     from optimizer.study import Study
@@ -30,10 +31,10 @@ def tradeoff(parsed: argparse.Namespace) -> int:
     what = "sets of limits" if options.against is None else "points"
     with watch(quiet=False, what=what) as watcher:
         found = _asked(study, options, watcher)
-    failure = _save(found, options.csv)
-    _print(found, _about(study, found), options)
-    if failure is not None:
-        raise failure
+    about = _about(study, found)
+    written = [(options.csv, lambda: _csv(found))]
+    piped = options.csv == STANDARD_OUTPUT
+    answered(written, lambda width: _drawn(found, about, width), piped=piped)
     return MEETS if _meets(found) else NOTHING_MEETS
 
 
@@ -86,34 +87,18 @@ def _about(study: Study, found: Tradeoff | Front) -> dict[str, Any]:
     return dict(build(study, outcome, None).data)
 
 
-def _save(found: Tradeoff | Front, csv: str | None) -> OutputError | None:
-    """Write the CSV that is asked for; the error comes back, so that the table is still printed."""
-    if csv is None:
-        return None
-    from optimizer.record import write_text
+def _csv(found: Tradeoff | Front) -> str:
     from optimizer.report.tradeoff_csv import front_csv, tradeoff_csv
     from optimizer.search.weigh.front import Front
 
-    text = front_csv(found) if isinstance(found, Front) else tradeoff_csv(found)
-    try:
-        if csv == STANDARD_OUTPUT:
-            write(sys.stdout, text)
-        else:
-            write_text(csv, text)
-    except OutputError as error:
-        return error
-    return None
+    return front_csv(found) if isinstance(found, Front) else tradeoff_csv(found)
 
 
-def _print(found: Tradeoff | Front, about: dict[str, Any], options: TradeoffOptions) -> None:
+def _drawn(found: Tradeoff | Front, about: dict[str, Any], width: int) -> list[Text]:
     from optimizer.report.front import front_lines
-    from optimizer.report.terminal import width_of
     from optimizer.report.tradeoff import tradeoff_lines
     from optimizer.search.weigh.front import Front
 
-    stream = sys.stderr if options.csv == STANDARD_OUTPUT else sys.stdout
-    width = width_of(stream)
-    drawn = (
-        front_lines(found, about, width) if isinstance(found, Front) else tradeoff_lines(found, about, width)
-    )
-    write_lines(stream, drawn)
+    if isinstance(found, Front):
+        return front_lines(found, about, width)
+    return tradeoff_lines(found, about, width)

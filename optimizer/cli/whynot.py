@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 import argparse
-import sys
 from typing import TYPE_CHECKING
 
+from optimizer.cli.answer import shown
 from optimizer.cli.messages import StudyError
 from optimizer.cli.options.whynot import whynot_options
-from optimizer.cli.output import write_lines
 from optimizer.cli.steps import steps
 from optimizer.errors import InputError
 
@@ -23,7 +22,6 @@ def whynot(parsed: argparse.Namespace) -> int:
     options = whynot_options(parsed)
     study = _load(options.request)
     from optimizer.record.whynot import as_record
-    from optimizer.report.terminal import width_of
     from optimizer.report.whynot import whynot_lines
     from optimizer.search.inquiry.whynot import steps as name_steps
     from optimizer.search.inquiry.whynot import whynot as look_into
@@ -32,7 +30,7 @@ def whynot(parsed: argparse.Namespace) -> int:
     with steps("steps", len(todo)) as tell:
         finding = look_into(study.request, study.catalogs, options.names, tell=tell)
     record = as_record(study, finding)
-    write_lines(sys.stdout, whynot_lines(finding, record.data, width_of(sys.stdout)))
+    shown(lambda width: whynot_lines(finding, record.data, width), piped=False)
     return MEETS if finding.meets else MISSES
 
 

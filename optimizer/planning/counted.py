@@ -5,7 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 from math import fsum, isclose, isnan
 
+from optimizer.board.prices import CENTS
 from optimizer.catalog.parts import Parts
+from optimizer.physics.reference import current as divider_current
 from optimizer.planning.outline import Outline
 from optimizer.planning.plan import TOTALS, BoardPlan, LineItem
 from optimizer.planning.told import UnsoundBoardError
@@ -65,7 +67,7 @@ def _counts(outline: Outline, plan: BoardPlan) -> dict[str, float | None]:
     """All of TOTALS; None where the catalogs do not say."""
     opamps = [line for line in plan.bill if line.role == "opamp"]
     values = (
-        plan.cost / 100 / outline.quantity,
+        plan.cost / CENTS / outline.quantity,
         _current(outline, plan, opamps),
         _sum(outline, plan.bill, "board_area"),
         float(len(plan.bill)),
@@ -84,11 +86,11 @@ def _current(outline: Outline, plan: BoardPlan, opamps: list[LineItem]) -> float
     for build in plan.builds:
         reference, supply = build.candidate.reference, supplies[build.channel]
         if build.level is None and reference.top is not None and reference.bottom is not None:
-            each = (supply.high - supply.low) / (reference.top + reference.bottom)
-            dividers.append(len(build.copies) * each)
+            each = divider_current(supply.high, supply.low, reference.top, reference.bottom)
+            dividers.append(len(build.copies) * float(each))
     for level in plan.levels:
         supply = supplies[level.channels[0]]
-        dividers.append((supply.high - supply.low) / (level.top + level.bottom))
+        dividers.append(float(divider_current(supply.high, supply.low, level.top, level.bottom)))
     return None if packages is None else packages + fsum(dividers)
 
 

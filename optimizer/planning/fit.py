@@ -12,7 +12,6 @@ from optimizer.planning.kinds import NONE, Kind
 from optimizer.search.sources import is_sourced
 from optimizer.search.space import Choice, settings
 
-Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 
 OF_PACKAGES = ("cost", "supply_current")

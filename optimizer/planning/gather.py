@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 
 from optimizer.board.bound import Pace, climb, layout
 from optimizer.board.heuristic import Best, Effort, look
+from optimizer.board.prices import CENTS
 from optimizer.board.supplies import PLAIN, Weights
 from optimizer.planning.columns import Assembled, Field, Pool, assembled, without_limits
 from optimizer.planning.fit import packaged, usable
@@ -34,7 +35,6 @@ from optimizer.search.space import Choice
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
-Bools = NDArray[np.bool_]
 Tell = Callable[[str, float, float], None]
 
 FIRST, SIDE = 20, 4
@@ -84,12 +84,6 @@ class Gathering:
         """Whether so little is open that all of it may join the pools."""
         return all(left is not None and left <= CLOSE for left in self.open)
 
-    def begin(self, alone: Sequence[Found]) -> None:
-        """Begin with the best receivers by themselves, and those at the least prices that parts can have."""
-        for i, found in enumerate(alone):
-            self._take(i, found.choice, found.vector[:, 0])
-        self._begin()
-
     def run(self) -> None:
         """Gather until nothing changes, or the time is over."""
         each, idle = EACH, 0
@@ -109,9 +103,11 @@ class Gathering:
             else:
                 each = each if gained and added else min(MOST, 2 * each)
 
-    def _begin(self) -> None:
-        kinds = self.field.kinds
-        for i, kind in enumerate(kinds):
+    def begin(self, alone: Sequence[Found]) -> None:
+        """Begin with the best receivers by themselves, and those at the least prices that parts can have."""
+        for i, found in enumerate(alone):
+            self._take(i, found.choice, found.vector[:, 0])
+        for i, kind in enumerate(self.field.kinds):
             group, rows = self.field.amplifiers.group[i], self.field.amplifiers.rows[i]
             able = affordable(self.asked[i], np.flatnonzero(group != NONE), kind.space.limits.get("cost"))
             pairs = np.zeros_like(able)
@@ -138,7 +134,7 @@ class Gathering:
     def _views(self) -> list[Weights]:
         """Cost with a price on each limit in turn."""
         limits = self.field.outline.limits
-        scale = 100.0 * self.field.outline.quantity * max(limits.cost or 0.0, 10.0)
+        scale = CENTS * self.field.outline.quantity * max(limits.cost or 0.0, 10.0)
         stated = {"current": limits.supply_current, "area": limits.area}
         prices = [(name, scale / limit) for name, limit in stated.items() if limit]
         return [Weights(**{name: times * price}) for times in (10.0, 1.0) for name, price in prices]

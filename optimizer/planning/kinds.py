@@ -15,7 +15,6 @@ from optimizer.search.query import Query, graded, is_empty, query
 from optimizer.search.space import Space, build_whole
 from optimizer.study import Study
 
-Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 

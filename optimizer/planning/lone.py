@@ -7,11 +7,10 @@ from dataclasses import replace
 
 import numpy as np
 
-from optimizer.board.prices import CENTS
-from optimizer.planning.bill import bought_of, totals_of
-from optimizer.planning.columns import Field, costs_of
+from optimizer.planning.bill import bill_of, cost_of, totals_of
+from optimizer.planning.columns import Field
 from optimizer.planning.kinds import NONE, Kind
-from optimizer.planning.plan import Alone, Hopeless, LineItem
+from optimizer.planning.plan import Alone, Hopeless
 from optimizer.search.crew import Found, nothing
 from optimizer.search.hunt import Rules
 from optimizer.search.impossible import reasons
@@ -72,22 +71,11 @@ def together(field: Field, found: Sequence[Found]) -> Alone:
 
 
 def _priced(field: Field, pieces: dict[int, int], packages: int, current: float) -> Alone:
-    outline, shelf = field.outline, field.shelf
-    line_item, placement = costs_of(outline)
-    cost = line_item * len(pieces) + placement * sum(pieces.values())
-    short, bill = False, []
-    for part, number in pieces.items():
-        entry, stocked = shelf.parts[part].entry, shelf.parts[part]
-        bought = bought_of(shelf, part, outline.quantity, number)
-        cost += bought.cents
-        short |= entry.stock is not None and bought.quantity > entry.stock
-        money = bought.cents / CENTS
-        bill.append(
-            LineItem(
-                stocked.role, stocked.key[2], stocked.key[1], stocked.value, stocked.package,
-                number, bought.quantity, bought.unit, money, entry.area,
-            )
-        )  # fmt: skip
+    shelf, quantity = field.shelf.parts, field.outline.quantity
+    bill = bill_of(field, pieces)
+    cost = cost_of(field.outline, bill)
     totals, _ = totals_of(field, bill, cost, current)
-    over = [t.name for t in totals if t.margin is not None and t.margin < 0.0]
-    return Alone(cost, len(pieces), packages, (*over, *(("stock",) if short else ())))
+    over = [total.name for total in totals if total.margin is not None and total.margin < 0.0]
+    stocks = {part: shelf[part].entry.stock for part in pieces}
+    short = any(stock is not None and quantity * pieces[part] > stock for part, stock in stocks.items())
+    return Alone(cost, len(bill), packages, (*over, *(("stock",) if short else ())))

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from pathlib import Path
+from typing import TYPE_CHECKING
 
-from optimizer.catalog.parts import Source
-from optimizer.study import Study
+if TYPE_CHECKING:
+    from optimizer.catalog.parts import Source
+    from optimizer.study import Study
 
 SOLVERS = ("auto", "cbc", "highs")
 

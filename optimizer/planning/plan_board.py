@@ -57,7 +57,6 @@ class _Planning:
         self.began = time.monotonic()
         self.until = self.began + outline.solve.time
         self.faults: list[str] = []
-        self.sound = 0
         self.interrupted = False
         self.alone: Alone | None = None
         self.apart = False
@@ -109,8 +108,7 @@ class _Planning:
 
     def _told(self, gathered: Gathering, solved: Solved) -> Iterator[BoardPlan]:
         """The plans by name, without those that do not stand being looked at anew."""
-        for chosen in solved.chosen:
-            rank = 1 + self.sound
+        for rank, chosen in enumerate(solved.chosen, 1):
             try:
                 one = told(chosen, rank, plan.UNPROVEN if self.apart else _scope(gathered, solved, chosen))
                 audited(self.outline, one)
@@ -120,7 +118,6 @@ class _Planning:
             if self.apart or one.cost != chosen.plan.totals.cost:
                 least = 0 if self.apart else min(one.cost, int(gathered.floor))
                 one = replace(one, proven=plan.UNPROVEN, bound=least)
-            self.sound += 1
             yield one
 
     def _answer(self, gathered: Gathering, solved: Solved, plans: tuple[BoardPlan, ...]) -> Planned:
@@ -235,12 +232,12 @@ def _scope(gathered: Gathering, solved: Solved, chosen: Chosen) -> str:
 
 def _pools(gathered: Gathering) -> Iterator[Pool]:
     """What was looked at, by channel."""
-    for kind, pool, left in zip(gathered.field.kinds, gathered.pools, gathered.open, strict=True):
-        pairs = int(gathered.first_pairs[gathered.field.kinds.index(kind)])
-        for channel in kind.channels:
+    columns = (gathered.pools, gathered.open, gathered.first_pairs)
+    for pool, left, pairs in zip(*columns, strict=True):
+        for channel in pool.kind.channels:
             yield Pool(
                 channel=channel.name,
-                combinations=kind.space.combinations,
+                combinations=pool.kind.space.combinations,
                 pairs=pairs,
                 kept=len(pool.held),
                 complete=left == 0,

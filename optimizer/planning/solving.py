@@ -7,7 +7,6 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from optimizer.board.heuristic import Best, Effort, look
 from optimizer.board.solution import Progress, Solution, SolveOptions
@@ -17,8 +16,6 @@ from optimizer.planning.gather import Gathering
 from optimizer.planning.polish import polished
 from optimizer.planning.told import Chosen
 from optimizer.planning.trim import trimmed
-
-Ints = NDArray[np.int64]
 
 MORE = 250
 """Candidates with the passives of one plan's active parts, of each kind, that an improvement may add."""

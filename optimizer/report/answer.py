@@ -18,7 +18,6 @@ from optimizer.search.inquiry.lookup import ONE, Part
 from optimizer.search.result import SOURCES, Candidate
 
 Record = Mapping[str, Any]
-RANKED = {"cost": "cost", "margin": "margin", "snr": "SNR", "supply_current": "supply current"}
 
 
 def called(part: Part) -> str:

@@ -6,19 +6,13 @@ import csv
 import re
 from collections.abc import Iterable
 from io import StringIO
-from pathlib import Path
 from typing import Any
 
-from optimizer.record import Record, write_text
+from optimizer.record import Record
 from optimizer.record.rows import columns, flat
 
 # A spreadsheet runs a cell that begins so; a foreign separator inside a cell may begin a new one.
 FORMULA = re.compile(r"(^|[;,|\t\r\n])([\s\u200b\ufeff]*[=+\-@\uff1d\uff0b\uff0d\uff20\t\r\n])")
-
-
-def write_csv(record: Record, path: str | Path) -> None:
-    """Write `csv_text` to `path`; raises OutputError and leaves the old file as it was on failure."""
-    write_text(path, csv_text(record))
 
 
 def csv_text(record: Record) -> str:

@@ -30,7 +30,6 @@ from optimizer.search.space import Choice, Space
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
-Bools = NDArray[np.bool_]
 
 CAP = 2000
 """Settings of one receiver with the same positions changed that are looked for at once at most."""

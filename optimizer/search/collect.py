@@ -24,7 +24,6 @@ from optimizer.search.view import view
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
-Bools = NDArray[np.bool_]
 
 BATCH = 4096
 

@@ -26,7 +26,6 @@ from optimizer.search.space import Choice, Space
 from optimizer.search.view import Index
 
 Floats = NDArray[np.float64]
-Ints = NDArray[np.int64]
 
 REPORT_EVERY = 0.1
 """Seconds between two reports of progress."""

@@ -19,7 +19,6 @@ from optimizer.search.sources import offered
 from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import Index, view
 
-Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 _BLOCK = 262144

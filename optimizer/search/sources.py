@@ -21,7 +21,6 @@ from optimizer.search.spread.corners import judged_whole
 from optimizer.search.spread.shifted import bounded
 from optimizer.search.view import Index, view
 
-Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 

@@ -8,13 +8,11 @@ from itertools import pairwise
 
 import numpy as np
 import pytest
-from numpy.typing import NDArray
 from scipy.integrate import quad
 
 from optimizer.physics.loop import Loop
 from optimizer.physics.noise import Band, flicker_band, times_pole, white_band
 
-Floats = NDArray[np.float64]
 ZERO = np.zeros(1)
 
 

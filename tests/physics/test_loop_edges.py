@@ -8,12 +8,10 @@ import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
-from numpy.typing import NDArray
 
 from optimizer.physics import loop as loops
 from optimizer.physics.loop import Loop, Network
 
-Floats = NDArray[np.float64]
 ONE = np.ones(1)
 ZERO = np.zeros(1)
 INF = np.full(1, np.inf)

@@ -11,7 +11,7 @@ from collections import Counter
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from fractions import Fraction
-from functools import cache, cached_property
+from functools import cached_property
 from itertools import combinations_with_replacement, product
 from math import comb, isnan, nan
 from typing import Any
@@ -25,6 +25,7 @@ from optimizer.search import plain
 from optimizer.search import space as spaces
 from optimizer.search.roles import PASSES
 from optimizer.vocabulary import NAMES
+from tests.board.brute import paid
 
 Part = tuple[Any, ...]
 """Role, maker, name and, of a passive, its value."""
@@ -331,19 +332,3 @@ def part_of(table: Parts, row: int) -> Part:
 def rounded(money: Fraction) -> int:
     """Whole cents, half a cent up."""
     return int(money + Fraction(1, 2))
-
-
-@cache
-def paid(breaks: tuple[tuple[float, float], ...], stock: float | None, need: int) -> int | None:
-    """The least cents for at least `need` pieces, every quantity up to the last break tried."""
-    best = None
-    for quantity in range(need, max(need, int(breaks[-1][0])) + 1):
-        if stock is not None and quantity > stock:
-            break
-        unit = breaks[0][1]
-        for first, price in breaks:
-            if quantity >= first:
-                unit = price
-        cents = rounded(Fraction(str(unit)) * quantity * 100)
-        best = cents if best is None else min(best, cents)
-    return best

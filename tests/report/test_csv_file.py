@@ -10,7 +10,8 @@ from pathlib import Path
 import pytest
 
 from optimizer.errors import OutputError
-from optimizer.report.csv_file import csv_text, neutral, write_csv
+from optimizer.record import write_text
+from optimizer.report.csv_file import csv_text, neutral
 from tests.made_up import CANDIDATE, MISS, outcome, record
 
 
@@ -45,6 +46,6 @@ def test_harmless_names_stay_as_they_are(name: str) -> None:
 
 def test_a_csv_that_cannot_be_written_leaves_the_old_file(tmp_path: Path) -> None:
     with pytest.raises(OutputError, match="there is no folder"):
-        write_csv(record(), tmp_path / "nowhere" / "x.csv")
-    write_csv(record(), tmp_path / "x.csv")
+        write_text(tmp_path / "nowhere" / "x.csv", csv_text(record()))
+    write_text(tmp_path / "x.csv", csv_text(record()))
     assert len(rows((tmp_path / "x.csv").read_text(encoding="utf-8"))) == 1

@@ -25,8 +25,6 @@ from optimizer.search.space import Space
 from optimizer.search.view import Index
 from tests.search.instances import KINDS, drawn, sampled, varied, with_targets
 
-Ints = NDArray[np.int64]
-
 COMFORT = 1.0
 SEEDS = range(12)
 COUNT = 40_000

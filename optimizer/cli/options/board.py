@@ -7,9 +7,9 @@ from dataclasses import dataclass
 
 from optimizer.cli.options.shared import COMMAND_LINE, SAVE, STANDARD_OUTPUT, one_of, whole
 from optimizer.errors import Problem
+from optimizer.planning.outline import SOLVERS
 
 SUMMARY = "plan several receivers on one board together"
-SOLVERS = ("auto", "cbc", "highs")
 
 
 @dataclass(frozen=True, slots=True)

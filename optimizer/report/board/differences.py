@@ -10,7 +10,7 @@ from optimizer.errors import clean
 from optimizer.planning.plan import POOLS, UNPROVEN
 from optimizer.report.board.amounts import CENTS, money, of_cents, worded
 from optimizer.report.board.channels import as_built
-from optimizer.report.board.status import ADMITTED, CONSIDERED, could_save
+from optimizer.report.board.status import ADMITTED, CONSIDERED, could_save, over_everything
 from optimizer.report.changes import ARROW, NAMES
 from optimizer.report.conflicts import listed
 from optimizer.report.words import count, margin_words, percent, ranges, several
@@ -193,5 +193,6 @@ def number_words(data: Data) -> str:
         return ""
     asked = f"{several(wanted, 'plan')} were asked for"
     if data["search"].get("only"):
-        return f"{asked}; there are no more with other photodiodes or op-amps."
+        among = "" if over_everything(data) else f", among {CONSIDERED}"
+        return f"{asked}; there are no more with other photodiodes or op-amps{among}."
     return f"{asked}; no more were found in the time, though there may be some."

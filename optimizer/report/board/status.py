@@ -110,8 +110,13 @@ def _at_all(plan: Data, data: Data) -> str:
 
 def _bounded(data: Data) -> str:
     """Over what the bound holds."""
-    complete = all(pool["complete"] for pool in data["search"]["pools"])
-    return ADMITTED if complete and data["search"]["pools"] else CONSIDERED
+    return ADMITTED if over_everything(data) else CONSIDERED
+
+
+def over_everything(data: Data) -> bool:
+    """Whether nothing that matters was left out of what was looked at."""
+    pools = data["search"]["pools"]
+    return bool(pools) and all(pool["complete"] for pool in pools)
 
 
 def _none(data: Data) -> str:

@@ -20,7 +20,6 @@ from optimizer.search.locate import referred
 from optimizer.search.space import Space
 
 Bools = NDArray[np.bool_]
-Ints = NDArray[np.int64]
 
 
 @dataclass(frozen=True, slots=True)

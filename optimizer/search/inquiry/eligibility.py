@@ -20,7 +20,6 @@ from optimizer.search.inquiry.lookup import Part, parts_of
 from optimizer.search.roles import PASSES, diodes_need, opamps_need
 from optimizer.search.space import Space
 
-Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
 

@@ -31,7 +31,6 @@ from optimizer.search.space import Choice, Space, own_code, settings
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
-Bools = NDArray[np.bool_]
 
 Columns = dict[str, Floats]
 """Numbers that decide a check, by what they are, one element a setting; `short` is how much is missing."""

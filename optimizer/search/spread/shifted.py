@@ -20,7 +20,6 @@ from optimizer.search.upper import Bound, bound
 from optimizer.search.view import Index, View
 
 Floats = NDArray[np.float64]
-Bools = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,7 +6,6 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from optimizer import margins
 from optimizer.catalog.parts import Catalogs
@@ -20,8 +19,6 @@ from optimizer.search.sources import enough, mates, offered
 from optimizer.search.space import Choice, Space, build
 from optimizer.search.weigh.valued import valued
 from optimizer.vocabulary import VOCABULARY
-
-Floats = NDArray[np.float64]
 
 NOTHING_GRADED = {"cost": float("inf")}
 """Limits that every candidate meets alike: for a request of which no target is left."""

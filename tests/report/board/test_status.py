@@ -119,8 +119,12 @@ def test_no_plan_found_proves_nothing(status: str, said: str) -> None:
 
 def test_fewer_plans_than_asked_for() -> None:
     few = made_plan.plans()[:3]
-    no_more = words(made_plan.planned(plans=few, only=True))
-    assert "5 plans were asked for; there are no more with other photodiodes or op-amps." in no_more
+    no_more = words(made_plan.planned(plans=few, only=True, pools=made_plan.pools()))
+    over = "there are no more with other photodiodes or op-amps, among the candidates looked at."
+    assert f"5 plans were asked for; {over}" in no_more
+    whole = tuple(replace(pool, complete=True, left_out=0) for pool in made_plan.pools())
+    none_at_all = words(made_plan.planned(plans=few, only=True, pools=whole))
+    assert "there are no more with other photodiodes or op-amps." in none_at_all
     perhaps = words(made_plan.planned(plans=few))
     assert "5 plans were asked for; no more were found in the time, though there may be some." in perhaps
     assert "asked for" not in words()
