@@ -6,6 +6,7 @@ from dataclasses import replace
 from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from optimizer.catalog.parts import Catalogs
 from optimizer.figures import evaluate
@@ -14,6 +15,8 @@ from optimizer.search.result import Simulated
 from optimizer.search.space import Choice, Space, build, settings
 from optimizer.search.spread.montecarlo import monte_carlo
 from tests.search import made
+
+Floats = NDArray[np.float64]
 
 WIDE = Tolerance(
     method="nominal",
